@@ -27,7 +27,7 @@ class Place:
 
 @dataclass(frozen=True, slots=True)
 class Party:
-    """Who holds an exponent, how wide it is, how often it is used, what is done to a received value.
+    """Who holds an exponent, how wide it is and how often used, and what a received value undergoes.
 
     ``peer_check`` is None when the owner says nothing, and empty when nothing is checked.
     """
@@ -86,7 +86,10 @@ class Declaration:
         record.pop("parties", None)
         record |= _parties_document(self.parties)
         if self.provenance is not None:
-            record["provenance"] = {"method": self.provenance.method, **dict(self.provenance.values)}
+            record["provenance"] = {
+                "method": self.provenance.method,
+                **dict(self.provenance.values),
+            }
         return plain(record)  # type: ignore[no-any-return]
 
     def digest(self) -> str:
