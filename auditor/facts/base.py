@@ -54,5 +54,5 @@ class FactType:
         """The direction in which more search may still move the value; None for a final one."""
         for ending in ("at_least", "at_most", "seen"):
             if self.name.endswith(f"_{ending}"):
-                return ending  # type: ignore[return-value]
+                return ending
         return None

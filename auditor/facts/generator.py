@@ -1,0 +1,89 @@
+"""Facts about the generator and its order.
+
+Order from partial knowledge: with the group exponent A*C, A factored and C not, ord(g) is a known
+divisor of A times an unknown divisor of C. What that already decides is final; the rest waits.
+"""
+
+from math import gcd
+
+from auditor.claims.base import product
+from auditor.facts import parts
+from auditor.facts.given import Given
+from auditor.facts.numbers import bits, log2_of
+from auditor.facts.registry import fact
+
+
+@fact("generator.unit", "bool", "gcd(g, n) = 1")
+def unit(given: Given) -> bool:
+    return gcd(given.declaration.generator, given.declaration.modulus) == 1
+
+
+@fact("generator.trivial", "bool", "g is 0, 1 or n-1 modulo n")
+def trivial(given: Given) -> bool:
+    n = given.declaration.modulus
+    return given.declaration.generator % n in {0, 1 % n, n - 1}
+
+
+@fact("generator.order_length", "int", "bit length of ord(g)")
+def order_length(given: Given) -> int:
+    return given.see(parts.generator_order_value).bit_length()
+
+
+@fact("generator.order_bits", "real", "log2 of ord(g)")
+def order_bits(given: Given) -> float:
+    return bits(log2_of(given.see(parts.generator_order_value)))
+
+
+@fact("generator.order_prime", "bool", "ord(g) is a prime")
+def order_prime(given: Given) -> bool:
+    order = given.see(parts.generator_order)
+    known = sum(exponent for _, exponent in order.factors)
+    if order.rest > 1 and known == 0:
+        # Nothing known divides it: the unknown divisor of the rest could be a prime.
+        given.unsettled(*given.trace(parts.generator_order).questions)
+    given.settle()
+    return order.rest == 1 and known == 1
+
+
+@fact("generator.order_even", "bool", "ord(g) is even")
+def order_even(given: Given) -> bool:
+    order = given.see(parts.generator_order)
+    if order.rest % 2 == 0:
+        given.unsettled(*given.trace(parts.generator_order).questions)
+    given.settle()
+    return any(prime == 2 for prime, _ in order.factors)
+
+
+@fact("generator.generates_group", "bool", "g generates the whole unit group")
+def generates_group(given: Given) -> bool:
+    order, group = given.see(parts.generator_order), given.see(parts.group_order)
+    known = product(order.factors) * order.rest
+    if known != group:
+        given.settle()
+        return False
+    if order.rest > 1:
+        given.unsettled(*given.trace(parts.generator_order).questions)
+    return True
+
+
+@fact("generator.largest_prime_length", "int", "bit length of the largest prime dividing ord(g)")
+def largest_prime_length(given: Given) -> int:
+    factors = given.see(parts.complete_generator_order)
+    return max((prime.bit_length() for prime, _ in factors), default=0)
+
+
+@fact("generator.index_bits", "real", "log2 of phi(n)/ord(g)")
+def index_bits(given: Given) -> float:
+    return bits(log2_of(given.see(parts.group_order) // given.see(parts.generator_order_value)))
+
+
+@fact("generator.order_is_declared", "bool", "ord(g) is the declared q")
+def order_is_declared(given: Given) -> bool:
+    q = given.declaration.subgroup_order
+    if q is None:
+        given.undeclared("subgroup_order")
+    if q < 1:
+        return False
+    if q == 1 or not given.is_member(given.declaration.modulus, given.see(parts.element), q):
+        return q == 1 and given.see(parts.element) == 1 % given.declaration.modulus
+    return given.see(parts.generator_order_value) == q

@@ -1,0 +1,68 @@
+"""Facts about the modulus."""
+
+from auditor.facts import parts
+from auditor.facts.given import Given
+from auditor.facts.registry import fact
+from auditor.intake import standard_groups
+
+NATURES = ("prime", "prime power", "power of two", "composite")
+
+
+@fact("modulus.length", "int", "bit length of n")
+def length(given: Given) -> int:
+    return given.declaration.modulus.bit_length()
+
+
+@fact("modulus.nature", "text", "what kind of number n is", NATURES)
+def nature(given: Given) -> str:
+    kind = given.see(parts.nature)
+    given.settle()
+    return kind
+
+
+@fact("modulus.safe_prime", "bool", "n and (n-1)/2 are prime")
+def safe_prime(given: Given) -> bool:
+    n = given.declaration.modulus
+    if n < 2:
+        given.undefined()
+    return given.see(parts.nature) == "prime" and given.is_prime((n - 1) // 2)
+
+
+def standard(given: Given) -> tuple[str, str]:
+    """Name and extent of the match with the registry of standard groups."""
+    return standard_groups.match(given.declaration.modulus, given.declaration.generator)
+
+
+@fact("modulus.standard_group", "text", "registry name of the group with this modulus, or none")
+def standard_group(given: Given) -> str:
+    return given.see(standard)[0]
+
+
+@fact(
+    "modulus.standard_match",
+    "text",
+    "whether modulus and generator are those of a standard group",
+    ("exact", "modulus only", "none"),
+)
+def standard_match(given: Given) -> str:
+    return given.see(standard)[1]
+
+
+@fact("modulus.occurrences", "int", "parameter sets in this run with the same modulus")
+def occurrences(given: Given) -> int:
+    return given.run.census.get(given.declaration.modulus, 1)
+
+
+@fact(
+    "modulus.smallest_factor_length_at_most",
+    "int",
+    "bit length of the smallest known prime factor of a composite modulus",
+)
+def smallest_factor_length(given: Given) -> int:
+    if given.see(parts.nature) == "prime":
+        given.undefined()
+    factors, rest = given.see(parts.known_modulus_factors)
+    lengths = [prime.bit_length() for prime, _ in factors]
+    # A composite rest without known factors has one of at most half its length.
+    bound = min([*lengths, (rest.bit_length() + 1) // 2] if rest > 1 else lengths)
+    return bound

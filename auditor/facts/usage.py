@@ -1,0 +1,116 @@
+"""Facts about how the owner says the parameters are used: the owner's word, taken as such.
+
+Facts over parties take the worst party, as the contract asks.
+"""
+
+from auditor.declaration import EVERYBODY, Party
+from auditor.facts.given import Given
+from auditor.facts.registry import fact
+
+PURPOSES = ("key-agreement", "encryption", "signature")
+SCHEMES = (
+    "elgamal-raw",
+    "elgamal-encoded",
+    "elgamal-hashed",
+    "elgamal",
+    "dsa",
+    "schnorr",
+)
+PROTOCOLS = ("tls1.2", "tls1.3", "ssh", "ikev1", "ikev2", "cms", "openpgp", "custom")
+
+
+def key_of(party: Party, key: str) -> str:
+    """The declared key of a party, as messages and reports write it."""
+    return key if party.role == EVERYBODY else f"parties.{party.role}.{key}"
+
+
+def parties(given: Given) -> tuple[Party, ...]:
+    """The declared parties, of which there is at least one."""
+    return given.declaration.parties or (Party(EVERYBODY),)
+
+
+@fact("usage.purpose", "text", "what the group is for, as declared", PURPOSES)
+def purpose(given: Given) -> str:
+    return str(given.word("purpose"))
+
+
+@fact("usage.scheme", "text", "the scheme, as declared", SCHEMES)
+def scheme(given: Given) -> str:
+    return str(given.word("scheme"))
+
+
+@fact("usage.protocol", "text", "the protocol, as declared", PROTOCOLS)
+def protocol(given: Given) -> str:
+    return str(given.word("protocol"))
+
+
+@fact("usage.message_length", "int", "bits of a raw message, as declared")
+def message_length(given: Given) -> int:
+    return int(given.word("message_bits"))
+
+
+@fact("usage.protect_until", "int", "year until which protection is needed, as declared")
+def protect_until(given: Given) -> int:
+    return int(given.word("protect_until"))
+
+
+@fact("run.year", "int", "the year of the date that the review takes as today")
+def year(given: Given) -> int:
+    return given.run.year
+
+
+def every_party_checks(given: Given, check: str) -> bool:
+    """Whether each party makes that check; False as soon as one declares its checks without it."""
+    silent = [party for party in given.see(parties) if party.peer_check is None]
+    spoken = [party for party in given.see(parties) if party.peer_check is not None]
+    without = [party for party in spoken if check not in (party.peer_check or ())]
+    if silent and not without:
+        given.undeclared(*(key_of(party, "peer_check") for party in silent))
+    given.rest_on(*(key_of(party, "peer_check") for party in without or spoken))
+    return not without
+
+
+@fact("usage.peer_range", "bool", "every party checks that a received value is in [2, n-2]")
+def peer_range(given: Given) -> bool:
+    return every_party_checks(given, "range")
+
+
+@fact(
+    "usage.peer_membership",
+    "bool",
+    "every party checks that a received value y has y^q = 1 and y != 1",
+)
+def peer_membership(given: Given) -> bool:
+    return every_party_checks(given, "membership")
+
+
+@fact(
+    "usage.peer_cofactor",
+    "bool",
+    "every party multiplies its exponent by the cofactor and refuses the identity",
+)
+def peer_cofactor(given: Given) -> bool:
+    return every_party_checks(given, "cofactor")
+
+
+@fact("usage.exponent_reused", "bool", "some party uses an exponent more than once")
+def exponent_reused(given: Given) -> bool:
+    silent = [party for party in given.see(parties) if party.exponent_use is None]
+    spoken = [party for party in given.see(parties) if party.exponent_use is not None]
+    reusing = [party for party in spoken if party.exponent_use != "single"]
+    if silent and not reusing:
+        given.undeclared(*(key_of(party, "exponent.use") for party in silent))
+    given.rest_on(*(key_of(party, "exponent.use") for party in reusing or spoken))
+    return bool(reusing)
+
+
+@fact("usage.exponent_width", "int", "bits of the narrowest declared exponent")
+def exponent_width(given: Given) -> int:
+    widths = [party for party in given.see(parties) if party.exponent_bits is not None]
+    if not widths:
+        given.undeclared(*(key_of(party, "exponent.bits") for party in given.see(parties)))
+    narrowest = min(widths, key=lambda party: (party.exponent_bits or 0, party.role))
+    given.rest_on(key_of(narrowest, "exponent.bits"))
+    return narrowest.exponent_bits or 0
+
+
