@@ -1,0 +1,112 @@
+"""A claim of the record as a sentence: what is said, and what shows it.
+
+A kind that is not known here is written out member by member, so that no claim disappears.
+"""
+
+from collections.abc import Callable, Mapping
+from typing import Any
+
+from auditor.report.words import plain_value, power
+
+Record = Mapping[str, Any]
+
+
+def sentence(claim: Record) -> str:
+    """What the claim says and how it is shown, in one line with long integers shortened."""
+    statement, certificate = claim["statement"], claim["certificate"]
+    writer = _WRITERS.get(claim["kind"], _any_kind)
+    try:
+        return writer(statement, certificate)
+    except (KeyError, TypeError, ValueError):
+        return _any_kind(statement, certificate)
+
+
+def _prime(statement: Record, certificate: Record) -> str:
+    method = certificate["method"]
+    if method == "baillie-psw":
+        how = (
+            f"probable, by the Baillie-PSW test and {certificate['rounds']} strong tests to "
+            f"unpredictable bases; error at most 2^-{certificate['error_bits']}"
+        )
+    elif method == "n-1":
+        how = "proved from prime factors of n - 1"
+    elif method == "below-2^64":
+        how = "decided, as all numbers below 2^64"
+    else:
+        return _any_kind(statement, certificate)
+    return f"{plain_value(statement['n'])} is prime: {how}"
+
+
+def _composite(statement: Record, certificate: Record) -> str:
+    number = plain_value(statement["n"])
+    if "factor" in certificate:
+        return f"{number} is composite: {plain_value(certificate['factor'])} divides it"
+    witness = plain_value(certificate["witness"])
+    return f"{number} is composite: it fails the strong test to base {witness}"
+
+
+def _perfect_power(statement: Record, certificate: Record) -> str:
+    number, base = plain_value(statement["n"]), plain_value(statement["base"])
+    return f"{number} = {base} to the power {statement['exponent']}"
+
+
+def _factorization(statement: Record, certificate: Record) -> str:
+    return f"{plain_value(statement['n'])} = {_product(statement['factors'], statement['rest'])}"
+
+
+def _order(statement: Record, certificate: Record) -> str:
+    element, modulus = plain_value(statement["element"]), plain_value(statement["modulus"])
+    known, rest = statement["known"], statement["rest"]
+    order = _product(known, 1)
+    if rest != 1:
+        order += f" times a divisor, above 1, of {plain_value(rest)}"
+    return f"the order of {element} modulo {modulus} is {order}"
+
+
+def _membership(statement: Record, certificate: Record) -> str:
+    element, exponent = plain_value(statement["element"]), plain_value(statement["exponent"])
+    sign = "=" if statement["member"] else "is not"
+    return f"{element} to the power {exponent} {sign} 1 modulo {plain_value(statement['modulus'])}"
+
+
+def _searched(statement: Record, certificate: Record) -> str:
+    runs = "; ".join(_run(run) for run in statement["runs"])
+    return (
+        f"no factor of {plain_value(statement['n'])} was found by {runs}; "
+        f"attested, engine {certificate['engine']}"
+    )
+
+
+def _run(run: Record) -> str:
+    numbers = ", ".join(f"{key} {value}" for key, value in run.items() if key != "method")
+    return f"{run['method']} ({numbers})" if numbers else str(run["method"])
+
+
+def _product(factors: list[list[Any]], rest: int | str) -> str:
+    parts = [power(prime, exponent) for prime, exponent in factors]
+    if rest != 1:
+        parts.append(f"{plain_value(rest)}, which is composite and not factored")
+    return " · ".join(parts) or "1"
+
+
+def _any_kind(statement: Record, certificate: Record) -> str:
+    says = _members(statement)
+    shown = _members(certificate)
+    return f"{says}; shown by {shown}" if shown else says
+
+
+def _members(record: Record) -> str:
+    return "; ".join(
+        f"{key.replace('_', ' ')}: {plain_value(item)}" for key, item in record.items()
+    )
+
+
+_WRITERS: Mapping[str, Callable[[Record, Record], str]] = {
+    "prime": _prime,
+    "composite": _composite,
+    "perfect-power": _perfect_power,
+    "factorization": _factorization,
+    "order": _order,
+    "membership": _membership,
+    "searched": _searched,
+}

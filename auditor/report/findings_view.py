@@ -1,0 +1,159 @@
+"""Findings as documents show them: equal ones merged, worst first, and what each waits for."""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from auditor.report.words import CONFIDENCE_MEANING, GRADES, REASON_MEANING, outcome, plain_value
+
+Record = Mapping[str, Any]
+
+
+@dataclass(frozen=True, slots=True)
+class Requirement:
+    """One rule that a merged finding stands for, and where its requirement comes from."""
+
+    rule: str
+    title: str
+    source: str
+    why: str
+
+    @property
+    def text(self) -> str:
+        """Rule, document and clause in one line."""
+        return f"{self.title} ({self.source})"
+
+
+@dataclass(frozen=True, slots=True)
+class Remedy:
+    """What would remove a finding, what that breaks, and the declared keys it changes."""
+
+    text: str
+    breaks: tuple[str, ...]
+    patch: tuple[tuple[str, str], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Concession:
+    """A permission to release despite a finding."""
+
+    text: str
+    in_force: bool
+
+
+@dataclass(frozen=True, slots=True)
+class MergedFinding:
+    """Findings of one set that are equal in defect, outcome and grade."""
+
+    defect: str
+    outcome: str
+    grade: str
+    title: str
+    statements: tuple[str, ...]
+    requirements: tuple[Requirement, ...]
+    values: tuple[tuple[str, str], ...]
+    missing: tuple[tuple[str, str], ...]
+    remedies: tuple[Remedy, ...]
+    cautions: tuple[str, ...]
+    concessions: tuple[Concession, ...]
+    waits_for: tuple[str, ...]
+    """Ids of open questions, and declared keys as ``key:NAME``."""
+
+    @property
+    def words(self) -> str:
+        """Grade and outcome in the words of an audit."""
+        return outcome(self.grade, self.outcome)
+
+
+def merge(parameter_set: Record, rules: Mapping[str, Record]) -> tuple[MergedFinding, ...]:
+    """The findings of a set, worst first; ``rules`` are those of the books, by id."""
+    groups: dict[tuple[str, str, str], list[Record]] = {}
+    for finding in sorted(parameter_set["findings"], key=_weight(parameter_set["decided_by"])):
+        key = finding["defect"], finding["outcome"], finding["grade"]
+        groups.setdefault(key, []).append(finding)
+    return tuple(_merged(group, parameter_set["absent"], rules) for group in groups.values())
+
+
+def _weight(decided_by: str | None) -> Any:
+    def weight(finding: Record) -> tuple[bool, int, bool]:
+        decides = finding["rule"] == decided_by
+        return (
+            not decides,
+            GRADES.index(finding["grade"]),
+            finding["outcome"] == "undetermined",
+        )
+
+    return weight
+
+
+def _merged(group: list[Record], absent: Record, rules: Mapping[str, Record]) -> MergedFinding:
+    first = group[0]
+    values = {name: value for finding in group for name, value in finding["values"].items()}
+    missing = _once(name for finding in group for name in finding["missing"])
+    return MergedFinding(
+        defect=first["defect"],
+        outcome=first["outcome"],
+        grade=first["grade"],
+        title=first["title"],
+        statements=_once(finding["statement"] for finding in group),
+        requirements=_once(_requirement(finding, rules) for finding in group),
+        values=tuple((name, plain_value(value)) for name, value in values.items()),
+        missing=tuple((name, absence(absent.get(name))) for name in missing),
+        remedies=_once(remedy(f["remedy"]) for f in group if f["remedy"]),
+        cautions=_once(caution for finding in group for caution in finding["cautions"]),
+        concessions=_once(_concession(f["concession"]) for f in group if f["concession"]),
+        waits_for=_waits_for(first["outcome"], missing, absent),
+    )
+
+
+def _once(items: Iterable[Any]) -> tuple[Any, ...]:
+    """Each different item once, in order of first appearance."""
+    return tuple(dict.fromkeys(items))
+
+
+def _requirement(finding: Record, rules: Mapping[str, Record]) -> Requirement:
+    criterion = finding["criterion"]
+    doubt = CONFIDENCE_MEANING[criterion["confidence"]]
+    parts = [criterion["title"], criterion["clause"], f"“{criterion['word']}”", doubt]
+    why = rules[finding["rule"]]["why"] if finding["rule"] in rules else ""
+    source = ", ".join(part for part in parts if part)
+    return Requirement(finding["rule"], finding["title"], source, why)
+
+
+def remedy(record: Record) -> Remedy:
+    """A remedy of the record with its patch in one line a key."""
+    patch = record["patch"] or {}
+    return Remedy(
+        record["text"],
+        tuple(record["breaks"]),
+        tuple((key, plain_value(value)) for key, value in patch.items()),
+    )
+
+
+def _concession(record: Record) -> Concession:
+    state = "in force" if record["in_force"] else "not in force"
+    text = f"{state}, until {record['until']}, granted by {record['by']}: {record['reason']}"
+    return Concession(text, record["in_force"])
+
+
+def absence(record: Record | None) -> str:
+    """Why a fact is absent, and what the owner could declare."""
+    if record is None:
+        return "not established"
+    reason = REASON_MEANING[record["reason"]]
+    keys = ", ".join(record["keys"])
+    return f"{reason}; could be declared by: {keys}" if keys else reason
+
+
+def _waits_for(result: str, missing: tuple[str, ...], absent: Record) -> tuple[str, ...]:
+    if result != "undetermined":
+        return ()
+    reasons = [absent[name] for name in missing if name in absent]
+    questions = _once(question for reason in reasons for question in reason["questions"])
+    keys = _once(
+        f"key:{key}"
+        for reason in reasons
+        if reason["reason"] == "undeclared" or not reason["questions"]
+        for key in reason["keys"]
+    )
+    return questions + keys

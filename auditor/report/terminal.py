@@ -1,0 +1,99 @@
+"""The report as a summary for a terminal: plain text, one screen, worst first.
+
+Colour is only added when asked for, around words that carry the meaning without it.
+"""
+
+from collections.abc import Iterator, Mapping
+from textwrap import wrap
+from typing import Any
+
+from auditor.report.sheet_view import Sheet
+from auditor.report.text import clipped
+from auditor.report.view import View, view
+from auditor.report.words import plural
+
+_STYLES: Mapping[str, str] = {"hold": "1;31", "open": "1;34", "conditions": "1", "no objection": ""}
+"""Select Graphic Rendition parameters, ECMA-48 8.3.117."""
+
+_LABEL = 14
+_COLUMNS = ("required", "tables", "passive", "peer", "designer")
+_MOST_ERRORS = 4
+
+
+def render(
+    record: Mapping[str, Any], *, width: int = 80, height: int = 24, colour: bool = False
+) -> str:
+    """The summary: ``height`` lines of ``width`` columns, more only for the worst set's own.
+
+    As many sets as fit are shown, the worst first, and the line below counts the others.
+    """
+    report = view(record)
+    head, foot = list(_head(report, width)), list(_foot(report, width))
+    room = height - len(head) - len(foot) - 1
+    body: list[str] = []
+    shown = 0
+    for sheet in report.sheets:
+        lines = _sheet(sheet, width, colour)
+        if body and len(body) + len(lines) > room:
+            break
+        body += lines
+        shown += 1
+    if left := len(report.sheets) - shown:
+        body.append(f"{plural(left, 'more set')}, none of a worse position.")
+    return "\n".join([*head, *body, *foot]) + "\n"
+
+
+def _head(report: View, width: int) -> Iterator[str]:
+    yield clipped(f"Group parameters reviewed as of {report.as_of}: {report.size}", width)
+    if report.worst is not None:
+        yield "   ".join(f"{name} {count}" for name, count in report.positions)
+    for problem in report.problems[:_MOST_ERRORS]:
+        yield from _entry("not read", problem, width)
+    if len(report.problems) > _MOST_ERRORS:
+        yield from _entry("", f"and {len(report.problems) - _MOST_ERRORS} more", width)
+    for notice in report.notices:
+        yield from _entry("notice", notice, width)
+    if report.sheets:
+        yield ""
+        yield f"{'position':<{_LABEL}}{'bits':>4}{' '.join(f'{name:>8}' for name in _COLUMNS)}  set"
+
+
+def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
+    strength = sheet.strength
+    figures = [
+        str(strength.required),
+        strength.tables_text,
+        strength.passive.text,
+        strength.peer.text,
+        strength.designer.text,
+    ]
+    row = " " * 4 + " ".join(f"{figure:>8}" for figure in figures) + "  "
+    more = len(sheet.places) - 1
+    places = sheet.places[0] + (f" and {plural(more, 'more place')}" if more else "")
+    return [
+        _styled(f"{sheet.position:<{_LABEL}}", sheet.position, colour)
+        + row
+        + clipped(sheet.name, max(width - _LABEL - len(row), 8)),
+        *_entry("", f"{places}: {sheet.reason}", width),
+    ]
+
+
+def _foot(report: View, width: int) -> Iterator[str]:
+    if not report.sheets:
+        yield "Nothing was reviewed."
+    if report.questions:
+        yield f"{plural(len(report.questions), 'question')} open."
+    yield from wrap(" ".join(report.cautions), width)
+
+
+def _entry(label: str, text: str, width: int) -> list[str]:
+    """A label and at most two lines of text beside it."""
+    room = width - _LABEL
+    first, *others = wrap(text, room) or [""]
+    lines = [first, *([clipped(" ".join(others), room)] if others else [])]
+    return [f"{label if number == 0 else '':<{_LABEL}}{line}" for number, line in enumerate(lines)]
+
+
+def _styled(text: str, position: str, colour: bool) -> str:
+    style = _STYLES[position]
+    return f"\x1b[{style}m{text}\x1b[0m" if colour and style else text

@@ -1,0 +1,140 @@
+"""What the words of a record say in a sentence: positions, outcomes, usage, values.
+
+One table for each closed list of words; a test holds them against the published schema.
+"""
+
+from collections.abc import Mapping
+from typing import Any
+
+from auditor.report.text import Number
+
+POSITIONS = ("hold", "open", "conditions", "no objection")
+"""Worst first."""
+
+POSITION_MEANING: Mapping[str, str] = {
+    "hold": "Do not release: a major requirement is not met.",
+    "open": "Not decided: whether a major requirement is met could not be established.",
+    "conditions": "Release with conditions: only minor points stand.",
+    "no objection": "No objection: no major or minor requirement is unmet or undecided.",
+}
+
+GRADES = ("major", "minor", "observation")
+"""Heaviest first."""
+
+ATTACKERS = ("passive", "peer", "designer")
+"""Each can do all that the one before can."""
+
+ATTACKER_MEANING: Mapping[str, str] = {
+    "passive": "sees public values",
+    "peer": "also sends values",
+    "designer": "chose the parameters",
+}
+
+STANDING_MEANING: Mapping[str, str] = {
+    "proven": "proven",
+    "probable": "probable, with an error bound",
+    "attested": "attested: our own record of search effort, which nobody can check",
+    "declared": "on the owner's word",
+}
+
+REASON_MEANING: Mapping[str, str] = {
+    "undeclared": "not declared",
+    "undefined": "not defined for this set",
+    "unsettled": "not settled",
+}
+
+CONFIDENCE_MEANING: Mapping[str, str] = {
+    "confirmed": "",
+    "secondary": "as restated elsewhere",
+    "memory": "from memory, to be confirmed in the document",
+}
+
+_CHECKS: Mapping[str, str] = {
+    "range": "range",
+    "membership": "subgroup membership",
+    "cofactor": "multiplied by the cofactor",
+    "certified": "certified values only",
+}
+
+_USES: Mapping[str, str] = {
+    "single": "used once",
+    "reused": "reused",
+    "static": "static",
+}
+
+
+def outcome(grade: str, result: str) -> str:
+    """The audit words for a finding: 'major nonconformity', 'undetermined major', 'observation'."""
+    if result == "undetermined":
+        return f"undetermined {grade}"
+    return grade if grade == "observation" else f"{grade} nonconformity"
+
+
+def usage(declaration: Mapping[str, Any]) -> tuple[str, ...]:
+    """How the owner uses the numbers: the purpose first, then a clause for each party."""
+    purpose = [str(declaration.get("purpose", "purpose not declared")).replace("-", " ")]
+    purpose += [str(declaration[key]) for key in ("scheme", "protocol") if key in declaration]
+    if "message_bits" in declaration:
+        purpose.append(f"messages of {declaration['message_bits']} bits")
+    if "parties" in declaration:
+        parties = tuple(f"{item['role']}: {_party(item)}" for item in declaration["parties"])
+    else:
+        parties = (_party(declaration),)
+    return (", ".join(purpose), *parties)
+
+
+def _party(record: Mapping[str, Any]) -> str:
+    exponent = record.get("exponent", {})
+    width = exponent.get("bits")
+    bits = "exponent of no stated width" if width is None else f"{width}-bit exponent"
+    use = _USES[exponent["use"]] if "use" in exponent else "use not declared"
+    if "peer_check" not in record:
+        checks = "no word on what is done to received values"
+    elif record["peer_check"]:
+        checks = "received values checked: " + ", ".join(_CHECKS[c] for c in record["peer_check"])
+    else:
+        checks = "received values not checked"
+    return f"{bits}, {use}; {checks}"
+
+
+def plain_value(value: Any) -> str:
+    """A value of a record in one line, long integers shortened."""
+    match value:
+        case bool():
+            return "yes" if value else "no"
+        case None:
+            return "none"
+        case int():
+            return Number.read(value).short
+        case float():
+            return f"{value:.2f}"
+        case str():
+            return _number_or_text(value)
+        case [[_, _], *_]:
+            return " · ".join(power(prime, exponent) for prime, exponent in value)
+        case list():
+            return ", ".join(map(plain_value, value)) if value else "none"
+        case Mapping():
+            return ", ".join(f"{key} {plain_value(item)}" for key, item in value.items())
+    return str(value)
+
+
+def power(prime: int | str, exponent: int) -> str:
+    """A prime power, a long prime shortened."""
+    shown = plain_value(prime)
+    return shown if exponent == 1 else f"{shown}^{exponent}"
+
+
+def _number_or_text(value: str) -> str:
+    if not value.startswith("0x"):
+        return value
+    try:
+        number = Number.read(value)
+    except ValueError:
+        return value
+    return f"{number.short} ({number.length} bits)" if number.is_long else number.short
+
+
+def plural(count: int, singular: str, several: str | None = None) -> str:
+    """'1 set', '2 sets'."""
+    return f"{count:,} {singular if count == 1 else several or singular + 's'}"
