@@ -1,0 +1,102 @@
+"""Where the home-made numbers of the samples come from: labels, hashed.
+
+Every number is a function of its label by SHA-256, so that anybody can make it again and see that
+nothing was chosen. ``python samples/derive.py`` prints them all; a test compares a part of it with
+the sample documents. The numbers are for demonstration only.
+"""
+
+import hashlib
+
+import gmpy2
+
+SIEVE = [prime for prime in range(3, 20_000) if all(prime % d for d in range(2, 142) if d < prime)]
+
+
+def bits_from(label: str, bits: int) -> int:
+    """An integer of exactly ``bits`` bits: the label hashed with a counter, top bit set."""
+    blocks = -(-bits // 256)
+    text = b"".join(
+        hashlib.sha256(f"{label}/{block}".encode()).digest() for block in range(blocks)
+    )
+    value = int.from_bytes(text, "big") >> (256 * blocks - bits)
+    return value | 1 << (bits - 1)
+
+
+def prime(label: str, bits: int) -> int:
+    """The least prime from the label's integer upwards."""
+    return int(gmpy2.next_prime(bits_from(label, bits) - 1))
+
+
+def safe_prime(label: str, bits: int) -> int:
+    """The least p >= the label's integer with p and (p-1)/2 prime."""
+    q = bits_from(label, bits - 1) | 1
+    residues = [(small, q % small) for small in SIEVE]
+    step = 0
+    while True:
+        clear = all(
+            (residue + step) % small and (2 * (residue + step) + 1) % small
+            for small, residue in residues
+        )
+        if clear and gmpy2.powmod(2, q + step - 1, q + step) == 1:
+            p = 2 * (q + step) + 1
+            if gmpy2.is_prime(q + step, 30) and gmpy2.is_prime(p, 30):
+                return p
+        step += 2
+
+
+def with_subgroup(label: str, bits: int, q: int) -> int:
+    """The least prime p = 1 modulo 2q from the label's integer upwards."""
+    start = bits_from(label, bits)
+    p = start - start % (2 * q) + 2 * q + 1
+    while not gmpy2.is_prime(p, 30):
+        p += 2 * q
+    return p
+
+
+def element_of_order(p: int, q: int) -> int:
+    """The (p-1)/q-th power of the least base for which that is not 1: an element of order q."""
+    base = 2
+    while (g := int(gmpy2.powmod(base, (p - 1) // q, p))) == 1:
+        base += 1
+    return g
+
+
+def smooth_prime(label: str, bits: int, largest: int) -> tuple[int, list[int]]:
+    """A prime p with p-1 twice a product of primes of ``largest`` bits, and those primes."""
+    count = (bits - 1) // largest
+    factors = [prime(f"{label}/factor {index}", largest) for index in range(count)]
+    body = 2
+    for factor in factors:
+        body *= factor
+    index = 0
+    while True:
+        last = prime(f"{label}/last {index}", bits - body.bit_length() + 1)
+        if gmpy2.is_prime(body * last + 1, 30):
+            return body * last + 1, sorted([2, *factors, last])
+        index += 1
+
+
+if __name__ == "__main__":
+    crane_q = prime("crane enrolment q", 256)
+    crane_p = with_subgroup("crane enrolment p", 2048, crane_q)
+    gate_q = prime("lock gate signing q", 256)
+    gate_p = with_subgroup("lock gate signing p", 3072, gate_q)
+    tug_p = safe_prime("tug dispatch p", 2048)
+    tide_n = prime("tide gauge first", 1024) * prime("tide gauge second", 1024)
+    dredge_p, dredge_factors = smooth_prime("dredger log p", 2048, 40)
+    ferry_p = prime("ferry timetable p", 2048)
+    for name, value in sorted(
+        {
+            "crane enrolment q": crane_q,
+            "crane enrolment p": crane_p,
+            "crane enrolment g": element_of_order(crane_p, crane_q),
+            "lock gate signing q": gate_q,
+            "lock gate signing p": gate_p,
+            "lock gate signing g": element_of_order(gate_p, gate_q),
+            "tug dispatch p": tug_p,
+            "tide gauge n": tide_n,
+            "dredger log p": dredge_p,
+            "ferry timetable p": ferry_p,
+        }.items()
+    ):
+        print(f"{name}: {value:#x}")
