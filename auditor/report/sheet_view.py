@@ -83,6 +83,14 @@ class Sheet:
         """The remedy of the deciding finding."""
         return next(iter(self.deciding.remedies), None) if self.deciding else None
 
+    def remedies(self, number: int) -> tuple[tuple[Remedy, int], ...]:
+        """The remedies of the finding of that number, each with the number that first names it."""
+        first: dict[Remedy, int] = {}
+        for place, finding in enumerate(self.findings, 1):
+            for remedy in finding.remedies:
+                first.setdefault(remedy, place)
+        return tuple((remedy, first[remedy]) for remedy in self.findings[number - 1].remedies)
+
     @property
     def further_remedies(self) -> int:
         """How many other remedies the sheet names."""

@@ -17,7 +17,7 @@ _STYLES: Mapping[str, str] = {"hold": "1;31", "open": "1;34", "conditions": "1",
 
 _LABEL = 14
 _COLUMNS = ("required", "tables", "passive", "peer", "designer")
-_MOST_ERRORS = 4
+_MOST_LISTED = 3
 
 
 def render(
@@ -47,15 +47,12 @@ def _head(report: View, width: int) -> Iterator[str]:
     yield clipped(f"Group parameters reviewed as of {report.as_of}: {report.size}", width)
     if report.worst is not None:
         yield "   ".join(f"{name} {count}" for name, count in report.positions)
-    for problem in report.problems[:_MOST_ERRORS]:
-        yield from _entry("not read", problem, width)
-    if len(report.problems) > _MOST_ERRORS:
-        yield from _entry("", f"and {len(report.problems) - _MOST_ERRORS} more", width)
-    for notice in report.notices:
-        yield from _entry("notice", notice, width)
+    yield from _listed("not read", report.problems, width)
+    yield from _listed("notice", report.notices, width)
     if report.sheets:
         yield ""
-        yield f"{'position':<{_LABEL}}{'bits':>4}{' '.join(f'{name:>8}' for name in _COLUMNS)}  set"
+        columns = " ".join(f"{name:>8}" for name in _COLUMNS)
+        yield f"{'position':<{_LABEL}}{columns}  set (figures are bits)"
 
 
 def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
@@ -67,7 +64,7 @@ def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
         strength.peer.text,
         strength.designer.text,
     ]
-    row = " " * 4 + " ".join(f"{figure:>8}" for figure in figures) + "  "
+    row = " ".join(f"{figure:>8}" for figure in figures) + "  "
     more = len(sheet.places) - 1
     places = sheet.places[0] + (f" and {plural(more, 'more place')}" if more else "")
     return [
@@ -84,6 +81,13 @@ def _foot(report: View, width: int) -> Iterator[str]:
     if report.questions:
         yield f"{plural(len(report.questions), 'question')} open."
     yield from wrap(" ".join(report.cautions), width)
+
+
+def _listed(label: str, items: tuple[str, ...], width: int) -> Iterator[str]:
+    for item in items[:_MOST_LISTED]:
+        yield from _entry(label, item, width)
+    if len(items) > _MOST_LISTED:
+        yield from _entry(label, f"and {len(items) - _MOST_LISTED:,} more", width)
 
 
 def _entry(label: str, text: str, width: int) -> list[str]:

@@ -95,6 +95,11 @@ class View:
         text = f"{plural(sets, 'parameter set')}, {plural(moduli, 'modulus', 'moduli')}"
         return text if sets == len(self.sheets) else f"{text}, {len(self.sheets)} different"
 
+    @property
+    def verdict(self) -> str:
+        """What the positions say about release, in one sentence."""
+        return words.verdict(dict(self.positions))
+
     @cached_property
     def questions(self) -> tuple[Question, ...]:
         """What is open, the question that most waits for first; the owner's after search's."""

@@ -18,6 +18,14 @@ POSITION_MEANING: Mapping[str, str] = {
     "no objection": "No objection: no major or minor requirement is unmet or undecided.",
 }
 
+_VERDICTS: Mapping[str, tuple[str, str]] = {
+    "hold": ("must not be released as declared", "must not be released as declared"),
+    "open": ("is not decided yet", "are not decided yet"),
+    "conditions": ("may be released with conditions", "may be released with conditions"),
+    "no objection": ("raises no objection", "raise no objection"),
+}
+"""What is said of one set, and of several."""
+
 GRADES = ("major", "minor", "observation")
 """Heaviest first."""
 
@@ -61,6 +69,20 @@ _USES: Mapping[str, str] = {
     "reused": "reused",
     "static": "static",
 }
+
+
+def verdict(positions: Mapping[str, int]) -> str:
+    """What so many sets of each position mean for release, in one sentence."""
+    total = sum(positions.values())
+    if total == 0:
+        return "Nothing was reviewed."
+    parts = [
+        (count, _VERDICTS[position][count > 1]) for position, count in positions.items() if count
+    ]
+    if len(parts) == 1:
+        count, text = parts[0]
+        return f"The one parameter set {text}." if count == 1 else f"All {count:,} sets {text}."
+    return f"Of {total:,} parameter sets, " + ", ".join(f"{n:,} {text}" for n, text in parts) + "."
 
 
 def outcome(grade: str, result: str) -> str:

@@ -1,0 +1,253 @@
+"""The report as Markdown for a ticket: worst first, cut at a finding, saying what was left out.
+
+Text from outside stands in code spans, where Markdown has no meaning: it cannot mention anybody,
+link, break a table or become markup. Sentences of rulebooks stay readable text with the few
+active characters defused.
+"""
+
+import re
+from collections.abc import Iterable, Iterator, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from auditor.report.questions_view import Question
+from auditor.report.sheet_view import Sheet
+from auditor.report.text import Number, clipped
+from auditor.report.view import View, view
+from auditor.report.words import plural
+
+LIMIT = 32_767
+"""Characters that the fields of common trackers hold; counted in UTF-16 units, the most that any
+of them counts for a character."""
+
+LEAST = 4_000
+"""A limit below this leaves no room for the head and the cautions."""
+
+_NAME, _MESSAGE = 120, 400
+_ACTIVE = re.compile(r"([\\`*\[\]|~]|<(?=[A-Za-z/!?])|(?<![0-9A-Za-z])_|_(?![0-9A-Za-z]))")
+_CALLING = re.compile(r"(@|://|\b(?i:www)\.|#(?=\d)|\b(?i:GH)-(?=\d))")
+
+
+def render(record: Mapping[str, Any], *, limit: int = LIMIT) -> str:
+    """The report in at most ``limit`` UTF-16 units. ValueError for a limit below :data:`LEAST`."""
+    if limit < LEAST:
+        raise ValueError(f"a limit of at least {LEAST:,} characters is needed, not {limit:,}")
+    report = view(record)
+    head, foot = "\n".join(_head(report)), "\n".join(_foot(report))
+    room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
+    parts = [
+        head,
+        _fitted("set", _DECISIONS, map(_row, report.sheets), room.share(3)),
+        *_findings(report, room),
+        _fitted("question", "\n## Open questions\n\n", map(_question, report.questions), room),
+        _fitted("message", "\n## Not read\n\n", map(_message, report.problems), room),
+        _fitted("entry", "\n## Skipped\n\n", map(_message, report.skipped), room),
+        foot,
+    ]
+    return "".join(part for part in parts if part)
+
+
+_RESERVE = 600
+"""Kept free for the sentences that say what was left out: five, none above 120 characters."""
+
+
+@dataclass(slots=True)
+class _Room:
+    """UTF-16 units that may still be written."""
+
+    left: int
+
+    def share(self, parts: int) -> "_Room":
+        """One of so many equal parts; what is taken from it is taken from the whole."""
+        return _Share(self.left // parts, self)
+
+    def take(self, text: str) -> bool:
+        """Whether ``text`` fits; its room is then taken."""
+        size = _units(text)
+        if size > self.left:
+            return False
+        self.left -= size
+        return True
+
+
+@dataclass(slots=True)
+class _Share(_Room):
+    whole: _Room
+
+    def take(self, text: str) -> bool:
+        size = _units(text)
+        if size > self.left:
+            return False
+        self.left -= size
+        self.whole.left -= size
+        return True
+
+
+def _units(text: str) -> int:
+    return len(text.encode("utf-16-le")) // 2
+
+
+def code(text: str, limit: int = _NAME) -> str:
+    """Outside text as one code span, safe within a table too; nothing in it is active.
+
+    The fence is longer than any run of backticks in the text (CommonMark 0.31.2, 6.1); a pipe is
+    escaped as tables want it (GitHub Flavored Markdown 0.29, 4.10).
+    """
+    text = re.sub(r"\s+", " ", clipped(text, limit)) or " "
+    fence = "`" * (max(map(len, re.findall(r"`+", text)), default=0) + 1)
+    pad = " " if text[0] == "`" or text[-1] == "`" else ""
+    return f"{fence}{pad}{text}{pad}{fence}".replace("|", "\\|")
+
+
+def prose(text: str) -> str:
+    """A sentence with its active characters escaped and what would call somebody taken apart."""
+    text = _ACTIVE.sub(r"\\\1", re.sub(r"\s+", " ", text))
+    return _CALLING.sub(r"`\1`", text.replace("&", "&amp;"))
+
+
+def _head(report: View) -> Iterator[str]:
+    yield "# Review of finite-field group parameters"
+    yield ""
+    yield f"**{report.verdict}**"
+    yield ""
+    yield f"{report.size[0].upper()}{report.size[1:]}."
+    yield ""
+    yield f"As of {report.as_of}, {code(report.tool)}, effort {code(report.effort)}."
+    books = ", ".join(f"{code(book.name)} ({code(book.sha256[:12])})" for book in report.books[:20])
+    yield f"Rulebooks (SHA-256): {books or 'none'}."
+    yield f"{plural(len(report.inputs), 'input')}; record SHA-256 {code(report.record_digest)}."
+    for notice in report.notices[:10]:
+        yield ""
+        yield f"Note: {code(notice, _MESSAGE)}"
+    yield ""
+
+
+_DECISIONS = """
+## Decision sheet
+
+Bits: what is required, what published tables give, and the least work by model for one who sees
+public values (passive), also sends values (peer), or chose the parameters (designer). A model
+figure never overrules a published figure for the same thing.
+
+| | position | set | required | tables | passive | peer | designer | decided by |
+| ---: | --- | --- | ---: | ---: | ---: | ---: | ---: | --- |
+"""
+
+
+def _row(sheet: Sheet) -> str:
+    strength = sheet.strength
+    cells = [
+        str(sheet.number),
+        f"**{sheet.position}**" if sheet.position == "hold" else sheet.position,
+        code(sheet.name, 60),
+        str(strength.required),
+        strength.tables_text,
+        strength.passive.text,
+        strength.peer.text,
+        strength.designer.text,
+        prose(clipped(sheet.reason, 160)),
+    ]
+    return f"| {' | '.join(cells)} |\n"
+
+
+def _findings(report: View, room: _Room) -> Iterator[str]:
+    """Sheets with their findings, worst first, while they fit; then what was left out."""
+    left_out, sets_left_out, title = 0, 0, "\n## Findings\n"
+    for sheet in report.sheets:
+        texts = [_finding(sheet, number) for number in range(1, len(sheet.findings) + 1)]
+        opening = title + _opening(sheet)
+        whole = left_out == 0 and room.take(opening + (texts[0] if texts else ""))
+        if not whole:
+            left_out, sets_left_out = left_out + len(texts), sets_left_out + 1
+            continue
+        yield opening + "".join(texts[:1])
+        title = ""
+        for text in texts[1:]:
+            if left_out == 0 and room.take(text):
+                yield text
+            else:
+                left_out += 1
+    if left_out or sets_left_out:
+        yield (
+            f"\nLeft out for length: {plural(left_out, 'finding')}, and the sheets of "
+            f"{plural(sets_left_out, 'set')}; the worst are above.\n"
+        )
+
+
+def _opening(sheet: Sheet) -> str:
+    numbers = [("Modulus", sheet.modulus), ("Generator", sheet.generator)]
+    if sheet.subgroup_order is not None:
+        numbers.append(("Declared order", sheet.subgroup_order))
+    places = ", ".join(code(place) for place in sheet.places[:8])
+    if len(sheet.places) > 8:
+        places += f" and {len(sheet.places) - 8:,} more"
+    lines = [
+        f"\n### {sheet.number}. {code(sheet.name)}: {sheet.position}",
+        "",
+        prose(sheet.meaning) if sheet.findings else prose(f"{sheet.meaning} {sheet.reason}"),
+        "",
+        f"- Where: {places}",
+        *(f"- {name}: {_number(number)}" for name, number in numbers),
+        f"- Usage: {'; '.join(code(part, 200) for part in sheet.usage[:6])}",
+        f"- On the owner's word: {', '.join(map(code, sheet.owners_word)) or 'nothing'}",
+        *(f"- Limit: {prose(clipped(limit, _MESSAGE))}" for limit in sheet.limits),
+    ]
+    return "\n".join(lines) + "\n"
+
+
+def _number(number: Number) -> str:
+    text = code(number.short)
+    return f"{text}, {number.length} bits, SHA-256 {code(number.mark)}" if number.is_long else text
+
+
+def _finding(sheet: Sheet, number: int) -> str:
+    finding = sheet.findings[number - 1]
+    lines = [f"\n{number}. **{finding.words}**: {prose(finding.statements[0])}", ""]
+    lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
+    lines += [f"   - Requirement: {prose(item.text)}" for item in finding.requirements]
+    for name, why in finding.missing if finding.outcome == "undetermined" else ():
+        lines.append(f"   - Missing: {code(name)}, {prose(why)}")
+    for remedy, first in sheet.remedies(number):
+        if first != number:
+            lines.append(f"   - Remedy: as for {first}.")
+            continue
+        lines.append(f"   - Remedy: {prose(remedy.text)}")
+        lines += [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
+    lines += [f"   - Caution: {prose(caution)}" for caution in finding.cautions]
+    lines += [f"   - Concession: {prose(item.text)}" for item in finding.concessions]
+    return "\n".join(lines) + "\n"
+
+
+def _question(question: Question) -> str:
+    sets = ", ".join(f"{number}" for number, _, _ in question.waiting[:20])
+    waiting = f" Sets that wait for it: {sets}." if sets else ""
+    effects = " ".join(prose(effect) for effect in question.effects[:3])
+    return (
+        f"- {prose(question.about)} Cost: {prose(question.cost)}.{waiting} {effects}".rstrip()
+        + "\n"
+    )
+
+
+def _message(text: str) -> str:
+    return f"- {code(text, _MESSAGE)}\n"
+
+
+def _fitted(kind: str, title: str, items: Iterable[str], room: _Room) -> str:
+    """A section with as many of its items as fit, and how many do not."""
+    texts = list(items)
+    shown: list[str] = []
+    for text in texts:
+        if not room.take(text if shown else title + text):
+            break
+        shown.append(text)
+    left = len(texts) - len(shown)
+    note = f"\nLeft out for length: {plural(left, kind)}.\n" if left else ""
+    return (title if shown else "") + "".join(shown) + note
+
+
+def _foot(report: View) -> Iterator[str]:
+    yield ""
+    yield "## Cautions"
+    yield ""
+    yield from (f"- {prose(caution)}" for caution in report.cautions)
+    yield ""
