@@ -1,0 +1,34 @@
+"""Inverses modulo a number whose factors are sought: a failure is a find."""
+
+from collections.abc import Sequence
+
+import gmpy2
+from gmpy2 import mpz
+
+
+class Divisor(Exception):
+    """A common divisor of the modulus and a number that should have been invertible."""
+
+    def __init__(self, divisor: mpz) -> None:
+        super().__init__(divisor)
+        self.divisor = divisor
+
+
+def inverses(numbers: Sequence[mpz], n: mpz) -> list[mpz]:
+    """The inverses modulo ``n``, by one inversion and three products a number (Montgomery 1987).
+
+    Raises Divisor with gcd(product, n) if that is not 1.
+    """
+    products = [mpz(1)]
+    for number in numbers:
+        products.append(products[-1] * number % n)
+    common = gmpy2.gcd(products[-1], n)
+    if common != 1:
+        raise Divisor(common)
+    rest = gmpy2.invert(products.pop(), n)
+    inverted = []
+    for number in reversed(numbers):
+        inverted.append(rest * products.pop() % n)
+        rest = rest * number % n
+    inverted.reverse()
+    return inverted

@@ -1,0 +1,189 @@
+"""The second stage of the p-1, p+1 and elliptic-curve methods, over any of their groups.
+
+After stage one a point Q is the identity modulo a prime factor of n except for one prime l in
+(b1, b2]. Write l = i d + j with j coprime to d. Then i d Q and -j Q are equal modulo the factor, so
+their coordinates agree (the coordinate of a point and of its negative are the same), and the
+product of all differences of coordinates shares the factor with n.
+
+The residues j modulo d up to sign are sums over the prime powers q of d of a d/q with a a unit
+modulo q (Chinese remainders), so the multiples j Q come from few additions, in batches. The product
+over all pairs is a polynomial with the roots coordinate(j Q), reduced by products over blocks of
+coordinate(i d Q) (Montgomery and Silverman 1990; Zimmermann and Dodson, "20 years of ECM", 2006,
+section 5), by FLINT's fast arithmetic.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import lru_cache
+from math import prod
+from typing import Protocol, TypeVar
+
+import flint
+import gmpy2
+from gmpy2 import mpz
+
+P = TypeVar("P")
+
+
+class Group(Protocol[P]):
+    """An abelian group modulo n, whose factors of n show where group laws or coordinates fail."""
+
+    @property
+    def n(self) -> mpz:
+        """The modulus."""
+
+    def add_each(self, points: Sequence[P], addend: P) -> list[P]:
+        """Each point plus ``addend``; may raise Divisor."""
+
+    def negative(self, point: P) -> P:
+        """The inverse of a point."""
+
+    def coordinate(self, point: P) -> mpz:
+        """A residue modulo n that is the same for a point and its negative only."""
+
+
+@dataclass(frozen=True, slots=True)
+class Wheel:
+    """How [b1, b2] is covered: d and its prime powers, and the multiples first..last of d."""
+
+    d: int
+    powers: tuple[tuple[int, int], ...]
+    first: int
+    last: int
+
+    @property
+    def residues(self) -> int:
+        """Units modulo d up to sign."""
+        return prod(q - q // p for p, q in self.powers) // 2
+
+    @property
+    def multiples(self) -> int:
+        """Multiples of d that are used."""
+        return self.last - self.first + 1
+
+
+WHEELS = (
+    ((2, 4), (3, 3), (5, 5)),
+    ((2, 2), (3, 3), (5, 5), (7, 7)),
+    ((2, 4), (3, 3), (5, 5), (7, 7)),
+    ((2, 2), (3, 9), (5, 5), (7, 7)),
+    ((2, 4), (3, 9), (5, 5), (7, 7)),
+    ((2, 2), (3, 3), (5, 5), (7, 7), (11, 11)),
+    ((2, 4), (3, 3), (5, 5), (7, 7), (11, 11)),
+    ((2, 2), (3, 9), (5, 5), (7, 7), (11, 11)),
+    ((2, 8), (3, 3), (5, 5), (7, 7), (11, 11)),
+    ((2, 4), (3, 9), (5, 5), (7, 7), (11, 11)),
+    ((2, 2), (3, 3), (5, 5), (7, 7), (11, 11), (13, 13)),
+    ((2, 4), (3, 3), (5, 5), (7, 7), (11, 11), (13, 13)),
+    ((2, 2), (3, 9), (5, 5), (7, 7), (11, 11), (13, 13)),
+    ((2, 4), (3, 9), (5, 5), (7, 7), (11, 11), (13, 13)),
+    ((2, 4), (3, 9), (5, 25), (7, 7), (11, 11), (13, 13)),
+    ((2, 2), (3, 3), (5, 5), (7, 7), (11, 11), (13, 13), (17, 17)),
+    ((2, 4), (3, 3), (5, 5), (7, 7), (11, 11), (13, 13), (17, 17)),
+)
+
+
+def _largest_offset(powers: Sequence[tuple[int, int]]) -> float:
+    """The largest sum of a d/q over the prime powers, as a multiple of d."""
+    return sum(max(_units(p, q)) / q for p, q in powers)
+
+
+def _units(p: int, q: int) -> list[int]:
+    """Units modulo q = p^e, positive halves of pairs of opposites."""
+    return [a for a in range(1, max(2, (q + 1) // 2)) if a % p]
+
+
+@lru_cache(maxsize=16)
+def wheel(b1: int, b2: int) -> Wheel:
+    """The cheapest wheel that covers the primes in [b1, b2]."""
+    return min((_covering(powers, b1, b2) for powers in WHEELS), key=_cost)
+
+
+def _covering(powers: tuple[tuple[int, int], ...], b1: int, b2: int) -> Wheel:
+    d, margin = prod(q for _, q in powers), _largest_offset(powers)
+    return Wheel(d, powers, max(1, int(b1 / d - margin)), int(b2 / d + margin) + 1)
+
+
+def _cost(wheel: Wheel) -> float:
+    """Relative cost, measured: building a block's polynomial, reducing it, one evaluation."""
+    residues, multiples = wheel.residues, wheel.multiples
+    size = residues * residues.bit_length()
+    blocks = -(-multiples // residues)
+    if blocks == 1:
+        return size + 3.5 * multiples * residues.bit_length()
+    return size * (1 + blocks + 1.2 * (blocks - 1) + 3.5)
+
+
+def common_divisor(group: Group[P], point: P, b1: int, b2: int) -> mpz:
+    """gcd(n, product over the pairs): shared with every prime factor modulo which ``point`` has a
+    prime order in (b1, b2]. May raise Divisor where a point is the identity modulo a factor."""
+    plan = wheel(b1, b2)
+    roots = [group.coordinate(p) for p in _small_steps(group, point, plan)]
+    giant = times(group, point, plan.d)
+    steps = progression(group, times(group, giant, plan.first), giant, plan.multiples)
+    return gmpy2.gcd(_product([group.coordinate(p) for p in steps], roots, group.n), group.n)
+
+
+def times(group: Group[P], point: P, scalar: int) -> P:
+    """A positive multiple of a point, by doubling and adding."""
+    result = point
+    for bit in bin(scalar)[3:]:
+        [result] = group.add_each([result], result)
+        if bit == "1":
+            [result] = group.add_each([result], point)
+    return result
+
+
+def progression(group: Group[P], first: P, step: P, count: int) -> list[P]:
+    """``count`` points from ``first`` by ``step``, doubling the list each time."""
+    points = [first]
+    while len(points) < count:
+        points += group.add_each(points[: count - len(points)], step)
+        [step] = group.add_each([step], step)
+    return points
+
+
+def _small_steps(group: Group[P], point: P, plan: Wheel) -> list[P]:
+    """j times the point for each unit j modulo d, up to sign.
+
+    The units of the largest prime power are taken from one half only; that fixes the sign.
+    """
+    points: list[P] = []
+    for p, q in reversed(plan.powers):
+        base = times(group, point, plan.d // q)
+        units = _units(p, q)
+        multiples = progression(group, base, base, units[-1])
+        part = [multiples[a - 1] for a in units]
+        if points and q > 2:
+            part += [group.negative(multiple) for multiple in part]
+        points = [s for m in part for s in group.add_each(points, m)] if points else part
+    return points
+
+
+def _product(values: Sequence[mpz], roots: Sequence[mpz], n: mpz) -> mpz:
+    """The product of all value - root, up to sign."""
+    ring = flint.fmpz_mod_ctx(int(n))
+    polynomials = flint.fmpz_mod_poly_ctx(ring)
+    with_roots = _from_roots(roots, polynomials)
+    block = len(roots)
+    if len(values) <= block:
+        results = with_roots.multipoint_evaluate([ring(int(value)) for value in values])
+    else:
+        reduced = polynomials.one()
+        for start in range(0, len(values), block):
+            factor = _from_roots(values[start : start + block], polynomials)
+            reduced = reduced * factor % with_roots
+        results = reduced.multipoint_evaluate([ring(int(root)) for root in roots])
+    product = mpz(1)
+    for result in results:
+        product = product * mpz(int(result)) % n
+    return product
+
+
+def _from_roots(roots: Sequence[mpz], polynomials: flint.fmpz_mod_poly_ctx) -> flint.fmpz_mod_poly:
+    """The monic polynomial with these roots, by a product tree."""
+    level = [polynomials([int(-root), 1]) for root in roots]
+    while len(level) > 1:
+        paired = [a * b for a, b in zip(level[::2], level[1::2], strict=False)]
+        level = paired + level[len(paired) * 2 :]
+    return level[0]
