@@ -151,7 +151,7 @@ def bounded_integer(digits: str, base: int) -> int:
         value = decimal(digits) if base == 10 else int(digits, base)
         if value.bit_length() <= MAX_BITS:
             return value
-    raise ValueError(f"an integer of more than {MAX_BITS} bits, expected at most {MAX_BITS}")
+    raise ValueError(f"an integer of more than {MAX_BITS} bits, the most that is read")
 
 
 def core_scalar(text: str, *, floats: bool = True) -> Any:
