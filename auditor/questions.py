@@ -21,6 +21,8 @@ class Asks(StrEnum):
     """m, and hints: the prime factors of m that cost next to nothing to find."""
     FACTORIZATION = "factorization"
     """m, and the composite rest of it that is still unfactored."""
+    MODULUS_FACTORS = "modulus-factors"
+    """n, a composite modulus, and the composite rest of it that is still unfactored."""
     ORDER = "order"
     """n, a, t, c: the order of a, where a^t = 1 and t is factored up to c."""
     MEMBERSHIP = "membership"
@@ -54,7 +56,7 @@ class Question:
                 return f"Is {first} prime?"
             case Asks.SMALL_FACTORS:
                 return f"Which small prime factors has {first}?"
-            case Asks.FACTORIZATION:
+            case Asks.FACTORIZATION | Asks.MODULUS_FACTORS:
                 size = self.integers[1].bit_length()
                 return f"Which prime factors has the {size}-bit composite {others[0]}?"
             case Asks.ORDER:

@@ -4,13 +4,13 @@ Order from partial knowledge: with the group exponent A*C, A factored and C not,
 divisor of A times an unknown divisor of C. What that already decides is final; the rest waits.
 """
 
-from math import gcd
+from math import gcd, log2
 
 from auditor.claims.base import product
 from auditor.facts import parts
 from auditor.facts.given import Given
-from auditor.facts.numbers import bits, log2_of
 from auditor.facts.registry import fact
+from auditor.routes.base import floor_bits
 
 
 @fact("generator.unit", "bool", "gcd(g, n) = 1")
@@ -31,7 +31,7 @@ def order_length(given: Given) -> int:
 
 @fact("generator.order_bits", "real", "log2 of ord(g)")
 def order_bits(given: Given) -> float:
-    return bits(log2_of(given.see(parts.generator_order_value)))
+    return floor_bits(log2(given.see(parts.generator_order_value)))
 
 
 @fact("generator.order_prime", "bool", "ord(g) is a prime")
@@ -74,7 +74,7 @@ def largest_prime_length(given: Given) -> int:
 
 @fact("generator.index_bits", "real", "log2 of phi(n)/ord(g)")
 def index_bits(given: Given) -> float:
-    return bits(log2_of(given.see(parts.group_order) // given.see(parts.generator_order_value)))
+    return floor_bits(log2(given.see(parts.group_order) // given.see(parts.generator_order_value)))
 
 
 @fact("generator.order_is_declared", "bool", "ord(g) is the declared q")

@@ -55,6 +55,7 @@ class Given:
     def __init__(self, declaration: Declaration, claims: Claims, run: RunValues) -> None:
         self.declaration = declaration
         self.run = run
+        self.consulted: set[str] = set()
         self._claims = claims
         self._known: dict[Callable[[Given], object], tuple[object, Trace]] = {}
         self._traces: list[Trace] = [Trace()]
@@ -87,6 +88,17 @@ class Given:
                 self.loosen(*missing.absent.questions)
             return default
 
+    def peek(self, part: Callable[["Given"], Value]) -> Value | Absent:
+        """The value of ``part`` or its absence, without resting on it; :meth:`see` it if it
+        decides."""
+        self._traces.append(Trace())
+        try:
+            return self.see(part)
+        except Missing as missing:
+            return missing.absent
+        finally:
+            self._traces.pop()
+
     def trace(self, part: Callable[["Given"], object]) -> Trace:
         """What ``part``, already seen, looked at."""
         return self._known[part][1]
@@ -113,6 +125,7 @@ class Given:
     def cite(self, claim: Claim) -> None:
         """Say that the value in the making rests on ``claim``."""
         self._traces[-1].claims.add(claim.id)
+        self.consulted.add(claim.id)
 
     def word(self, key: str) -> str | int:
         """The declared word for ``key``; absent as ``undeclared`` where there is none."""
@@ -121,6 +134,10 @@ class Given:
             self.undeclared(key)
         self.rest_on(key)
         return value
+
+    def absent(self, absent: Absent) -> NoReturn:
+        """The value in the making is absent in that way."""
+        raise Missing(absent)
 
     def undeclared(self, *keys: str) -> NoReturn:
         """The owner would have to say."""
@@ -152,14 +169,17 @@ class Given:
         self.cite(claim)
         return claim.member
 
-    def factorization(self, m: int, hints: tuple[int, ...] = ()) -> Factorization:
-        """The most complete factorization of ``m``, by a claim; loose while a rest is left."""
+    def factorization(
+        self, m: int, hints: tuple[int, ...] = (), deeper: Asks = Asks.FACTORIZATION
+    ) -> Factorization:
+        """The most complete factorization of ``m``, by a claim; loose while a rest is left, with
+        ``deeper`` as the question that is then open."""
         claim = self._claims.factorization(m)
         if claim is None:
             self.unsettled(Question(Asks.SMALL_FACTORS, (m, *hints)))
         self.cite(claim)
         if claim.rest > 1:
-            self.loosen(Question(Asks.FACTORIZATION, (m, claim.rest)))
+            self.loosen(Question(deeper, (m, claim.rest)))
         return claim
 
     @property

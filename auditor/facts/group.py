@@ -1,9 +1,11 @@
 """Facts about the unit group modulo n."""
 
+from math import log2
+
 from auditor.facts import parts
 from auditor.facts.given import Given
-from auditor.facts.numbers import bits, log2_of
 from auditor.facts.registry import fact
+from auditor.routes.base import floor_bits
 
 
 @fact("group.cyclic", "bool", "a primitive root exists")
@@ -26,12 +28,12 @@ def cyclic(given: Given) -> bool:
 
 @fact("group.order_bits", "real", "log2 of phi(n)")
 def order_bits(given: Given) -> float:
-    return bits(log2_of(given.see(parts.group_order)))
+    return floor_bits(log2(given.see(parts.group_order)))
 
 
 @fact("group.exponent_bits", "real", "log2 of lambda(n)")
 def exponent_bits(given: Given) -> float:
-    return bits(log2_of(given.see(parts.group_exponent)))
+    return floor_bits(log2(given.see(parts.group_exponent)))
 
 
 @fact("group.factored", "bool", "present, and true, when the factorization of phi(n) is complete")

@@ -64,5 +64,4 @@ def smallest_factor_length(given: Given) -> int:
     factors, rest = given.see(parts.known_modulus_factors)
     lengths = [prime.bit_length() for prime, _ in factors]
     # A composite rest without known factors has one of at most half its length.
-    bound = min([*lengths, (rest.bit_length() + 1) // 2] if rest > 1 else lengths)
-    return bound
+    return min([*lengths, (rest.bit_length() + 1) // 2] if rest > 1 else lengths)

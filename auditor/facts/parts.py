@@ -38,14 +38,13 @@ def modulus_factors(given: Given) -> Factors:
         return ((2, n.bit_length() - 1),)
     factors, rest = given.see(known_modulus_factors)
     if rest > 1:
-        given.unsettled(Question(Asks.FACTORIZATION, (n, rest)))
-    given.settle()
+        given.unsettled(Question(Asks.MODULUS_FACTORS, (n, rest)))
     return factors
 
 
 def known_modulus_factors(given: Given) -> tuple[Factors, int]:
     """The known prime factors of a modulus that is not a prime, and the unfactored rest."""
-    claim = given.factorization(given.declaration.modulus)
+    claim = given.factorization(given.declaration.modulus, deeper=Asks.MODULUS_FACTORS)
     return claim.factors, claim.rest
 
 
@@ -152,5 +151,3 @@ def _raise_open(given: Given, part: object) -> None:
 def generator_order_value(given: Given) -> int:
     """ord(g) as a number."""
     return product(given.see(complete_generator_order))
-
-

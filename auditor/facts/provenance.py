@@ -30,7 +30,8 @@ def method(given: Given) -> str:
 @fact("provenance.verified", "bool", "the numbers were regenerated from what they are said to be")
 def verified(given: Given) -> bool:
     name, match = given.see(modulus.standard)
-    if match != "none" and standard_groups.find(name).constant is not None:
+    group = standard_groups.find(name) if match != "none" else None
+    if group is not None and group.formula is not None:
         return True
     if given.declaration.provenance is None:
         given.undeclared("provenance")

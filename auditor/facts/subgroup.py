@@ -1,9 +1,11 @@
 """Facts about the declared subgroup order q, and about the subgroups a peer can reach."""
 
+from math import log2
+
 from auditor.facts import parts
 from auditor.facts.given import Given
-from auditor.facts.numbers import bits, log2_of
 from auditor.facts.registry import fact
+from auditor.routes.base import floor_bits
 
 
 def declared_order(given: Given) -> int:
@@ -35,7 +37,7 @@ def cofactor_bits(given: Given) -> float:
     q, order = given.see(declared_order), given.see(parts.group_order)
     if q < 1 or order % q:
         given.undefined()
-    return bits(log2_of(order // q))
+    return floor_bits(log2(order // q))
 
 
 @fact("subgroup.small_factors_seen", "exhibit", "prime powers that an active peer can use")

@@ -112,5 +112,3 @@ def exponent_width(given: Given) -> int:
     narrowest = min(widths, key=lambda party: (party.exponent_bits or 0, party.role))
     given.rest_on(key_of(narrowest, "exponent.bits"))
     return narrowest.exponent_bits or 0
-
-

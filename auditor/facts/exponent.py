@@ -1,0 +1,72 @@
+"""Facts about what leaks of a private exponent through factors that are cheap to use."""
+
+from auditor.declaration import Party
+from auditor.facts import parts, usage
+from auditor.facts.given import Given
+from auditor.facts.registry import fact
+from auditor.routes.base import floor_bits
+from auditor.routes.confinement import Check
+from auditor.routes.factors import Factors
+from auditor.routes.leaks import confinement_leak_bits, public_leak_bits
+
+
+def generator_order(given: Given) -> Factors:
+    """ord(g) as far as it is known."""
+    order = given.see(parts.generator_order)
+    return Factors(order.factors, order.rest)
+
+
+def group_exponent(given: Given) -> Factors:
+    """lambda(n) as far as it is known."""
+    group = given.see(parts.exponent_factors)
+    return Factors(group.factors, group.rest)
+
+
+def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
+    """The parties that use an exponent again on values which no check keeps inside <g>.
+
+    Undefined where there is none; undeclared where a party that says too little may be one.
+    Signing receives no values. ``certified`` keeps nothing out by itself: whether the certifier
+    tests membership is not declared.
+    """
+    if given.declaration.purpose == "signature":
+        given.rest_on("purpose")
+        given.undefined()
+    exposed: list[tuple[Party, Check]] = []
+    for party in given.see(usage.parties):
+        checks, use = party.peer_check, party.exponent_use
+        if use == "single":
+            given.rest_on(usage.key_of(party, "exponent.use"))
+        elif checks is not None and {"membership", "cofactor"} & set(checks):
+            given.rest_on(usage.key_of(party, "peer_check"))
+        elif use is None or checks is None:
+            absent = {"exponent.use": use, "peer_check": checks}
+            given.undeclared(*(usage.key_of(party, k) for k, v in absent.items() if v is None))
+        else:
+            given.rest_on(usage.key_of(party, "exponent.use"), usage.key_of(party, "peer_check"))
+            exposed.append((party, "range" if "range" in checks else "none"))
+    if not exposed:
+        given.undefined()
+    return tuple(exposed)
+
+
+@fact(
+    "exponent.public_leak_bits_at_least",
+    "real",
+    "bits of an exponent that public values alone give away, through factors of ord(g) whose "
+    "logarithms cost at most 2^40",
+)
+def public_leak(given: Given) -> float:
+    return floor_bits(public_leak_bits(given.see(generator_order)))
+
+
+@fact(
+    "exponent.confinement_leak_bits_at_least",
+    "real",
+    "bits of a reused exponent that a peer learns under the declared checks, through factors that "
+    "cost at most 2^40 trials",
+)
+def confinement_leak(given: Given) -> float:
+    order, group = given.see(generator_order), given.see(group_exponent)
+    leaks = [confinement_leak_bits(order, group, check) for _, check in given.see(exposed_parties)]
+    return floor_bits(max(leaks))

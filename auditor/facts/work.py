@@ -1,0 +1,179 @@
+"""The attack routes, fed with what is established about one parameter set.
+
+Each route here is a part in the sense of :class:`Given`: its work; undefined where the route is
+closed; absent where something it needs is.
+"""
+
+from collections.abc import Callable, Mapping
+from dataclasses import replace
+from math import log2
+from types import MappingProxyType
+
+from auditor.declaration import EVERYBODY
+from auditor.facts import exponent, parts, provenance, usage
+from auditor.facts.base import Absent
+from auditor.facts.given import Given
+from auditor.routes import composite_modulus as composites
+from auditor.routes import confinement as confinements
+from auditor.routes import hidden_form as hidden_forms
+from auditor.routes import number_field_sieve as sieves
+from auditor.routes import pohlig_hellman as pohlig_hellmans
+from auditor.routes import prime_power as prime_powers
+from auditor.routes import raw_message as raw_messages
+from auditor.routes import short_exponent as short_exponents
+from auditor.routes import smooth_part as smooth_parts
+from auditor.routes import square_root as square_roots
+from auditor.routes.base import Attacker, Closed, Work
+from auditor.routes.factors import Factors
+from auditor.routes.sieve_models import nist_bits
+
+RoutePart = Callable[[Given], Work]
+
+
+def _open(given: Given, outcome: Work | Closed) -> Work:
+    if isinstance(outcome, Closed):
+        given.undefined()
+    return outcome
+
+
+def _modulus_of_nature(given: Given, nature: str) -> int:
+    if given.see(parts.nature) != nature:
+        given.undefined()
+    return given.declaration.modulus
+
+
+def _generator_order(given: Given) -> Factors:
+    """ord(g); undefined for the identity, which generates nothing."""
+    order = given.see(exponent.generator_order)
+    if not order.known and order.complete:
+        given.undefined()
+    return order
+
+
+def number_field_sieve(given: Given) -> Work:
+    return sieves.number_field_sieve(_modulus_of_nature(given, "prime").bit_length())
+
+
+def hidden_form(given: Given) -> Work:
+    n = _modulus_of_nature(given, "prime")
+    verified = given.see_or(provenance.verified, False)
+    given.settle()
+    return _open(given, hidden_forms.hidden_form(n.bit_length(), verified))
+
+
+def square_root(given: Given) -> Work:
+    return _open(given, square_roots.square_root(given.see(_generator_order)))
+
+
+def pohlig_hellman(given: Given) -> Work:
+    return _open(given, pohlig_hellmans.pohlig_hellman(given.see(_generator_order)))
+
+
+def short_exponent(given: Given) -> Work:
+    return short_exponents.short_exponent(given.see(usage.exponent_width))
+
+
+def smooth_part_then_short_exponent(given: Given) -> Work:
+    width, order = given.see(usage.exponent_width), given.see(_generator_order)
+    return _open(given, smooth_parts.smooth_part_then_short_exponent(width, order))
+
+
+def confinement(given: Given) -> Work:
+    """The worst party's, with its name among the details where parties differ."""
+    exposed = given.see(exponent.exposed_parties)
+    keys = [usage.key_of(party, "exponent.bits") for party, _ in exposed]
+    silent = [key for (party, _), key in zip(exposed, keys, strict=True) if not party.exponent_bits]
+    if silent:
+        given.undeclared(*silent)
+    given.rest_on(*keys)
+    order, group = given.see(_generator_order), given.see(exponent.group_exponent)
+    found = []
+    for party, check in exposed:
+        width = party.exponent_bits or 0
+        work = _open(given, confinements.confinement(width, order, group, check, reused=True))
+        named = () if party.role == EVERYBODY else (("party", party.role),)
+        found.append(replace(work, details=(*named, *work.details)))
+    return min(found, key=lambda work: work.bits)
+
+
+def raw_message(given: Given) -> Work:
+    if given.see(usage.scheme) != "elgamal-raw":
+        given.undefined()
+    length = given.see(usage.message_length)
+    index = given.see(parts.group_order) // given.see(parts.generator_order_value)
+    return _open(given, raw_messages.raw_message(length, log2(index)))
+
+
+def prime_power(given: Given) -> Work:
+    if given.see(parts.nature) not in ("prime power", "power of two"):
+        given.undefined()
+    ((prime, power),) = given.see(parts.modulus_factors)
+    return prime_powers.prime_power(prime, power)
+
+
+def _components(given: Given) -> tuple[tuple[composites.Component, ...], int]:
+    """What is known of a composite modulus: its prime factors, and the length of the rest."""
+    _modulus_of_nature(given, "composite")
+    factors, rest = given.see(parts.known_modulus_factors)
+    components = []
+    for prime, _ in factors:
+        group = given.factorization(prime - 1)
+        order = Factors(group.factors, group.rest)
+        cost = min(nist_bits(prime.bit_length()), pohlig_hellmans.pohlig_hellman_bits(order))
+        largest = max(order.primes, default=1) if order.complete else None
+        components.append(composites.Component(prime.bit_length(), cost, largest))
+    return tuple(components), 0 if rest == 1 else rest.bit_length()
+
+
+def composite_modulus(given: Given) -> Work:
+    """For the maker of the modulus, who knows its factors."""
+    components, rest = given.see(_components)
+    length = given.declaration.modulus.bit_length()
+    return composites.composite_modulus(length, components, rest)
+
+
+def composite_modulus_outsider(given: Given) -> Work:
+    """For somebody who must factor the modulus first."""
+    components, rest = given.see(_components)
+    length = given.declaration.modulus.bit_length()
+    return composites.composite_modulus_outsider(length, components, rest)
+
+
+ROUTES: Mapping[str, RoutePart] = MappingProxyType(
+    {
+        "number_field_sieve": number_field_sieve,
+        "square_root": square_root,
+        "pohlig_hellman": pohlig_hellman,
+        "short_exponent": short_exponent,
+        "smooth_part_then_short_exponent": smooth_part_then_short_exponent,
+        "confinement": confinement,
+        "raw_message": raw_message,
+        "composite_modulus": composite_modulus,
+        "prime_power": prime_power,
+        "hidden_form": hidden_form,
+    }
+)
+"""One part for each route that has a fact of its name."""
+
+OUTSIDER = composite_modulus_outsider
+"""The passive side of the composite-modulus route, which shares its name."""
+
+_DESIGNER_ONLY = ("composite_modulus", "hidden_form")
+
+
+def routes_for(attacker: Attacker) -> tuple[RoutePart, ...]:
+    """The routes that an attacker can take: a peer also listens, a designer is also a peer."""
+    passive_or_peer = [part for name, part in ROUTES.items() if name not in _DESIGNER_ONLY]
+    passive = [part for part in passive_or_peer if part is not confinement]
+    return {
+        "passive": (*passive, OUTSIDER),
+        "peer": (*passive_or_peer, OUTSIDER),
+        "designer": (*ROUTES.values(), OUTSIDER),
+    }[attacker]
+
+
+def all_open(given: Given) -> tuple[Work, ...]:
+    """Every open route whose work is known, without resting on them, cheapest first."""
+    peeked = [given.peek(part) for part in routes_for("designer")]
+    found = [work for work in peeked if not isinstance(work, Absent)]
+    return tuple(sorted(found, key=lambda work: (work.bits, work.route, work.attacker)))
