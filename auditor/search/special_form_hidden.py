@@ -31,7 +31,7 @@ def polynomials() -> tuple[tuple[int, ...], ...]:
         for degree in HIDDEN_DEGREES
         for coefficients in product(digits, repeat=degree + 1)
         if coefficients[0]
-        and coefficients[-1] > 0
+        and coefficients[-1]
         and coefficients == max(_relatives(coefficients))
         and _irreducible(coefficients)
     )

@@ -86,15 +86,16 @@ class SpecialForm:
 
     def rank(self) -> tuple[float | int | tuple[int, ...], ...]:
         """Sorts the most special first, to two decimals of sigma; of those the one whose root says
-        most (lowest tier), then the simplest, at last by value: never by the order of arrival."""
-        height = max(map(abs, self.coefficients))
+        most (lowest tier), then lowest degree and fewest terms, at last by value: never by the
+        order of arrival."""
         return (
             -round(self.sigma, 2),
             self.tier,
             self.degree,
+            sum(1 for c in self.coefficients if c),
             -self.sigma,
             self.cofactor,
-            height,
+            max(map(abs, self.coefficients)),
             self.coefficients,
             self.g0,
             self.g1,
