@@ -16,6 +16,8 @@ class Figure:
 
     bits: float | None
     at_most: bool = False
+    short: bool = False
+    """Whether a route open to this attacker is judged below the requirement."""
 
     @property
     def text(self) -> str:
@@ -42,8 +44,6 @@ class Strength:
     peer: Figure
     designer: Figure
     sufficient: bool | None
-    deciding_route: str | None
-    """The cheapest counted route open to a passive attacker or a peer."""
 
     @property
     def tables_text(self) -> str:
@@ -52,22 +52,35 @@ class Strength:
             return "unknown"
         return str(self.tables) if self.tables else "none"
 
+    @property
+    def tables_short(self) -> bool:
+        """Whether the table figure is known and below the requirement."""
+        return self.tables is not None and self.tables < self.required
+
+
+def judged(route: Record) -> float:
+    """The figure that a route is judged by: that of a published table, where there is one."""
+    return float(route["bits"] if route["table"] is None else route["table"]["bits"])
+
 
 def strength(parameter_set: Record) -> Strength:
     """The figures of one set of a record."""
-    facts = parameter_set["facts"]
-    settled = "strength.work_bits" in facts
-    least = {attacker: _least(parameter_set["routes"], attacker) for attacker in ATTACKERS}
+    facts, routes = parameter_set["facts"], parameter_set["routes"]
+    required = _value(facts, "strength.required_bits", 112)
     designer = facts.get("strength.designer_bits_at_most")
-    peer = least["peer"]
+    loose = {
+        "passive": "strength.work_bits" not in facts,
+        "peer": "strength.work_bits" not in facts,
+        "designer": designer is None or not designer["tight"],
+    }
+    figures = {name: _figure(_open_to(routes, name), required, loose[name]) for name in ATTACKERS}
     return Strength(
-        required=_value(facts, "strength.required_bits", 112),
+        required=required,
         tables=_value(facts, "strength.standard_bits", None),
-        passive=_figure(least["passive"], not settled),
-        peer=_figure(peer, not settled),
-        designer=_figure(least["designer"], designer is None or not designer["tight"]),
+        passive=figures["passive"],
+        peer=figures["peer"],
+        designer=figures["designer"],
         sufficient=_value(facts, "strength.sufficient", None),
-        deciding_route=None if peer is None else peer["name"],
     )
 
 
@@ -75,14 +88,16 @@ def _value(facts: Record, name: str, default: Any) -> Any:
     return facts[name]["value"] if name in facts else default
 
 
-def _least(routes: list[Record], attacker: str) -> Record | None:
-    """The cheapest counted route that this attacker can take; each can do what the former can."""
+def _open_to(routes: list[Record], attacker: str) -> list[Record]:
+    """The counted routes that this attacker can take; each can do what the one before can."""
     able = ATTACKERS[: ATTACKERS.index(attacker) + 1]
-    open_to = [route for route in routes if route["counted"] and route["attacker"] in able]
-    return min(open_to, key=lambda route: float(route["bits"]), default=None)
+    return [route for route in routes if route["counted"] and route["attacker"] in able]
 
 
-def _figure(route: Record | None, unsettled: bool) -> Figure:
-    if route is None:
+def _figure(routes: list[Record], required: int, loose: bool) -> Figure:
+    if not routes:
         return Figure(None)
-    return Figure(float(route["bits"]), unsettled or route["bound"] == "at most")
+    least = min(routes, key=lambda route: float(route["bits"]))
+    at_most = loose or any(route["bound"] == "at most" for route in routes)
+    short = any(judged(route) < required for route in routes)
+    return Figure(float(least["bits"]), at_most, short)

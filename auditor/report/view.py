@@ -92,8 +92,8 @@ class View:
         """How many sets, moduli and sheets."""
         overview = self.record["overview"]
         sets, moduli = overview["sets"], len(overview["moduli"])
-        text = f"{plural(sets, 'parameter set')}, {plural(moduli, 'modulus', 'moduli')}"
-        return text if sets == len(self.sheets) else f"{text}, {len(self.sheets)} different"
+        different = f" ({len(self.sheets):,} of them different)" if sets != len(self.sheets) else ""
+        return f"{plural(sets, 'parameter set')}{different}, {plural(moduli, 'modulus', 'moduli')}"
 
     @property
     def verdict(self) -> str:
