@@ -40,6 +40,10 @@ class Engine(Protocol):
         """Runs the task's curves in order, up to the first that finds a divisor above 1."""
 
 
+class EngineFailed(RuntimeError):
+    """An engine that is a program of its own did not do its work."""
+
+
 class Executor(Protocol):
     """Anything with the submit method of :class:`concurrent.futures.Executor`."""
 
@@ -73,11 +77,11 @@ def outcomes(
     """The outcomes of the task's units in order, ending with the first that found a divisor.
 
     Twice ``jobs`` units are under way in ``executor``; without one they are run here, one by one.
-    A unit whose worker is lost is run here.
+    A unit whose worker is lost is run here, and a unit whose engine fails by the built-in one.
     """
     units = _units(task, engine.unit(task.b1))
     if executor is None:
-        yield from _up_to_first_find(engine.run(unit) for unit in units)
+        yield from _up_to_first_find(_run(engine, unit) for unit in units)
         return
     under_way: deque[tuple[Task, Future[Outcome]]] = deque()
     try:
@@ -128,4 +132,12 @@ def _outcome(engine: Engine, unit: Task, future: "Future[Outcome]") -> Outcome:
     try:
         return future.result()
     except Exception:
+        return _run(engine, unit)
+
+
+def _run(engine: Engine, unit: Task) -> Outcome:
+    """Runs a unit in this process; by the built-in engine where the engine fails."""
+    try:
         return engine.run(unit)
+    except EngineFailed:
+        return BuiltIn().run(unit)

@@ -22,10 +22,11 @@ def inverses(numbers: Sequence[mpz], n: mpz) -> list[mpz]:
     products = [mpz(1)]
     for number in numbers:
         products.append(products[-1] * number % n)
-    common = gmpy2.gcd(products[-1], n)
-    if common != 1:
-        raise Divisor(common)
-    rest = gmpy2.invert(products.pop(), n)
+    try:
+        rest = gmpy2.invert(products[-1], n)
+    except ZeroDivisionError:
+        raise Divisor(gmpy2.gcd(products[-1], n)) from None
+    products.pop()
     inverted = []
     for number in reversed(numbers):
         inverted.append(rest * products.pop() % n)

@@ -20,6 +20,16 @@ from auditor.search.rho import fermat, rho
 from auditor.search.trial import small_factors
 from auditor.search.work import Work
 
+__all__ = [
+    "Engine",
+    "Executor",
+    "Factor",
+    "SearchInterrupted",
+    "SearchResult",
+    "search",
+    "split",
+]
+
 
 @dataclass(frozen=True, slots=True)
 class Factor:

@@ -15,7 +15,7 @@ section 5), by FLINT's fast arithmetic.
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from math import prod
+from math import log2, prod
 from typing import Protocol, TypeVar
 
 import flint
@@ -105,13 +105,18 @@ def _covering(powers: tuple[tuple[int, int], ...], b1: int, b2: int) -> Wheel:
 
 
 def _cost(wheel: Wheel) -> float:
-    """Relative cost, measured: building a block's polynomial, reducing it, one evaluation."""
+    """Relative cost, in units of a product tree over n roots taken as n log2 n; measured at 2048
+    bits: evaluation 4, reducing a polynomial of degree n 6 n, a product reduced 9 n, points."""
     residues, multiples = wheel.residues, wheel.multiples
-    size = residues * residues.bit_length()
-    blocks = -(-multiples // residues)
-    if blocks == 1:
-        return size + 3.5 * multiples * residues.bit_length()
-    return size * (1 + blocks + 1.2 * (blocks - 1) + 3.5)
+    cost = _size(residues) + 5 * residues + 3 * multiples
+    if multiples <= residues:
+        return cost + 6 * residues + 4 * _size(multiples)
+    blocks = multiples / residues
+    return cost + (blocks + 4) * _size(residues) + 9 * blocks * residues
+
+
+def _size(count: int) -> float:
+    return count * log2(count + 1)
 
 
 def common_divisor(group: Group[P], point: P, b1: int, b2: int) -> mpz:
@@ -146,10 +151,12 @@ def progression(group: Group[P], first: P, step: P, count: int) -> list[P]:
 def _small_steps(group: Group[P], point: P, plan: Wheel) -> list[P]:
     """j times the point for each unit j modulo d, up to sign.
 
-    The units of the largest prime power are taken from one half only; that fixes the sign.
+    The units of the largest prime power are taken from one half only; that fixes the sign. They
+    come first and the others in order, so that few points are added to more than once.
     """
     points: list[P] = []
-    for p, q in reversed(plan.powers):
+    *others, largest = plan.powers
+    for p, q in (largest, *others):
         base = times(group, point, plan.d // q)
         units = _units(p, q)
         multiples = progression(group, base, base, units[-1])

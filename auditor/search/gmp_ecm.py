@@ -1,0 +1,114 @@
+"""The program ``ecm`` (GMP-ECM) as the engine of elliptic curves, where it is installed.
+
+One process runs many curves, each with its own sigma: the program is asked to resume from a
+residue saved at B1 = 1, which is the starting point itself. Curves are Suyama's (``-param 0``), as
+the model of :mod:`auditor.search.expected_curves` assumes. Its output is read back strictly, and a
+divisor counts only if it divides.
+"""
+
+import re
+import shutil
+import subprocess
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import gmpy2
+from gmpy2 import mpz
+
+from auditor.search.curves import EngineFailed, Outcome, Task
+from auditor.search.ecm import parameter
+
+PROGRAM = "ecm"
+_STARTED_OR_FOUND = re.compile(r"sigma=0:(\d+)|Factor found in step \d+: (\d+)")
+_ERROR = 1
+
+
+@dataclass(frozen=True, slots=True)
+class GmpEcm:
+    """The program at ``path``; ``version`` as it states it."""
+
+    path: str
+    version: str
+
+    @property
+    def name(self) -> str:
+        """The program and its version."""
+        return f"GMP-ECM {self.version}"
+
+    def unit(self, b1: int) -> int:
+        """About a second at 2048 bits, so that starting the program does not count."""
+        return max(1, 40_000 // b1)
+
+    def run(self, task: Task) -> Outcome:
+        """Runs the task's curves in order, up to the first that finds a divisor above 1.
+
+        Raises EngineFailed when the program does not do that, or says what cannot be.
+        """
+        sigmas = [parameter(task.number, task.b1, i) for i in range(task.first, task.end)]
+        started, divisor = _read(self._output(task, sigmas), sigmas)
+        if divisor is None and started < len(sigmas):
+            raise EngineFailed(f"{self.name} ran {started} of {len(sigmas)} curves")
+        if divisor is not None and (divisor < 2 or task.modulus % divisor):
+            raise EngineFailed(f"{self.name} printed a divisor that does not divide")
+        return Outcome(task.first + started, divisor or 1, self.name)
+
+    def _output(self, task: Task, sigmas: list[int]) -> str:
+        command = [self.path, "-one", "-resume", "-", str(task.b1), str(task.b2)]
+        try:
+            lines = "".join(_residues(mpz(task.modulus), sigmas))
+            with subprocess.Popen(
+                command,
+                stdin=subprocess.PIPE,
+                stdout=subprocess.PIPE,
+                stderr=subprocess.PIPE,
+                text=True,
+            ) as process:
+                try:
+                    output, errors = process.communicate(lines)
+                finally:
+                    process.kill()
+        except ZeroDivisionError:
+            raise EngineFailed("a curve that the program cannot take over") from None
+        except OSError as error:
+            raise EngineFailed(f"{self.name} does not start: {error.strerror}") from None
+        if process.returncode < 0 or process.returncode & _ERROR:
+            raise EngineFailed(f"{self.name} ended with {process.returncode}: {errors.strip()}")
+        return output
+
+
+def installed() -> GmpEcm | None:
+    """The engine, if a program called ``ecm`` is on the path and is GMP-ECM."""
+    path = shutil.which(PROGRAM)
+    if path is None:
+        return None
+    try:
+        greeting = subprocess.run(
+            [path, "2"], input="", capture_output=True, text=True, timeout=10, check=False
+        )
+    except (OSError, subprocess.SubprocessError):
+        return None
+    version = re.match(r"GMP-ECM (\d[\w.+-]*)", greeting.stdout)
+    return GmpEcm(path, version.group(1)) if version else None
+
+
+def _residues(n: mpz, sigmas: list[int]) -> Iterator[str]:
+    """A line of a save file for each curve: the starting point u^3/v^3 of Suyama's curve with
+    u = sigma^2 - 5, v = 4 sigma (README of GMP-ECM, sections 6 and 7)."""
+    for sigma in sigmas:
+        u, v = mpz(sigma) ** 2 - 5, mpz(4 * sigma)
+        x = gmpy2.powmod(u * gmpy2.invert(v, n), 3, n)
+        number, start = n.digits(), x.digits(16)
+        yield f"METHOD=ECM; PARAM=0; SIGMA={sigma}; B1=1; N={number}; X=0x{start};\n"
+
+
+def _read(output: str, sigmas: list[int]) -> tuple[int, int | None]:
+    """How many curves were started, and the divisor that the last one found."""
+    started = 0
+    for match in _STARTED_OR_FOUND.finditer(output):
+        sigma, divisor = match.groups()
+        if divisor is not None:
+            return started, int(mpz(divisor))
+        if started == len(sigmas) or int(sigma) != sigmas[started]:
+            raise EngineFailed("the program ran another curve than it was told to")
+        started += 1
+    return started, None
