@@ -33,7 +33,7 @@ class Schema:
     def node(self, schema_path: Sequence[str | int]) -> tuple[Any, str]:
         """The node at the end of a path of keywords, and the nearest description on the way."""
         node: Any = self.document
-        description = ""
+        description = str(self.document.get("description", ""))
         for step in schema_path:
             node = node[step]
             if isinstance(node, dict) and isinstance(node.get("description"), str):
@@ -92,12 +92,18 @@ def found(value: Any) -> str:
     if isinstance(value, bool):
         return "true" if value else "false"
     if isinstance(value, list):
-        return f"a list of {len(value)}"
+        return f"a list of {_count(value)}" if value else "an empty list"
     if isinstance(value, dict):
         return (
-            f"a mapping of {', '.join(quoted(key) for key in list(value)[:4])}" if value else "{}"
+            f"a mapping of {', '.join(quoted(key) for key in list(value)[:4])}"
+            if value
+            else "an empty mapping"
         )
     return quoted(value) if isinstance(value, str) else shorten(value)
+
+
+def _count(items: Sequence[Any]) -> str:
+    return "one item" if len(items) == 1 else f"{len(items)} items"
 
 
 def quoted(text: str) -> str:
@@ -139,8 +145,15 @@ def _unknown_keys(
 
 def _missing_key(loaded: Loaded, path: KeyPath, key: str, schema: Schema, node: Any) -> Problem:
     mark = _mark(loaded, path)
+    present = value_at(loaded.value, path)
+    needs = [
+        other
+        for other, needed in node.get("dependencies", {}).items()
+        if isinstance(needed, list) and key in needed and other in present
+    ]
+    because = f", called for by {' and '.join(needs)}" if needs else ""
     expected = _property_description(schema, node, key)
-    message = sentence(shown_path(path), f"missing key {key!r}", expected)
+    message = sentence(shown_path(path), f"missing key {key!r}{because}", expected)
     return Problem(mark.line, mark.column, path, message)
 
 

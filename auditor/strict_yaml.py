@@ -7,8 +7,9 @@ and text otherwise; quoted and block scalars are always text. Tags, merge keys, 
 keys that are not scalars are problems. Size, depth and the number of nodes after alias expansion
 are bounded, so that no short text expands into a long one.
 
-Values are built from parser events without recursion in the parser; the C parser is used where
-PyYAML has it. It accepts one thing more than the pure one: a tab after a colon.
+Values are built from parser events, so that bounds act while a text is parsed; the C parser is
+used where PyYAML has it. The two differ in some malformed texts that only one of them refuses,
+such as a tab after a colon, and never in the value.
 """
 
 import math
@@ -229,8 +230,10 @@ def _parse(text: str, loader: Any) -> Iterator[Any]:
     except yaml.MarkedYAMLError as error:
         mark = error.problem_mark or error.context_mark
         place = _mark(mark)
-        parts = [part for part in (error.context, error.problem) if part]
-        message = f"not YAML: {', '.join(parts) or 'cannot be parsed'}"
+        message = f"not YAML: {error.problem or 'cannot be parsed'}"
+        if error.context and error.context_mark:
+            start = _mark(error.context_mark)
+            message += f" {error.context} from {start.line}:{start.column}"
         if mark and text[mark.index : mark.index + 1] == "\t":
             message += "; indent with blanks, not with tabs"
         raise _fatal(place.line, place.column, message) from None

@@ -104,7 +104,8 @@ class _Reading:
 
     def resolve(self) -> None:
         """Turn every integer of the right shape into its value; refuse repeated names."""
-        wrong = {item.path[:depth] for item in self.problems for depth in range(len(item.path) + 1)}
+        misshapen = {item.path for item in self.problems}
+        wrong = {path[:depth] for path in misshapen for depth in range(len(path) + 1)}
         names: list[KeyPath] = []
         for base, record in self.records():
             roles = [(*path, "role") for path, _ in _items((*base, "parties"), record)]
@@ -112,7 +113,7 @@ class _Reading:
             names.append((*base, "name"))
             for key in (*NUMBERS, *NUMBER_LISTS):
                 for path, value in _items((*base, key), record):
-                    if path not in wrong:
+                    if path not in wrong and (*base, key) not in misshapen:
                         self.resolve_number(path, value, _number_node(key))
         self.refuse_repetition(names, wrong, "name")
 
@@ -162,6 +163,8 @@ class _Reading:
             if path in wrong or path not in self.loaded.marks:
                 continue
             text = value_at(self.loaded.value, path)
+            if not isinstance(text, str):
+                continue
             earlier = first.setdefault(text, path)
             if earlier != path:
                 line = self.loaded.marks[earlier].line

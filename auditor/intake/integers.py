@@ -10,6 +10,8 @@ from auditor.encoding import shorten
 from auditor.intake.standard_groups import find
 from auditor.strict_yaml import bounded_integer
 
+NO_NUMBER = "it does not hold one integer, decimal or hexadecimal with 0x or colons"
+
 _BLANKS = re.compile(r"[ \t\r\n]+")
 _MARKED = re.compile(r"0[xX]([0-9a-fA-F]+)")
 _COLONS = re.compile(r"[0-9a-fA-F]{1,2}(?::[0-9a-fA-F]{2})+")
@@ -33,10 +35,15 @@ def marked_integer(text: str) -> int:
 def integer_of_file(text: str) -> int:
     """The one integer in the text of a number file: decimal, or marked hexadecimal.
 
-    ValueError for any other text, and beyond 65,536 bits.
+    ValueError for any other text, and beyond 65,536 bits; the message does not repeat the text,
+    which may be that of a file named by mistake.
     """
     compact = _BLANKS.sub("", text)
-    return bounded_integer(compact, 10) if _DECIMAL.fullmatch(compact) else marked_integer(text)
+    if _DECIMAL.fullmatch(compact):
+        return bounded_integer(compact, 10)
+    if not _MARKED.fullmatch(compact) and not _COLONS.fullmatch(compact):
+        raise ValueError(NO_NUMBER)
+    return marked_integer(compact)
 
 
 def advice_on_integer(text: str) -> str:

@@ -10,7 +10,7 @@ from auditor.intake.inputs import (
     read_path,
     reason,
 )
-from auditor.intake.integers import integer_of_file
+from auditor.intake.integers import NO_NUMBER, integer_of_file
 
 
 class NumberFiles:
@@ -38,7 +38,7 @@ class NumberFiles:
         try:
             return integer_of_file(data.decode("ascii"))
         except UnicodeDecodeError:
-            raise Unreadable("it holds more than one integer in ASCII digits") from None
+            raise Unreadable(NO_NUMBER) from None
         except ValueError as error:
             raise Unreadable(str(error)) from None
 
