@@ -15,7 +15,8 @@ from typing import Any
 HIDDEN = (
     "[\x00-\x1f\x7f-\x9f\xad\u0600-\u0605\u061c\u06dd\u070f\u0890\u0891\u08e2\u115f\u1160\u180b-\u180f"
     "\u200b-\u200f\u2028-\u202e\u2060-\u206f\u3164\ud800-\udfff\ufe00-\ufe0f\ufeff\uffa0"
-    "\ufff0-\ufffb\ufffe\uffff\U000110bd\U000110cd\U00013430-\U0001343f\U0001bca0-\U0001bca3\U0001d173-\U0001d17a"
+    "\ufff0-\ufffb\ufffe\uffff\U000110bd\U000110cd\U00013430-\U0001343f"
+    "\U0001bca0-\U0001bca3\U0001d173-\U0001d17a"
     "\U000e0000-\U000e0fff]"
 )
 """A pattern for one character that controls, hides or reorders: the Unicode categories Cc, Cf, Cs,
