@@ -12,7 +12,6 @@ used where PyYAML has it. The two differ in some malformed texts that only one o
 such as a tab after a colon, and never in the value.
 """
 
-import math
 import re
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
@@ -20,12 +19,12 @@ from typing import Any
 
 import yaml
 
+from auditor.core_scalars import core_scalar
 from auditor.encoding import shorten
 
 MAX_CHARACTERS = 16 * 2**20
 MAX_NODES = 200_000
 MAX_DEPTH = 40
-MAX_BITS = 65_536
 MAX_PROBLEMS = 1_000
 
 KeyPath = tuple[str | int, ...]
@@ -34,14 +33,6 @@ KeyPath = tuple[str | int, ...]
 LOADER: Any = getattr(yaml, "CBaseLoader", yaml.BaseLoader)
 
 _NOT_YAML = re.compile("[^\t\n\r\x20-\x7e\x85\xa0-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
-_INTEGER = re.compile(r"[-+]?[0-9]+|0o[0-7]+|0x[0-9a-fA-F]+")
-_FLOAT = re.compile(r"[-+]?(?:\.[0-9]+|[0-9]+(?:\.[0-9]*)?)(?:[eE][-+]?[0-9]+)?")
-_NOT_FINITE = re.compile(r"[-+]?\.(?:inf|Inf|INF)|\.(?:nan|NaN|NAN)")
-_CONSTANTS = {
-    **dict.fromkeys(("", "~", "null", "Null", "NULL")),
-    **dict.fromkeys(("true", "True", "TRUE"), True),
-    **dict.fromkeys(("false", "False", "FALSE"), False),
-}
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -134,48 +125,6 @@ def shown_path(path: KeyPath) -> str:
     """``path`` for a message: ``parameter_sets[0].modulus``."""
     parts = (f"[{part}]" if isinstance(part, int) else f".{shorten(part)}" for part in path)
     return "".join(parts).removeprefix(".")
-
-
-def decimal(digits: str) -> int:
-    """The integer of any number of decimal digits, which ``int`` refuses beyond 4,300."""
-    value = 0
-    for start in range(0, len(digits), 4000):
-        part = digits[start : start + 4000]
-        value = value * 10 ** len(part) + int(part)
-    return value
-
-
-def bounded_integer(digits: str, base: int) -> int:
-    """The integer that ``digits`` write in base 8, 10 or 16; ValueError beyond 65,536 bits."""
-    digits = digits.lstrip("0") or "0"
-    if len(digits) * math.log2(base) <= MAX_BITS + 4:
-        value = decimal(digits) if base == 10 else int(digits, base)
-        if value.bit_length() <= MAX_BITS:
-            return value
-    raise ValueError(f"an integer of more than {MAX_BITS} bits, the most that is read")
-
-
-def core_scalar(text: str, *, floats: bool = True) -> Any:
-    """What a plain scalar means in the core schema of YAML 1.2; ValueError for what it forbids.
-
-    Infinities and NaN are forbidden, and so are integers of more than 65,536 bits.
-    """
-    if text in _CONSTANTS:
-        return _CONSTANTS[text]
-    if _INTEGER.fullmatch(text):
-        return _integer(text)
-    if floats and _FLOAT.fullmatch(text) and math.isfinite(float(text)):
-        return float(text)
-    if floats and (_FLOAT.fullmatch(text) or _NOT_FINITE.fullmatch(text)):
-        raise ValueError(f"{shorten(text)} is not a finite number")
-    return text
-
-
-def _integer(text: str) -> int:
-    if text.startswith(("0x", "0o")):
-        return bounded_integer(text[2:], 16 if text[1] == "x" else 8)
-    value = bounded_integer(text.lstrip("+-"), 10)
-    return -value if text.startswith("-") else value
 
 
 def _fatal(line: int, column: int, message: str, path: KeyPath = ()) -> YamlError:

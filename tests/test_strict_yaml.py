@@ -2,6 +2,8 @@
 
 import contextlib
 import pickle
+import subprocess
+import sys
 from typing import Any
 
 import pytest
@@ -266,6 +268,16 @@ def test_errors_travel_between_processes() -> None:
     assert copy.problems == caught.value.problems
     assert str(copy).splitlines()[0] == "2:1: a: duplicate key 'a' (first on line 1)"
     assert (copy.line, copy.column, copy.message) == (2, 1, copy.problems[0].message)
+
+
+def test_what_reading_imports() -> None:
+    """The registry of groups costs no parser, and reading text no cryptographic library."""
+    light = "auditor.intake.standard_groups", {"yaml", "jsonschema_rs", "cryptography"}
+    whole = "auditor.intake.tree", {"cryptography", "gmpy2", "sympy", "rich", "jinja2"}
+    for module, heavy in (light, whole):
+        code = f"import sys, {module}; print(sorted({heavy} & set(sys.modules)))"
+        done = subprocess.run([sys.executable, "-c", code], capture_output=True, check=True)
+        assert done.stdout == b"[]\n"
 
 
 def test_paths_are_shown_as_they_are_written() -> None:

@@ -6,9 +6,9 @@ Digits without either mark are refused where both readings are possible: nobody 
 
 import re
 
+from auditor.core_scalars import bounded_integer
 from auditor.encoding import shorten
 from auditor.intake.standard_groups import find
-from auditor.strict_yaml import bounded_integer
 
 NO_NUMBER = "it does not hold one integer, decimal or hexadecimal with 0x or colons"
 
