@@ -32,6 +32,8 @@ KeyPath = tuple[str | int, ...]
 
 LOADER: Any = getattr(yaml, "CBaseLoader", yaml.BaseLoader)
 
+_OPENING = (yaml.MappingStartEvent, yaml.SequenceStartEvent)
+_CLOSING = (yaml.MappingEndEvent, yaml.SequenceEndEvent)
 _NOT_YAML = re.compile("[^\t\n\r\x20-\x7e\x85\xa0-\ud7ff\ue000-\ufffd\U00010000-\U0010ffff]")
 
 
@@ -127,18 +129,19 @@ def shown_path(path: KeyPath) -> str:
     return "".join(parts).removeprefix(".")
 
 
-def _fatal(line: int, column: int, message: str, path: KeyPath = ()) -> YamlError:
-    return YamlError((Problem(line, column, path, message),))
+def _fatal(mark: Mark, message: str, path: KeyPath = ()) -> YamlError:
+    return YamlError((Problem(mark.line, mark.column, path, message),))
 
 
 def _refuse_unreadable(text: str) -> None:
     if len(text) > MAX_CHARACTERS:
-        raise _fatal(1, 1, f"{len(text)} characters, expected at most {MAX_CHARACTERS}")
+        raise _fatal(Mark(1, 1), f"{len(text)} characters, expected at most {MAX_CHARACTERS}")
     if found := _NOT_YAML.search(text):
         before = text[: found.start()]
         column = found.start() - before.rfind("\n")
         code = f"U+{ord(found[0]):04X}"
-        raise _fatal(before.count("\n") + 1, column, f"character {code} is not allowed in YAML")
+        mark = Mark(before.count("\n") + 1, column)
+        raise _fatal(mark, f"character {code} is not allowed in YAML")
 
 
 def _mark(mark: Any) -> Mark:
@@ -150,18 +153,21 @@ def _node_events(text: str, loader: Any) -> list[Any]:
     events: list[Any] = []
     depth = documents = 0
     for event in _parse(text, loader):
-        mark = _mark(event.start_mark)
-        if isinstance(event, yaml.DocumentStartEvent):
+        if isinstance(event, _OPENING):
+            depth += 1
+        elif isinstance(event, _CLOSING):
+            depth -= 1
+        elif isinstance(event, yaml.DocumentStartEvent):
             documents += 1
-            if documents > 1:
-                raise _fatal(mark.line, mark.column, "a second document, expected only one")
-        elif isinstance(event, yaml.NodeEvent | yaml.CollectionEndEvent):
-            depth += isinstance(event, yaml.CollectionStartEvent)
-            depth -= isinstance(event, yaml.CollectionEndEvent)
-            if depth > MAX_DEPTH:
-                raise _fatal(mark.line, mark.column, _too_much("deep"))
-            if len(events) >= 2 * MAX_NODES:
-                raise _fatal(mark.line, mark.column, _too_much("large"))
+        elif not isinstance(event, yaml.NodeEvent):
+            continue
+        if documents > 1:
+            raise _fatal(_mark(event.start_mark), "a second document, expected only one")
+        if depth > MAX_DEPTH:
+            raise _fatal(_mark(event.start_mark), _too_much("deep"))
+        if len(events) >= 2 * MAX_NODES:
+            raise _fatal(_mark(event.start_mark), _too_much("large"))
+        if not isinstance(event, yaml.DocumentStartEvent):
             events.append(event)
     return events
 
@@ -185,9 +191,9 @@ def _parse(text: str, loader: Any) -> Iterator[Any]:
             message += f" {error.context} from {start.line}:{start.column}"
         if mark and text[mark.index : mark.index + 1] == "\t":
             message += "; indent with blanks, not with tabs"
-        raise _fatal(place.line, place.column, message) from None
+        raise _fatal(place, message) from None
     except (yaml.YAMLError, RecursionError, ValueError) as error:
-        raise _fatal(1, 1, f"not YAML: {type(error).__name__}") from None
+        raise _fatal(Mark(1, 1), f"not YAML: {type(error).__name__}") from None
 
 
 @dataclass(slots=True)
@@ -221,9 +227,9 @@ class _Builder:
         mark = _mark(event.start_mark)
         self.marks[path] = mark
         if len(self.marks) > MAX_NODES:
-            raise _fatal(mark.line, mark.column, _too_much("large"), path)
+            raise _fatal(mark, _too_much("large"), path)
         if len(path) > MAX_DEPTH:
-            raise _fatal(mark.line, mark.column, _too_much("deep"), path)
+            raise _fatal(mark, _too_much("deep"), path)
         if isinstance(event, yaml.AliasEvent):
             return self.alias(position, path, mark), position + 1
         if event.tag is not None:
@@ -248,7 +254,7 @@ class _Builder:
         event = self.events[position]
         self.characters += len(event.value)
         if self.characters > 2 * MAX_CHARACTERS:
-            raise _fatal(mark.line, mark.column, _too_much("large"), path)
+            raise _fatal(mark, _too_much("large"), path)
         if event.style not in (None, ""):
             return event.value
         if position not in self.scalars:
@@ -293,8 +299,8 @@ class _Builder:
         depth = 0
         while True:
             event = self.events[position]
-            depth += isinstance(event, yaml.CollectionStartEvent)
-            depth -= isinstance(event, yaml.CollectionEndEvent)
+            depth += isinstance(event, _OPENING)
+            depth -= isinstance(event, _CLOSING)
             position += 1
             if depth == 0:
                 return position
