@@ -6,6 +6,7 @@ error and never an empty place.
 """
 
 from collections.abc import Mapping
+from functools import cache
 from typing import TYPE_CHECKING, Any
 
 from auditor.data_files import data
@@ -34,6 +35,7 @@ def render(record: Mapping[str, Any]) -> str:
     )
 
 
+@cache
 def _environment() -> "Environment":
     from jinja2 import Environment, FunctionLoader, StrictUndefined
     from markupsafe import Markup
