@@ -1,0 +1,214 @@
+"""Discrete logarithms by the structure of the group: Pohlig-Hellman, whole or in part.
+
+For demonstrations of a weakness and for tests, on exponents that the program itself has drawn;
+never for public values that somebody declared. Everything is deterministic, given the seed.
+
+    what is known of g                      function
+    x lies in an interval                   log_steps.logarithm_in_interval, log_kangaroo.kangaroo
+    its order is prime                      prime_order_logarithm (steps, or log_rho.rho)
+    prime factors of its order              pohlig_hellman
+    some of them, and x is short            short_exponent
+    it is taken modulo p^k or 2^k           log_prime_power
+
+Sources: Pohlig, Hellman, "An improved algorithm for computing logarithms over GF(p) and its
+cryptographic significance", IEEE Trans. Inf. Theory 24 (1978); van Oorschot, Wiener, "On
+Diffie-Hellman key agreement with short exponents", EUROCRYPT 1996 (both from memory).
+"""
+
+from collections.abc import Iterator, Sequence
+from concurrent.futures import Executor
+from math import gcd, prod
+
+from gmpy2 import invert, mpz
+
+from auditor.search.log_kangaroo import kangaroo
+from auditor.search.log_result import Logarithm, LogarithmError, NotFound, OutOfBudget, Tally
+from auditor.search.log_rho import rho
+from auditor.search.log_steps import (
+    SCANNED,
+    Steps,
+    baby_steps,
+    giant_steps,
+    logarithm_in_interval,
+)
+
+__all__ = [
+    "Logarithm",
+    "LogarithmError",
+    "NotFound",
+    "OutOfBudget",
+    "Tally",
+    "kangaroo",
+    "logarithm_in_interval",
+    "pohlig_hellman",
+    "prime_order_logarithm",
+    "rho",
+    "short_exponent",
+]
+
+Factors = Sequence[tuple[int, int]]
+"""Different primes, each with a positive exponent."""
+
+LARGEST_BY_STEPS = 2**50
+"""Above it rho is quicker than giant steps over a table of the default size (2048 bits)."""
+
+
+def prime_order_logarithm(
+    n: int,
+    g: int,
+    h: int,
+    q: int,
+    *,
+    seed: int = 0,
+    executor: Executor | None = None,
+    tally: Tally | None = None,
+) -> Logarithm:
+    """The logarithm of h to the base g modulo n, where g has prime order q.
+
+    By giant steps up to q = 2^50 (about sqrt(2 q) operations, NotFound is certain), by rho above.
+    """
+    if q > LARGEST_BY_STEPS:
+        return rho(n, g, h, q, seed=seed, executor=executor, tally=tally)
+    found = logarithm_in_interval(n, g, h, q, tally=tally)
+    return Logarithm(found.value, q, found.operations)
+
+
+def pohlig_hellman(
+    n: int,
+    g: int,
+    h: int,
+    factors: Factors,
+    *,
+    rest: int = 1,
+    seed: int = 0,
+    executor: Executor | None = None,
+    tally: Tally | None = None,
+) -> Logarithm:
+    """The logarithm of h to the base g modulo n, as far as these prime factors reveal it.
+
+    T = prod q^e times ``rest`` is the order of g or a multiple of it; the result is x modulo the
+    part of ord(g) that is made of the primes in ``factors``: all of ord(g) when ``rest`` is 1.
+    Work: for each prime power e (lg T + sqrt(2 q)) operations or so. ValueError when g^T is not 1;
+    NotFound when h is not a power of g, as far as these factors show it.
+    """
+    tally = tally or Tally()
+    n, g, h = mpz(n), mpz(g) % n, mpz(h) % n
+    order = prod(q**e for q, e in factors) * rest
+    if tally.power(g, order, n) != 1:
+        raise ValueError("the order of the base does not divide the given multiple of it")
+    if tally.power(h, order, n) != 1:
+        raise tally.nothing("the element is not in the group of the base")
+    known = Logarithm(0, 1, 0)
+    pair = tally.power(g, rest, n), tally.power(h, rest, n)
+    for q, e, base, element in _primary_parts(n, *pair, tuple(factors), tally):
+        part = _prime_power_order(n, base, element, q, e, seed, executor, tally)
+        known = combined(known, part)
+    return Logarithm(known.value, known.modulus, tally.operations)
+
+
+def short_exponent(
+    n: int,
+    g: int,
+    h: int,
+    factors: Factors,
+    width: int,
+    *,
+    rest: int = 1,
+    seed: int = 0,
+    executor: Executor | None = None,
+    tally: Tally | None = None,
+) -> Logarithm:
+    """The x below 2^``width`` with h = g^x modulo n: Pohlig-Hellman, then a kangaroo on the rest.
+
+    ``factors`` are the primes worth attacking, ``rest`` what else the order of g may divide. With
+    z the part of ord(g) they make up, x = x0 + z k, and k is below 2^width / z: about
+    2 sqrt(2^width / z) operations more. Raises as pohlig_hellman and kangaroo do.
+    """
+    tally = tally or Tally()
+    known = pohlig_hellman(n, g, h, factors, rest=rest, seed=seed, executor=executor, tally=tally)
+    order = prod(q**e for q, e in factors) * rest
+    return finish_by_kangaroo(n, g, h, known, 2**width, order=order, seed=seed, tally=tally)
+
+
+def finish_by_kangaroo(
+    n: int,
+    g: int,
+    h: int,
+    known: Logarithm,
+    bound: int,
+    *,
+    order: int = 0,
+    seed: int = 0,
+    tally: Tally | None = None,
+) -> Logarithm:
+    """The x below ``bound`` with h = g^x modulo n, when x is ``known`` modulo something."""
+    tally = tally or Tally()
+    z, x0 = known.modulus, known.value
+    base = tally.power(g, z, mpz(n))
+    element = h * tally.power(g, -x0, mpz(n)) % n
+    remaining = -((x0 - bound) // z)
+    reduced = order // gcd(order, z)
+    found = kangaroo(n, base, element, 0, remaining, order=reduced, seed=seed, tally=tally)
+    return Logarithm(x0 + z * found.value, 0, tally.operations)
+
+
+def _primary_parts(
+    n: mpz, g: mpz, h: mpz, factors: tuple[tuple[int, int], ...], tally: Tally
+) -> Iterator[tuple[int, int, mpz, mpz]]:
+    """For each (q, e) the powers of g and h whose orders divide q^e, by halving the list."""
+    if len(factors) == 1:
+        yield *factors[0], g, h
+    elif factors:
+        middle = len(factors) // 2
+        for mine, others in (
+            (factors[:middle], factors[middle:]),
+            (factors[middle:], factors[:middle]),
+        ):
+            away = prod(q**e for q, e in others)
+            pair = tally.power(g, away, n), tally.power(h, away, n)
+            yield from _primary_parts(n, *pair, mine, tally)
+
+
+def _prime_power_order(
+    n: mpz,
+    g: mpz,
+    h: mpz,
+    q: int,
+    e: int,
+    seed: int,
+    executor: Executor | None,
+    tally: Tally,
+) -> Logarithm:
+    """The logarithm of h to the base g, whose order divides q^e: one digit to the base q a time."""
+    chain = [g]
+    while chain[-1] != 1 and len(chain) <= e:
+        chain.append(tally.power(chain[-1], q, n))
+    digits = len(chain) - 1
+    if tally.power(h, q**digits, n) != 1:
+        raise tally.nothing("the element is not in the group of the base")
+    steps = _table(n, chain, q, tally)
+    value = 0
+    for index in range(digits):
+        lower = h * tally.power(g, -value, n) % n
+        digit = tally.power(lower, q ** (digits - 1 - index), n)
+        if steps:
+            found = giant_steps(steps, digit, q, tally=tally)
+        else:
+            found = prime_order_logarithm(
+                n, chain[digits - 1], digit, q, seed=seed, executor=executor, tally=tally
+            )
+        value += found.value * q**index
+    return Logarithm(value, q**digits, 0)
+
+
+def _table(n: mpz, chain: list[mpz], q: int, tally: Tally) -> Steps | None:
+    """Baby steps for the digits, made once; None where a digit is found without a table."""
+    if len(chain) < 2 or not SCANNED < q <= LARGEST_BY_STEPS:
+        return None
+    return baby_steps(n, chain[-2], q, tally=tally)
+
+
+def combined(one: Logarithm, other: Logarithm) -> Logarithm:
+    """Both congruences, for coprime moduli (Chinese remainder theorem)."""
+    lift = (other.value - one.value) * invert(one.modulus, other.modulus) % other.modulus
+    return Logarithm(int(one.value + one.modulus * lift), one.modulus * other.modulus, 0)
