@@ -46,13 +46,14 @@ def render(
 def _head(report: View, width: int) -> Iterator[str]:
     yield clipped(f"Group parameters reviewed as of {report.as_of}: {report.size}", width)
     if report.worst is not None:
-        yield "   ".join(f"{name} {count}" for name, count in report.positions)
+        counts = "   ".join(f"{name} {count:,}" for name, count in report.positions)
+        yield clipped(f"{counts}   (figures in bits)", width)
     yield from _listed("not read", report.problems, width)
     yield from _listed("notice", report.notices, width)
     if report.sheets:
         yield ""
         columns = " ".join(f"{name:>8}" for name in _COLUMNS)
-        yield f"{'position':<{_LABEL}}{columns}  set (figures are bits)"
+        yield f"{'position':<{_LABEL}}{columns}  set"
 
 
 def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
