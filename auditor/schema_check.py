@@ -107,8 +107,8 @@ def _count(items: Sequence[Any]) -> str:
 
 
 def quoted(text: str) -> str:
-    """Text in quotes, shortened, with control characters escaped."""
-    return ascii(shorten(text)) if not text.isprintable() else repr(shorten(text))
+    """Text in quotes, shortened, what cannot be printed escaped."""
+    return repr(shorten(text))
 
 
 def value_at(value: Any, path: KeyPath) -> Any:

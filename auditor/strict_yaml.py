@@ -125,8 +125,13 @@ def read(text: str, *, floats: bool = True, loader: Any = LOADER) -> Loaded:
 
 def shown_path(path: KeyPath) -> str:
     """``path`` for a message: ``parameter_sets[0].modulus``."""
-    parts = (f"[{part}]" if isinstance(part, int) else f".{shorten(part)}" for part in path)
+    parts = (f"[{part}]" if isinstance(part, int) else f".{visible(part)}" for part in path)
     return "".join(parts).removeprefix(".")
+
+
+def visible(text: str) -> str:
+    """Text of a document for a message: shortened, what cannot be printed escaped."""
+    return repr(shorten(text))[1:-1]
 
 
 def _fatal(mark: Mark, message: str, path: KeyPath = ()) -> YamlError:
@@ -233,7 +238,7 @@ class _Builder:
         if isinstance(event, yaml.AliasEvent):
             return self.alias(position, path, mark), position + 1
         if event.tag is not None:
-            self.problem(mark, path, f"tag {shorten(event.tag)}: tags are not allowed")
+            self.problem(mark, path, f"tag {visible(event.tag)}: tags are not allowed")
         if isinstance(event, yaml.ScalarEvent):
             return self.scalar(position, path, mark), position + 1
         if isinstance(event, yaml.SequenceStartEvent):
@@ -243,7 +248,7 @@ class _Builder:
     def alias(self, position: int, path: KeyPath, mark: Mark) -> Any:
         target = self.targets[position]
         if target is None:
-            name = shorten(self.events[position].anchor)
+            name = visible(self.events[position].anchor)
             self.problem(mark, path, f"alias *{name} without an anchor &{name} before it")
             return None
         value = self.node(target, path)[0]
@@ -316,7 +321,7 @@ def _key_reason(event: Any) -> str:
     if not isinstance(event, yaml.ScalarEvent):
         return "a key that is not plain text: keys are text, not lists, mappings or aliases"
     if event.tag is not None:
-        return f"tag {shorten(event.tag)}: tags are not allowed"
+        return f"tag {visible(event.tag)}: tags are not allowed"
     if event.value == "<<" and event.style in (None, ""):
         return "merge key <<: write the keys out"
     return ""

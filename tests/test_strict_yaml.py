@@ -96,7 +96,7 @@ def test_all_problems_of_one_text_are_found_in_one_run(loader: Any) -> None:
     """What spoils one value does not hide the others."""
     text = (
         "a: 1\na: 2\nb: !!str 5\nc: *no\n<<: {d: 1}\n? [e]\n: 1\nf: .nan\n"
-        f"g: 0x1{'0' * 16384}\nh: fine\ni: 1e999\n"
+        f"g: 0x1{'0' * 16384}\nh: fine\ni: 1e999\n!!str j: 1\n"
     )
     loaded = read(text, loader=loader)
     assert [(item.line, item.column, item.path) for item in loaded.problems] == [
@@ -108,6 +108,7 @@ def test_all_problems_of_one_text_are_found_in_one_run(loader: Any) -> None:
         (8, 4, ("f",)),
         (9, 4, ("g",)),
         (11, 4, ("i",)),
+        (12, 1, ()),
     ]
     assert loaded.value["a"] == 1
     assert loaded.value["h"] == "fine"
@@ -278,6 +279,16 @@ def test_what_reading_imports() -> None:
         code = f"import sys, {module}; print(sorted({heavy} & set(sys.modules)))"
         done = subprocess.run([sys.executable, "-c", code], capture_output=True, check=True)
         assert done.stdout == b"[]\n"
+
+
+@pytest.mark.parametrize(
+    "text", ['"a\\nb": .inf', '{"\\u202e": 1, "\\u202e": 2}', "!<%0A> 5", "*\u2066é"]
+)
+def test_messages_escape_what_cannot_be_printed(text: str) -> None:
+    """Keys, tags and anchors come from strangers."""
+    with pytest.raises(YamlError) as caught:
+        load(text)
+    assert caught.value.message.isprintable()
 
 
 def test_paths_are_shown_as_they_are_written() -> None:

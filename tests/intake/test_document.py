@@ -277,7 +277,25 @@ def test_seeds_keep_their_leading_zeros() -> None:
 
 
 TEXTS = [EVERY_KEY, *(path.read_bytes().decode("utf-8", "replace") for path in DOCUMENTS)]
-PIECES = ["\n", "  ", "- ", ": ", "{", "}", "[", "]", '"', "&a ", "*a", "<<: ", "!!x ", "0x", "\t"]
+PIECES = [
+    '"\\u202e": ',
+    "!<%0A> ",
+    "\n",
+    "  ",
+    "- ",
+    ": ",
+    "{",
+    "}",
+    "[",
+    "]",
+    '"',
+    "&a ",
+    "*a",
+    "<<: ",
+    "!!x ",
+    "0x",
+    "\t",
+]
 
 
 @given(
@@ -302,7 +320,7 @@ def test_any_text_is_read_or_refused(text: str) -> None:
 KEYS = [
     *("name", "purpose", "scheme", "protocol", "modulus", "generator", "subgroup_order"),
     *("known_factors", "parties", "exponent", "peer_check", "message_bits", "public_values"),
-    *("provenance", "required_strength", "protect_until", "other"),
+    *("provenance", "required_strength", "protect_until", "other\n"),
 ]
 
 _values = st.recursive(
@@ -313,7 +331,8 @@ _values = st.recursive(
     lambda inner: (
         st.lists(inner, max_size=3)
         | st.dictionaries(
-            st.sampled_from(["file", "group", "bits", "use", "role", "method", "seed", "x"]), inner
+            st.sampled_from(["file", "group", "bits", "use", "role", "method", "seed", "\u202e"]),
+            inner,
         )
     ),
     max_leaves=6,
@@ -324,6 +343,16 @@ _values = st.recursive(
 def test_any_value_under_any_key_is_read_or_refused(keys: dict[str, Any]) -> None:
     """Shapes that no schema foresaw end as errors with places, too."""
     _check(_document(**keys))
+
+
+@pytest.mark.parametrize(
+    "keys", [{"parties": {"role": []}}, {"parties": [{"role": []}] * 2}, {"name": ["a"]}]
+)
+def test_names_of_other_shapes_are_not_compared(keys: dict[str, Any]) -> None:
+    """Only text can be a repetition."""
+    errors = _read(_document(**keys)).errors
+    assert errors
+    assert not any("already" in error.message for error in errors)
 
 
 def _check(text: str) -> None:
