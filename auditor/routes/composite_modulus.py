@@ -136,10 +136,9 @@ def _factoring_bits(
     """The least, over how many of the cheapest primes are taken out one by one."""
     ordered = sorted(components, key=lambda component: component.discovery_bits)
     remaining = modulus_length
-    found = 0.0
     best = nist_bits(modulus_length)
     for index, component in enumerate(ordered, start=1):
-        found = max(found, component.discovery_bits)
+        found = component.discovery_bits
         remaining = max(rest_length, remaining - component.length + 1)
         composite_left = rest_length > 0 or len(ordered) - index > 1
         best = min(best, max(found, nist_bits(remaining) if composite_left else 0.0))

@@ -23,10 +23,11 @@ def confinement(
     ``order`` is ord(g); ``group`` the exponent of the group of units, p - 1 for a prime p.
 
     Attacker: peer. Formula: the least, over prefixes A of the usable primes of the group that
-    ord(g) lacks and prefixes B of the primes of ord(g), of sum_A (r - 1) / 2 + sum_B sqrt(pi r /
-    2) + 2 sqrt(remaining), where remaining is the smaller of 2^width / (AB) and ord(g) / B. A
-    probe of order r costs (r - 1) / 2 wrong guesses on average, when a message under the derived
-    key is all that is seen. Unit: key trials and group multiplications, counted alike; on-line
+    ord(g) lacks and prefixes B of the primes of ord(g), of sum_A (r - 1) / 2 + sum_B sqrt(pi/2)
+    (sqrt(r) - 1) + 2 sqrt(2^width / z), z the product of A and B; the last term is absent when B
+    is everything, and a prime power of the group counts once, whoever learns it. A probe of
+    order r costs (r - 1) / 2 wrong guesses on average, when a message under the derived key is
+    all that is seen. Unit: key trials and group multiplications, counted alike; on-line
     queries are one for each prime used. With unfactored rests the figure is an upper bound.
 
     Usable is every prime of ``group`` when nothing or the range is checked: a range check

@@ -1,7 +1,7 @@
 """Route: a special form that only whoever chose the modulus knows."""
 
 from auditor.routes.base import Closed, Model, Unit, Work
-from auditor.routes.sieve_models import nist_bits, special_bits
+from auditor.routes.sieve_models import special_bits
 
 ROUTE = "hidden_form"
 MODEL = Model("special number field sieve at full advantage", "heuristic")
@@ -24,7 +24,7 @@ def hidden_form(modulus_bits: float, origin_verified: bool) -> Work | Closed:
     return Work(
         route=ROUTE,
         attacker="designer",
-        bits=min(nist_bits(modulus_bits), special_bits(modulus_bits)),
+        bits=special_bits(modulus_bits),
         unit=Unit.SYMMETRIC_TRIALS,
         model=MODEL,
         source=SOURCE,

@@ -6,10 +6,13 @@ whoever uses x again and again. Then x = x0 + z k, and kangaroos look for k in a
 2^w / z values (van Oorschot and Wiener, EUROCRYPT 1996; Lim and Lee, CRYPTO 1997). Both routes
 that do this minimise over which factors are worth their price, and both do it here.
 
-In each of the two kinds a set of primes is never better than the same number of smaller primes
-or than the set with a smaller prime added, with the costs of :mod:`auditor.routes.searches`. So
-the least total over all sets is the least over prefixes of the ascending lists, and it never
-rises when a factor becomes known.
+Of either kind, take a set of primes that lacks one smaller than its largest. With the costs of
+:mod:`auditor.routes.searches`, adding the smaller one or putting it in place of the largest is no
+dearer: one of the two always. So the least total over all sets is the least over prefixes of the
+ascending lists, and it never rises when a factor becomes known.
+
+An exponent wider than ord(g) hides behind its multiples: probes help only when 2^w / z falls
+below the order, and until then logarithms in all of <g> are cheaper, which is one of the ways.
 """
 
 import math
@@ -21,7 +24,7 @@ from itertools import accumulate
 from auditor.routes.base import log2_sum
 from auditor.routes.factors import Factors
 from auditor.routes.pohlig_hellman import pohlig_hellman_bits
-from auditor.routes.searches import interval_bits, subgroup_bits, trial_bits
+from auditor.routes.searches import kangaroo_bits, subgroup_bits, trial_bits
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,8 +68,8 @@ class Splits:
         """The split that uses so many of the smallest primes of either kind."""
         passive, active = self._logarithms, self._probes
         known = passive.gain[logarithms] + active.gain[probes]
-        left = self._left(logarithms, probes)
-        search = interval_bits(left)
+        left = self._width - known
+        search = kangaroo_bits(left)
         total = log2_sum(passive.cost[logarithms], active.cost[probes], search)
         return Split(
             bits=max(0.0, total),
@@ -75,41 +78,22 @@ class Splits:
             known_bits=known,
             probed_bits=active.gain[probes],
             trials_bits=active.cost[probes],
-            left_bits=left,
+            left_bits=max(0.0, left),
             search_bits=search,
         )
-
-    def _left(self, logarithms: int, probes: int) -> float:
-        """Width of the interval left: below 2^width / z, and below ord(g) over what of it is known.
-
-        An exponent wider than ord(g) hides behind its multiples: what probes reveal is of use
-        only when 2^width / z falls below the order.
-        """
-        passive = self._logarithms.gain[logarithms]
-        exponent = self._width - passive - self._probes.gain[probes]
-        return max(0.0, min(exponent, self._order.bits - passive))
 
     def _candidates(self) -> Iterator[Split]:
         yield self._everything()
         for logarithms in range(len(self._logarithms)):
-            yield self.at(logarithms, 0)
             yield self.at(logarithms, self._best_probes(logarithms))
 
     def _best_probes(self, logarithms: int) -> int:
-        """Best number of probes, given that some are used.
-
-        Nothing is gained while the exponent is wider than the order; from there on the total
-        falls, then rises.
-        """
-        count = len(self._probes) - 1
-        excess = self._width - self._order.bits
-        first = min(count, bisect_left(self._probes.gain, excess))
-        rises = bisect_left(
-            range(first, count),
+        """Best number of probes with so many logarithms: the total falls, then rises."""
+        return bisect_left(
+            range(len(self._probes) - 1),
             True,
             key=lambda n: self.at(logarithms, n + 1).bits >= self.at(logarithms, n).bits,
         )
-        return first + rises
 
     def _everything(self) -> Split:
         """Logarithms in all of <g>, the unfactored rest taken for one prime: nothing is left."""

@@ -1,10 +1,10 @@
 """The cost of the elementary searches that routes are composed of.
 
 Three kinds: a logarithm in a subgroup of prime order (square-root methods), a logarithm in an
-interval (kangaroo), and trying one candidate after the other. The expected costs are the usual
-ones less a constant below two steps: a group of one element costs nothing to search. With that
-constant the composed figures have a property that the plain ones lack in tiny groups, and on
-which the reports rely: *knowing one more factor never raises a figure*. The reason is
+interval (kangaroo), and trying one candidate after the other. In composed routes the first and
+the last are counted with one step less than usual: a group of one element costs nothing to
+search. With that step the composed figures have a property that they would lack in tiny groups,
+and on which the reports rely: *knowing one more factor never raises a figure*. The reason is
 (sqrt(a) - 1) + (sqrt(b) - 1) <= sqrt(ab) - 1.
 
 Sources: Pollard 1978 and 2000 (rho, kangaroo); van Oorschot and Wiener, J. Cryptology 12, 1999.
@@ -37,11 +37,6 @@ def subgroup_bits(order: int) -> float:
     if order == 2:
         return -1.0
     return RHO_CONSTANT_BITS + log2_difference(0.5 * math.log2(order), 0.0)
-
-
-def interval_bits(width: float) -> float:
-    """One logarithm among 2^width exponents: log2 of 2 sqrt(2^width) - sqrt(pi/2)."""
-    return log2_difference(kangaroo_bits(width), RHO_CONSTANT_BITS)
 
 
 def trial_bits(candidates: int) -> float:

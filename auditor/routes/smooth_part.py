@@ -13,9 +13,10 @@ def smooth_part_then_short_exponent(width: float, order: Factors) -> Work | Clos
     """The logarithm of an exponent uniform in [0, 2^width) to a base of the given ``order``.
 
     Attacker: passive; one public value suffices. Formula: the least, over prefixes of the primes
-    of ord(g) in ascending order, of sum sqrt(pi r / 2) + 2 sqrt(2^min(width, log2 ord(g)) / z),
-    z the product of the prefix. Unit: group multiplications. Precondition: ord(g) > 1. With an
-    unfactored rest the figure is an upper bound. Source: van Oorschot and Wiener 1996.
+    of ord(g) in ascending order, of sum sqrt(pi/2) (sqrt(r) - 1) + 2 sqrt(2^width / z), z the
+    product of the prefix; the last term is absent when the prefix is everything. Unit: group
+    multiplications. Precondition: ord(g) > 1. With an unfactored rest the figure is an upper
+    bound. Source: van Oorschot and Wiener 1996.
     """
     if order.bits == 0:
         return Closed(ROUTE, "passive", "the generator has order 1")

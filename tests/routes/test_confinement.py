@@ -13,7 +13,7 @@ from auditor.routes.confinement import Check, confinement
 from auditor.routes.factors import Factors
 from auditor.routes.leaks import confinement_leak_bits, public_leak_bits
 from auditor.routes.partial_exponent import Splits
-from auditor.routes.searches import interval_bits, kangaroo_bits, subgroup_bits, trial_bits
+from auditor.routes.searches import kangaroo_bits, subgroup_bits, trial_bits
 from auditor.routes.smooth_part import smooth_part_then_short_exponent
 from tests.routes.cases import cases, cofactor_primes, factors, group, pairs, subgroup, units
 
@@ -215,10 +215,9 @@ def test_no_choice_of_factors_beats_the_route(
         for active in subsets(extra):
             spent = sum(2 ** subgroup_bits(r) for r in passive)
             spent += sum(2 ** trial_bits(r) for r in active)
-            exponent = width - math.log2(math.prod(passive) * math.prod(active))
-            left = min(exponent, base.bits - math.log2(math.prod(passive)))
+            left = 2**width / (math.prod(passive) * math.prod(active))
             complete = len(passive) == len(order)
-            best = min(best, spent + (0 if complete else 2 ** interval_bits(max(0.0, left))))
+            best = min(best, spent + (0 if complete else 2 * math.sqrt(left)))
 
     expected = max(0.0, math.log2(best)) if best > 0 else 0.0
     assert work_of(width, base, group_factors) == pytest.approx(expected, abs=1e-9)

@@ -11,7 +11,7 @@ from auditor.routes.base import Closed, Work
 from auditor.routes.factors import Factors
 from auditor.routes.partial_exponent import Splits
 from auditor.routes.pohlig_hellman import pohlig_hellman, pohlig_hellman_bits
-from auditor.routes.searches import interval_bits, kangaroo_bits, rho_bits, subgroup_bits
+from auditor.routes.searches import kangaroo_bits, rho_bits, subgroup_bits
 from auditor.routes.shared_precomputation import shared_interval_table, shared_table
 from auditor.routes.short_exponent import short_exponent
 from auditor.routes.sieve_models import nist_bits
@@ -141,12 +141,11 @@ def test_the_explanation_follows_the_split() -> None:
 def test_no_set_of_primes_beats_the_best_prefix(primes: list[int], width: int) -> None:
     """Trying every set of primes of ord(g) finds nothing cheaper than the route does."""
     order = factors(primes)
-    limit = min(width, order.bits)
     best = math.inf
     for size in range(len(primes) + 1):
         for chosen in combinations(sorted(primes), size):
-            left = limit - math.log2(math.prod(chosen))
-            rest = 0.0 if size == len(primes) else 2 ** interval_bits(max(0.0, left))
+            left = 2**width / math.prod(chosen)
+            rest = 0.0 if size == len(primes) else 2 * math.sqrt(left)
             best = min(best, sum(2 ** subgroup_bits(r) for r in chosen) + rest)
 
     expected = max(0.0, math.log2(best)) if best > 0 else 0.0

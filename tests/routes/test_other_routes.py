@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.routes.base import Closed, Work
+from auditor.routes.base import Closed, Work, floor_bits
 from auditor.routes.composite_modulus import (
     Component,
     composite_modulus,
@@ -140,6 +140,15 @@ def test_an_outsider_takes_out_the_primes_that_are_cheap_to_find() -> None:
     assert outsider.bits == pytest.approx(nist_bits(1921), abs=1e-9)
     assert composite_modulus_outsider(2048, (), 2048).bits == nist_bits(2048)
     assert composite_modulus(2048, (), 2048).bits == nist_bits(2047)
+
+
+def test_taking_out_all_primes_but_one_factors_the_modulus() -> None:
+    """Of two primes only the smaller must be found; no sieve is left to run."""
+    two = dict(composite_modulus_outsider(2048, (Component(128), Component(1920)), 0).details)
+    three = (Component(128), Component(960), Component(960))
+
+    assert two["factoring"] == floor_bits(elliptic_curve_bits(128))
+    assert dict(composite_modulus_outsider(2048, three, 0).details)["factoring"] > 100
 
 
 def test_an_outsider_is_not_spared_the_logarithms() -> None:

@@ -38,6 +38,11 @@ def forge(p: int, alpha: int, y: int, h: int, forgery: Forgery) -> tuple[int, in
     assert forgery.r is not None
     assert forgery.subgroup is not None
     assert forgery.power is not None
+    sign = -1 if forgery.negative else 1
+    if forgery.condition is Condition.POWER_OF_DIVISOR:
+        assert pow(forgery.r, forgery.power, p) == sign * alpha % p
+    else:
+        assert forgery.r == sign * pow(alpha, forgery.power, p) % p
     w = (p - 1) // forgery.subgroup
     step, target = pow(alpha, w, p), pow(y, w, p)
     z = next(z for z in range(forgery.subgroup) if pow(step, z, p) == target)
@@ -80,6 +85,22 @@ def test_reported_conditions_forge_signatures(case: dict[str, int]) -> None:
             signed += forge(p, alpha, y, generator.randrange(1, p - 1), forgery) is not None
         assert signed / 200 == pytest.approx(case["share"], abs=0.12)
         assert signed == 200 or case["share"] < 1
+
+
+@pytest.mark.parametrize("sign", [1, -1])
+@pytest.mark.parametrize("power", [1, 2, 3, -1, -4, 7])
+def test_powers_of_a_divisor_of_either_sign(power: int, sign: int) -> None:
+    """A base +-a^k is reported for k of either sign, and at least half of all messages signed."""
+    p = 1000117
+    alpha = sign * pow(6, power, p) % p
+    forgery = forgeries(p, alpha)[Condition.POWER_OF_DIVISOR]
+    generator = Random(power)
+
+    signed = 0
+    for _ in range(100):
+        y = pow(alpha, generator.randrange(1, p - 1), p)
+        signed += forge(p, alpha, y, generator.randrange(1, p - 1), forgery) is not None
+    assert signed >= 35
 
 
 def test_a_worked_forgery() -> None:
