@@ -17,7 +17,7 @@ WIDTH = 560.0
 LEFT = 8.0
 RIGHT = 552.0
 ROW = 54.0
-FIRST = 70.0
+FIRST = 76.0
 STEP = 32
 
 
@@ -65,7 +65,7 @@ def routes_picture(routes: list[Record], required: int) -> RoutesPicture | None:
     )
     axis_y = FIRST + ROW * (len(routes) - 1) + 18
     return RoutesPicture(
-        height=axis_y + 28,
+        height=axis_y + 30,
         required=required,
         required_x=x(required),
         axis_y=axis_y,
