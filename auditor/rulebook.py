@@ -136,7 +136,7 @@ class _Library:
             raise RulebookError(tuple(sorted(problems, key=lambda problem: problem.order)))
         reader = BookReader(loaded, shown, self.compiler, None, problems)
         extends = loaded.value.get("extends")
-        if isinstance(extends, str):
+        if isinstance(extends, str) and not reader.flagged(("extends",)):
             reader.base = self.base(reader, extends, file, (*chain, shown))
         book = reader.book(hashlib.sha256(raw).hexdigest())
         if problems:

@@ -117,6 +117,13 @@ class BookReader:
         end = self.loaded.marks.get(tuple(siblings), Mark(2**31, 1))
         return not any(start <= Mark(p.place.line, p.place.column) < end for p in self.problems)
 
+    def flagged(self, path: KeyPath) -> bool:
+        """Whether something is already known to be wrong with the value at ``path``."""
+        mark = self.loaded.marks[path]
+        return any(
+            (p.place.line, p.place.column) == (mark.line, mark.column) for p in self.problems
+        )
+
     def thresholds(self) -> dict[str, Scalar]:
         """The values of this book over those it inherits; an inherited one keeps its kind."""
         inherited = dict(self.base.values) if self.base else {}
