@@ -21,6 +21,11 @@ def sentence(claim: Record) -> str:
         return _any_kind(statement, certificate)
 
 
+def is_small_prime(claim: Record) -> bool:
+    """Whether the claim is that a number below 2^64 is prime, which needs no words of its own."""
+    return bool(claim["kind"] == "prime" and claim["certificate"].get("method") == "below-2^64")
+
+
 def _prime(statement: Record, certificate: Record) -> str:
     method = certificate["method"]
     if method == "baillie-psw":
@@ -60,7 +65,7 @@ def _order(statement: Record, certificate: Record) -> str:
     order = _product(known, 1)
     if rest != 1:
         order += f" times a divisor, above 1, of {plain_value(rest)}"
-    return f"the order of {element} modulo {modulus} is {order}"
+    return f"The order of {element} modulo {modulus} is {order}"
 
 
 def _membership(statement: Record, certificate: Record) -> str:
@@ -72,8 +77,27 @@ def _membership(statement: Record, certificate: Record) -> str:
 def _searched(statement: Record, certificate: Record) -> str:
     runs = "; ".join(_run(run) for run in statement["runs"])
     return (
-        f"no factor of {plain_value(statement['n'])} was found by {runs}; "
+        f"No factor of {plain_value(statement['n'])} was found by {runs}; "
         f"attested, engine {certificate['engine']}"
+    )
+
+
+def _special_form(statement: Record, certificate: Record) -> str:
+    number, cofactor = plain_value(statement["n"]), plain_value(certificate["cofactor"])
+    at = f"{plain_value(certificate['g0'])} and {plain_value(certificate['g1'])}"
+    coefficients = certificate["coefficients"]
+    return (
+        f"{number} has a special form: times {cofactor} it is the value of a polynomial of degree "
+        f"{len(coefficients) - 1}, made homogeneous, at {at}; coefficients, that of x^0 first: "
+        f"{plain_value(coefficients)}"
+    )
+
+
+def _form_searched(statement: Record, certificate: Record) -> str:
+    tiers = ", ".join(map(str, statement["tiers"]))
+    return (
+        f"No special form of {plain_value(statement['n'])} was found among those looked for, of "
+        f"tiers {tiers}; attested"
     )
 
 
@@ -109,4 +133,6 @@ _WRITERS: Mapping[str, Callable[[Record, Record], str]] = {
     "order": _order,
     "membership": _membership,
     "searched": _searched,
+    "special-form": _special_form,
+    "form-searched": _form_searched,
 }

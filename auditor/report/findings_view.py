@@ -71,7 +71,7 @@ def merge(parameter_set: Record, rules: Mapping[str, Record]) -> tuple[MergedFin
     for finding in sorted(parameter_set["findings"], key=_weight(parameter_set["decided_by"])):
         key = finding["defect"], finding["outcome"], finding["grade"]
         groups.setdefault(key, []).append(finding)
-    return tuple(_merged(group, parameter_set["absent"], rules) for group in groups.values())
+    return tuple(_merged(group, parameter_set, rules) for group in groups.values())
 
 
 def _weight(decided_by: str | None) -> Any:
@@ -86,7 +86,9 @@ def _weight(decided_by: str | None) -> Any:
     return weight
 
 
-def _merged(group: list[Record], absent: Record, rules: Mapping[str, Record]) -> MergedFinding:
+def _merged(
+    group: list[Record], parameter_set: Record, rules: Mapping[str, Record]
+) -> MergedFinding:
     first = group[0]
     values = {name: value for finding in group for name, value in finding["values"].items()}
     missing = _once(name for finding in group for name in finding["missing"])
@@ -98,11 +100,11 @@ def _merged(group: list[Record], absent: Record, rules: Mapping[str, Record]) ->
         statements=_once(finding["statement"] for finding in group),
         requirements=_once(_requirement(finding, rules) for finding in group),
         values=tuple((name, plain_value(value)) for name, value in values.items()),
-        missing=tuple((name, absence(absent.get(name))) for name in missing),
+        missing=tuple((name, _why_missing(name, parameter_set)) for name in missing),
         remedies=_once(remedy(f["remedy"]) for f in group if f["remedy"]),
         cautions=_once(caution for finding in group for caution in finding["cautions"]),
         concessions=_once(_concession(f["concession"]) for f in group if f["concession"]),
-        waits_for=_waits_for(first["outcome"], missing, absent),
+        waits_for=_waits_for(first["outcome"], missing, parameter_set),
     )
 
 
@@ -136,24 +138,31 @@ def _concession(record: Record) -> Concession:
     return Concession(text, record["in_force"])
 
 
-def absence(record: Record | None) -> str:
-    """Why a fact is absent, and what the owner could declare."""
-    if record is None:
+def _why_missing(name: str, parameter_set: Record) -> str:
+    """Why a fact is absent and what the owner could declare; or where it stands and may move."""
+    if name in parameter_set["facts"]:
+        return f"{plain_value(parameter_set['facts'][name]['value'])}, and may still move"
+    if name not in parameter_set["absent"]:
         return "not established"
+    record = parameter_set["absent"][name]
     reason = REASON_MEANING[record["reason"]]
     keys = ", ".join(record["keys"])
     return f"{reason}; could be declared by: {keys}" if keys else reason
 
 
-def _waits_for(result: str, missing: tuple[str, ...], absent: Record) -> tuple[str, ...]:
+def _waits_for(result: str, missing: tuple[str, ...], parameter_set: Record) -> tuple[str, ...]:
+    """Questions named with the absence, or that settle the fact; keys where only they would do."""
     if result != "undetermined":
         return ()
+    absent = parameter_set["absent"]
     reasons = [absent[name] for name in missing if name in absent]
-    questions = _once(question for reason in reasons for question in reason["questions"])
+    named = [question for reason in reasons for question in reason["questions"]]
+    loose = {name for name in missing if name not in absent}
+    settling = [q["id"] for q in parameter_set["questions"] if loose & set(q["settles"])]
     keys = _once(
         f"key:{key}"
         for reason in reasons
         if reason["reason"] == "undeclared" or not reason["questions"]
         for key in reason["keys"]
     )
-    return questions + keys
+    return _once([*named, *settling]) + keys

@@ -6,13 +6,9 @@ from math import gcd
 from typing import Any
 
 from auditor.report.pictures import OrderStrip, order_strip
+from auditor.report.text import read_integer
 
 Record = Mapping[str, Any]
-
-
-def read_integer(value: int | str) -> int:
-    """An integer of the record."""
-    return int(value, 16) if isinstance(value, str) else value
 
 
 @dataclass(frozen=True, slots=True)

@@ -58,6 +58,11 @@ def clipped(text: str, limit: int) -> str:
     return text if len(text) <= limit else text[: limit - 1].rstrip() + "…"
 
 
+def read_integer(value: int | str) -> int:
+    """An integer of a record; ValueError for text that is not hexadecimal."""
+    return int(value, 16) if isinstance(value, str) else value
+
+
 @dataclass(frozen=True, slots=True)
 class Number:
     """An integer of a record for readers: in full, and short with its bit length and digest."""
@@ -69,7 +74,7 @@ class Number:
     @classmethod
     def read(cls, value: int | str) -> "Number":
         """From a JSON integer or hex text; ValueError for other text."""
-        number = int(value, 16) if isinstance(value, str) else value
+        number = read_integer(value)
         text = hex(number)
         full = str(number) if abs(number) <= 2**53 else text
         return cls(full, number.bit_length(), hashlib.sha256(text.encode()).hexdigest())

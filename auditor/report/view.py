@@ -13,12 +13,12 @@ from functools import cached_property
 from typing import Any
 
 from auditor.report import words
-from auditor.report.claim_words import sentence
+from auditor.report.claim_words import is_small_prime, sentence
 from auditor.report.json_report import dumps
 from auditor.report.questions_view import Question, questions
 from auditor.report.sheet_view import Sheet, sheet
 from auditor.report.strength_view import strength
-from auditor.report.text import visible_record
+from auditor.report.text import read_integer, visible_record
 from auditor.report.words import plural
 
 Record = Mapping[str, Any]
@@ -107,9 +107,17 @@ class View:
 
     @property
     def claims(self) -> Iterator[tuple[str, str, tuple[str, ...]]]:
-        """Id, sentence and used ids of every claim, by id."""
+        """Id, sentence and used ids of every claim but the small primes, by id."""
         for claim_id, claim in self.record["claims"].items():
-            yield claim_id, sentence(claim), tuple(claim["uses"])
+            if not is_small_prime(claim):
+                yield claim_id, sentence(claim), tuple(claim["uses"])
+
+    @cached_property
+    def small_primes(self) -> tuple[tuple[str, int], ...]:
+        """Id and number of every claim that a number below 2^64 is prime, by number."""
+        claims = self.record["claims"].items()
+        found = [(key, read_integer(c["statement"]["n"])) for key, c in claims if is_small_prime(c)]
+        return tuple(sorted(found, key=lambda item: item[1]))
 
     @property
     def problems(self) -> tuple[str, ...]:

@@ -148,7 +148,7 @@ def power(prime: int | str, exponent: int) -> str:
 
 
 def _number_or_text(value: str) -> str:
-    if not value.startswith("0x"):
+    if not value.startswith(("0x", "-0x")):
         return value
     try:
         number = Number.read(value)

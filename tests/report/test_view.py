@@ -119,6 +119,19 @@ def test_a_nonconforming_finding_waits_for_nothing() -> None:
         assert finding.waits_for == ()
 
 
+def test_a_finding_waits_for_what_would_move_a_loose_fact() -> None:
+    """A fact that is there but may still move waits for the question that settles it."""
+    record = fixture("harbour")
+    archive = next(s for s in record["parameter_sets"] if s["position"] == "open")
+    archive["findings"][0]["missing"] = ["strength.work_bits_at_most"]
+    archive["questions"][0]["settles"].append("strength.work_bits_at_most")
+    sheet = next(sheet for sheet in view(record).sheets if sheet.position == "open")
+    waiting = next(f for f in sheet.findings if f.defect == "order-unknown")
+
+    assert waiting.missing == (("strength.work_bits_at_most", "110.12, and may still move"),)
+    assert waiting.waits_for == (archive["questions"][0]["id"],)
+
+
 def test_limits_say_what_was_not_settled() -> None:
     """The unfactored rest, the depth of search, the risk, the books left out, the undeclared."""
     limits = " ".join(sheet_named("pilot boarding archive").limits)
