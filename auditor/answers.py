@@ -10,6 +10,7 @@ from typing import TypeVar
 
 import gmpy2
 
+from auditor.attested import furthest
 from auditor.claims.base import Claim, Draw, Factors, Refuted, product
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite, PerfectPower
@@ -18,10 +19,12 @@ from auditor.claims.order import Membership, Order
 from auditor.claims.primality_tests import DETERMINISTIC_BELOW
 from auditor.claims.prime import Prime
 from auditor.claims.searched import Searched
+from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
 from auditor.search import primality
-from auditor.search.factoring import Engine, Executor, SearchInterrupted, SearchResult, search
+from auditor.search.curves import Engine, Executor
+from auditor.search.factoring import SearchInterrupted, SearchResult, search
 from auditor.search.plan import QUICK, Plan, plan_for
 from auditor.search.work import Work
 
@@ -78,6 +81,9 @@ class Answers:
                 n, element, exponent = question.integers
                 member = gmpy2.powmod(element, exponent, n) == 1
                 self._accept(Membership(n, element, exponent, bool(member)))
+
+            case Asks.SPECIAL_FORM:
+                self._special_form(*question.integers)
 
     def settle_primality(self, n: int) -> Prime | Composite:
         """The claim that ``n`` > 1 is prime, or that it is composite; made if not yet there."""
@@ -136,20 +142,16 @@ class Answers:
                 executor=self._cores.executor,
                 jobs=self._cores.jobs,
                 engine=self._cores.engine,
-                done=self._work_done(known.rest) if known else None,
+                done=self._work_done(known),
             )
         except SearchInterrupted as interrupted:
             self._keep_factorization(number, interrupted.result)
             raise
         self._keep_factorization(number, result)
 
-    def _work_done(self, rest: int) -> Work | None:
-        """The most work of an earlier search that left this rest."""
-        searches = self.claims.searched(rest)
-        work = [
-            Work.from_runs(claim.runs, tuple(claim.engine.split(" and "))) for claim in searches
-        ]
-        return max(work, key=lambda done: (done.curves, done.p_minus_1), default=None)
+    def _work_done(self, known: Factorization | None) -> Work | None:
+        record = furthest(self.claims, known.rest) if known else None
+        return record[1] if record else None
 
     def _keep_factorization(self, number: int, result: SearchResult) -> None:
         claims = [self.settle_primality(prime) for prime, _ in result.pairs]
@@ -159,6 +161,16 @@ class Answers:
         self._accept(Factorization(number, result.pairs, result.rest, uses))
         if result.rest > 1:
             self._accept(Searched(result.rest, result.engine or "built-in", result.work.runs()))
+
+    def _special_form(self, n: int) -> None:
+        from auditor.search import special_form
+
+        tiers = (1, 2, 3) if self._run.effort == "thorough" else (1, 2)
+        found = special_form.search(n, tiers)
+        if found is None:
+            self._accept(FormSearched(n, tiers))
+        else:
+            self._accept(SpecialForm(n, found.coefficients, found.g1, found.g0, found.cofactor))
 
     def _order(self, n: int, element: int, multiple: int) -> None:
         """The order of an element whose ``multiple``-th power is 1, by stripping primes from it

@@ -27,7 +27,7 @@ class Place:
 
 @dataclass(frozen=True, slots=True)
 class Party:
-    """Who holds an exponent, how wide it is and how often used, and what a received value undergoes.
+    """Who holds an exponent, how wide and how often used, and what a received value undergoes.
 
     ``peer_check`` is None when the owner says nothing, and empty when nothing is checked.
     """

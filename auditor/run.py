@@ -8,12 +8,12 @@ exhausted before a deep one is asked, so the same declarations lead to the same 
 """
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass
 
 from auditor.answers import Answers
+from auditor.claims.base import Claim, Refuted
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration
-from auditor.facts import establish_all
+from auditor.facts import Established, establish
 from auditor.facts.base import Absent, Fact
 from auditor.questions import CHEAP, Question
 from auditor.run_values import RunValues
@@ -21,22 +21,8 @@ from auditor.run_values import RunValues
 InUse = Callable[[Mapping[str, Fact], Mapping[str, Absent]], Iterable[str]]
 """Names of the facts in use, given what is established so far."""
 Progress = Callable[[Question], None]
-
-
-@dataclass(frozen=True, slots=True)
-class Established:
-    """What is known about one declaration: facts, absences, and the claims consulted for them."""
-
-    declaration: Declaration
-    facts: Mapping[str, Fact]
-    absent: Mapping[str, Absent]
-    consulted: frozenset[str]
-
-
-def establish(declaration: Declaration, claims: Claims, run: RunValues) -> Established:
-    """All facts about one declaration, from the claims as they stand; no search."""
-    facts, absent, consulted = establish_all(declaration, claims, run)
-    return Established(declaration, facts, absent, consulted)
+Recall = Callable[[Question], Iterable[Claim]]
+"""Claims kept from earlier runs about the integers of a question."""
 
 
 def open_questions(known: Established, names: Iterable[str]) -> list[Question]:
@@ -55,15 +41,35 @@ def settle(
     run: RunValues,
     in_use: InUse,
     progress: Progress,
-) -> None:
-    """Ask and answer until nothing worth asking is open; the claims grow in ``answers``."""
+    recall: Recall,
+) -> list[str]:
+    """Ask and answer until nothing worth asking is open; the claims grow in ``answers``.
+
+    Returns a notice for each question whose proposed answer did not pass its check.
+    """
     asked: set[Question] = set()
+    refused: list[str] = []
     for declaration in declarations:
         while todo := _worth_asking(declaration, answers.claims, run, in_use, asked):
+            asked.update(todo)
+            if _recalled(todo, answers.claims, recall):
+                asked.difference_update(todo)
+                continue
             for question in todo:
-                asked.add(question)
                 progress(question)
-                answers.answer(question)
+                try:
+                    answers.answer(question)
+                except Refuted as reason:
+                    refused.append(f"{question.about} An answer was found and refused: {reason}.")
+    return refused
+
+
+def _recalled(questions: Iterable[Question], claims: Claims, recall: Recall) -> bool:
+    """Whether earlier runs knew something new about these; then it is time to look again."""
+    before = len(claims)
+    for question in questions:
+        claims.add(recall(question))
+    return len(claims) > before
 
 
 def _worth_asking(

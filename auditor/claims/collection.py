@@ -9,13 +9,24 @@ from auditor.claims.factorization import Factorization
 from auditor.claims.order import Membership, Order
 from auditor.claims.prime import Prime
 from auditor.claims.searched import Searched
+from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.claims.standing import Standing, weakest
 
 Kind = TypeVar("Kind", bound=Claim)
 
 KINDS: Mapping[str, type[Claim]] = {
     kind.kind: kind
-    for kind in (Prime, Composite, PerfectPower, Factorization, Order, Membership, Searched)
+    for kind in (
+        Prime,
+        Composite,
+        PerfectPower,
+        Factorization,
+        Order,
+        Membership,
+        Searched,
+        SpecialForm,
+        FormSearched,
+    )
 }
 
 
@@ -69,6 +80,16 @@ class Claims:
     def membership(self, modulus: int, element: int, exponent: int) -> Membership | None:
         """Whether element^exponent = 1."""
         return self._best(Membership, modulus, element, exponent)
+
+    def special_form(self, n: int) -> SpecialForm | None:
+        """A pair that shows a special form of ``n``."""
+        return self._best(SpecialForm, n)
+
+    def form_searched(self, n: int) -> FormSearched | None:
+        """The record of the widest search for a special form of ``n``."""
+        found = self._by_subject.get((FormSearched.kind, n), [])
+        records = (claim for claim in found if isinstance(claim, FormSearched))
+        return max(records, key=lambda claim: (len(claim.tiers), claim.tiers), default=None)
 
     def searched(self, n: int) -> tuple[Searched, ...]:
         """All records of searches that left ``n``, by id."""

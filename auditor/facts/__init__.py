@@ -1,6 +1,7 @@
 """All facts, one file a family; importing this package registers the vocabulary."""
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration
@@ -17,7 +18,10 @@ from auditor.facts import (  # noqa: F401  (imported to register their facts)
 )
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.facts.given import Given
-from auditor.facts.registry import establish, registered
+from auditor.facts.registry import establish as fact_of
+from auditor.facts.registry import registered
+from auditor.facts.work import all_open
+from auditor.routes.base import Work
 from auditor.run_values import RunValues
 
 
@@ -26,18 +30,27 @@ def vocabulary() -> Mapping[str, FactType]:
     return registered()
 
 
-def establish_all(
-    declaration: Declaration, claims: Claims, run: RunValues
-) -> tuple[dict[str, Fact], dict[str, Absent], frozenset[str]]:
-    """The facts that have a value, the absences of those that have none, and the ids of all
-    claims that were consulted on the way."""
+@dataclass(frozen=True, slots=True)
+class Established:
+    """What is known about one declaration: facts, absences, open routes, and the ids of all claims
+    that were consulted on the way."""
+
+    declaration: Declaration
+    facts: Mapping[str, Fact]
+    absent: Mapping[str, Absent]
+    routes: tuple[Work, ...]
+    consulted: frozenset[str]
+
+
+def establish(declaration: Declaration, claims: Claims, run: RunValues) -> Established:
+    """All facts about one declaration, from the claims as they stand: a pure function."""
     given = Given(declaration, claims, run)
     facts: dict[str, Fact] = {}
     absent: dict[str, Absent] = {}
     for name in registered():
-        outcome = establish(name, given)
+        outcome = fact_of(name, given)
         if isinstance(outcome, Fact):
             facts[name] = outcome
         else:
             absent[name] = outcome
-    return facts, absent, frozenset(given.consulted)
+    return Established(declaration, facts, absent, all_open(given), frozenset(given.consulted))

@@ -87,3 +87,11 @@ def order_is_declared(given: Given) -> bool:
     if q == 1 or not given.is_member(given.declaration.modulus, given.see(parts.element), q):
         return q == 1 and given.see(parts.element) == 1 % given.declaration.modulus
     return given.see(parts.generator_order_value) == q
+
+
+@fact("generator.canonical", "bool", "g was regenerated from the declared seed and index")
+def canonical(given: Given) -> bool:
+    # Replay of seeds is not done yet: what is declared is not examined, and the fact is absent.
+    if given.declaration.provenance is None:
+        given.undeclared("provenance")
+    given.unsettled()

@@ -1,11 +1,18 @@
 """Facts about the unit group modulo n."""
 
-from math import log2
+from math import ceil, log2
 
-from auditor.facts import parts
+from auditor.attested import furthest
+from auditor.facts import exponent, parts
+from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
 from auditor.routes.base import floor_bits
+from auditor.search.expected_curves import missed_factor_risk, searched_digits
+from auditor.search.work import Work
+
+FIRST_BITS = 20
+"""Trial division leaves no factor below 10^6."""
 
 
 @fact("group.cyclic", "bool", "a primitive root exists")
@@ -51,3 +58,65 @@ def factored(given: Given) -> bool:
 def unfactored_length(given: Given) -> int:
     rest = given.see(parts.order_factors).rest
     return 0 if rest == 1 else rest.bit_length()
+
+
+def _search_record(given: Given) -> Work:
+    """The work of the deepest search in the unfactored rest of the group exponent."""
+    rest = given.see(parts.exponent_factors).rest
+    record = furthest(given.claims, rest) if rest > 1 else None
+    if rest == 1:
+        given.undefined()
+    if record is None:
+        given.unsettled()
+    given.cite(record[0])
+    return record[1]
+
+
+@fact(
+    "group.searched_digits_at_least",
+    "int",
+    "decimal digits of the factors of phi(n) searched for: each size up to it was missed with "
+    "probability 1/e at most",
+)
+def searched(given: Given) -> int:
+    return searched_digits(given.see(_search_record))
+
+
+def risk_window(given: Given) -> tuple[int, int]:
+    """From the first size that division did not exclude to the largest factor that would bring an
+    attack below the requirement: one bit more than required where a peer can use it (half as many
+    trials), twice as many where its logarithms must be taken."""
+    required = given.declaration.required_bits
+    by_peer = not isinstance(given.peek(exponent.exposed_parties), Absent)
+    in_order = given.peek(parts.generator_order)
+    passive = isinstance(in_order, Absent) or in_order.rest > 1
+    if passive:
+        return FIRST_BITS, 2 * required
+    if by_peer:
+        return FIRST_BITS, required + 1
+    given.undefined()
+
+
+@fact(
+    "group.missed_factor_window",
+    "exhibit",
+    "the sizes in bits, from and to, of a missed factor that would bring an attack below the "
+    "requirement",
+)
+def missed_factor_window(given: Given) -> tuple[int, int]:
+    given.see(_search_record)
+    window = given.see(risk_window)
+    given.settle()
+    return window
+
+
+@fact(
+    "group.missed_factor_risk_at_most",
+    "real",
+    "chance that a factor in that window was missed, if the modulus was not chosen adversarially",
+)
+def missed_factor_risk_at_most(given: Given) -> float:
+    rest = given.see(parts.exponent_factors).rest
+    window = given.see(risk_window)
+    risk = missed_factor_risk(given.see(_search_record), window, rest.bit_length()).risk
+    return ceil(risk * 1000) / 1000

@@ -4,6 +4,7 @@ from auditor.facts import parts
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
 from auditor.intake import standard_groups
+from auditor.questions import Asks, Question
 
 NATURES = ("prime", "prime power", "power of two", "composite")
 
@@ -65,3 +66,35 @@ def smallest_factor_length(given: Given) -> int:
     lengths = [prime.bit_length() for prime, _ in factors]
     # A composite rest without known factors has one of at most half its length.
     return min([*lengths, (rest.bit_length() + 1) // 2] if rest > 1 else lengths)
+
+
+@fact(
+    "modulus.special_form_seen",
+    "bool",
+    "a form was found that the special number field sieve can use; false only says: none among "
+    "those looked for",
+)
+def special_form_seen(given: Given) -> bool:
+    n = given.declaration.modulus
+    if given.see(parts.nature) != "prime":
+        given.undefined()
+    form = given.claims.special_form(n)
+    if form is not None:
+        given.cite(form)
+        return True
+    if given.see(from_digits):
+        return False
+    record = given.claims.form_searched(n)
+    question = Question(Asks.SPECIAL_FORM, (n,))
+    if record is None:
+        given.unsettled(question)
+    given.cite(record)
+    given.loosen(question)
+    return False
+
+
+def from_digits(given: Given) -> bool:
+    """Whether the modulus is one of the published primes made from the digits of pi or e: their
+    maker was free in nothing but an offset, which leaves no room for a form."""
+    group = standard_groups.find(given.see(standard)[0])
+    return group is not None and group.formula is not None

@@ -8,13 +8,11 @@ work.
 
 from collections.abc import Callable, Sequence
 
-from auditor.facts import exponent, generator, parts, usage, work
+from auditor.facts import generator, parts, usage, work
 from auditor.facts.base import Absent, Reason
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
-from auditor.questions import Question
 from auditor.routes.base import Attacker, Work, floor_bits
-from auditor.routes.partial_exponent import Splits
 from auditor.routes.standard_tables import modulus_strength
 
 
@@ -44,12 +42,12 @@ def table_modulus(given: Given) -> int:
 
 def table_subgroup(given: Given) -> int:
     """Half the length of the largest prime of ord(g)."""
-    return given.see(generator.largest_prime_length) // 2
+    return int(given.see(generator.largest_prime_length)) // 2
 
 
 def table_exponent(given: Given) -> int:
     """Half the narrowest declared width."""
-    return given.see(usage.exponent_width) // 2
+    return int(given.see(usage.exponent_width)) // 2
 
 
 TABLE = (table_modulus, table_subgroup, table_exponent)
@@ -99,13 +97,8 @@ def work_bits_at_most(given: Given) -> float:
 
 @fact("strength.work_bits", "real", "the same, once nothing unknown could lower it")
 def work_bits(given: Given) -> float:
-    least = given.see(least_for_peer)
-    trace = given.trace(least_for_peer)
-    if trace.loose:
-        _raise_unknown(
-            given, [given.peek(part) for part in work.routes_for("peer")], trace.questions
-        )
-    return floor_bits(least.bits)
+    _require_final(given, work.routes_for("peer"))
+    return floor_bits(given.see(least_for_peer).bits)
 
 
 @fact("strength.designer_bits_at_most", "real", "least model work for whoever chose the parameters")
@@ -119,17 +112,21 @@ def sufficient(given: Given) -> bool:
     when every component is known, and every other open route is known exactly, and all reach the
     requirement. What decides a False is all that it rests on."""
     required = given.see(required_bits)
-    for part in (*TABLE, table_subgroup_at_most):
-        if _is_below(given, part, required):
-            given.see(part)
-            given.settle()
-            return False
-    for route in _routes_beside_tables(given):
-        if _is_below(given, lambda seen, route=route: floor_bits(seen.see(route).bits), required):
-            given.see(route)
-            given.settle()
-            return False
+    for component in (*TABLE, table_subgroup_at_most):
+        bits = given.peek(component)
+        if not isinstance(bits, Absent) and bits < required:
+            return _insufficient(given, component)
+    for route in BESIDE_TABLES:
+        found = given.peek(route)
+        if not isinstance(found, Absent) and floor_bits(found.bits) < required:
+            return _insufficient(given, route)
     return _all_reach(given)
+
+
+def _insufficient(given: Given, decided_by: Callable[[Given], object]) -> bool:
+    given.see(decided_by)
+    given.settle()
+    return False
 
 
 def table_subgroup_at_most(given: Given) -> int:
@@ -138,51 +135,38 @@ def table_subgroup_at_most(given: Given) -> int:
     return max([order.rest, *(prime for prime, _ in order.factors)]).bit_length() // 2
 
 
-def _is_below(given: Given, part: Callable[[Given], float], required: int) -> bool:
-    value = given.peek(part)
-    return not isinstance(value, Absent) and value < required
-
-
-def _routes_beside_tables(given: Given) -> tuple[work.RoutePart, ...]:
-    """The routes that the tables do not cover, as far as they are open and do something new.
-
-    Learning a part of the exponent first is something new only where a part is learnt and a part
-    is left; otherwise it is a route that the tables cover.
-    """
-    routes: list[work.RoutePart] = [work.raw_message, work.prime_power, work.OUTSIDER]
-    if given.peek(_learns_part_of_exponent) is True:
-        routes.append(work.smooth_part_then_short_exponent)
-    confinement = given.peek(work.confinement)
-    if isinstance(confinement, Work) and dict(confinement.details).get("queries"):
-        routes.append(work.confinement)
-    return tuple(routes)
-
-
-def _learns_part_of_exponent(given: Given) -> bool:
-    split = Splits(given.see(usage.exponent_width), given.see(exponent.generator_order)).cheapest()
-    return split.logarithms > 0 and split.left_bits > 0
+BESIDE_TABLES = (
+    work.special_number_field_sieve,
+    work.smooth_part_then_short_exponent,
+    work.confinement,
+    work.raw_message,
+    work.prime_power,
+    work.OUTSIDER,
+)
+"""The routes that the tables do not cover."""
 
 
 def _all_reach(given: Given) -> bool:
     """True, or absent with everything that is still open."""
-    parts_needed = (*TABLE, *work.routes_for("peer"))
-    outcomes = [given.peek(part) for part in parts_needed]
-    if isinstance(outcomes[0], Absent) and outcomes[0].reason == "undefined":
-        given.undefined()
-    open_ended: set[Question] = set()
-    for part, outcome in zip(parts_needed, outcomes, strict=True):
-        if not isinstance(outcome, Absent):
-            given.see(part)
-            open_ended |= given.trace(part).questions if given.trace(part).loose else set()
-    _raise_unknown(given, outcomes, open_ended)
+    for component in TABLE:
+        outcome = given.peek(component)
+        if isinstance(outcome, Absent) and outcome.reason == "undefined":
+            given.undefined()
+    _require_final(given, (*TABLE, *work.routes_for("peer")))
     return True
 
 
-def _raise_unknown(given: Given, outcomes: Sequence[object], questions: set[Question]) -> None:
-    """Absent, where some outcome is unknown or something open could still move one."""
+def _require_final(given: Given, needed: Sequence[Callable[[Given], object]]) -> None:
+    """Rest on all of these that are defined; absent, where one is unknown or could still move."""
+    outcomes = [given.peek(part) for part in needed]
+    known = [part for part, o in zip(needed, outcomes, strict=True) if not isinstance(o, Absent)]
     unknown = [o for o in outcomes if isinstance(o, Absent) and o.reason != "undefined"]
-    found = set(questions).union(*(absent.questions for absent in unknown))
-    keys = sorted({key for absent in unknown for key in absent.keys})
-    if unknown or found:
+    for part in known:
+        given.see(part)
+    loose = [given.trace(part) for part in known if given.trace(part).loose]
+    if unknown or loose:
+        questions = {q for holder in unknown for q in holder.questions}
+        questions |= {q for trace in loose for q in trace.questions}
+        keys = tuple(sorted({key for absent in unknown for key in absent.keys}))
         reason: Reason = "undeclared" if keys else "unsettled"
-        given.absent(Absent(reason, tuple(keys), tuple(sorted(found))))
+        given.absent(Absent(reason, keys, tuple(sorted(questions))))

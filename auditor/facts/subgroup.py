@@ -16,6 +16,11 @@ def declared_order(given: Given) -> int:
     return q
 
 
+@fact("subgroup.declared", "bool", "a subgroup order q is declared")
+def declared(given: Given) -> bool:
+    return given.declaration.subgroup_order is not None
+
+
 @fact("subgroup.order_length", "int", "bit length of the declared q")
 def order_length(given: Given) -> int:
     return given.see(declared_order).bit_length()

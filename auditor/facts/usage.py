@@ -36,6 +36,9 @@ def purpose(given: Given) -> str:
 
 @fact("usage.scheme", "text", "the scheme, as declared", SCHEMES)
 def scheme(given: Given) -> str:
+    if given.declaration.purpose == "key-agreement":
+        given.rest_on("purpose")
+        given.undefined()
     return str(given.word("scheme"))
 
 

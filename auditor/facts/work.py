@@ -8,6 +8,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import replace
 from math import log2
 from types import MappingProxyType
+from typing import NoReturn
 
 from auditor.declaration import EVERYBODY
 from auditor.facts import exponent, parts, provenance, usage
@@ -22,9 +23,11 @@ from auditor.routes import prime_power as prime_powers
 from auditor.routes import raw_message as raw_messages
 from auditor.routes import short_exponent as short_exponents
 from auditor.routes import smooth_part as smooth_parts
+from auditor.routes import special_number_field_sieve as special_sieves
 from auditor.routes import square_root as square_roots
 from auditor.routes.base import Attacker, Closed, Work
 from auditor.routes.factors import Factors
+from auditor.routes.partial_exponent import Splits
 from auditor.routes.sieve_models import nist_bits
 
 RoutePart = Callable[[Given], Work]
@@ -74,12 +77,26 @@ def short_exponent(given: Given) -> Work:
 
 
 def smooth_part_then_short_exponent(given: Given) -> Work:
+    """Undefined where the best division learns nothing first, or everything: that is the kangaroo
+    or Pohlig-Hellman again, which the tables cover."""
     width, order = given.see(usage.exponent_width), given.see(_generator_order)
+    split = Splits(width, order).cheapest()
+    if not (split.logarithms and split.left_bits > 0):
+        _nothing_new(given, parts.generator_order)
     return _open(given, smooth_parts.smooth_part_then_short_exponent(width, order))
 
 
+def _nothing_new(given: Given, *known: Callable[[Given], object]) -> NoReturn:
+    """Undefined, or unsettled while a factor that is not known yet could open the route."""
+    traces = [given.trace(part) for part in known]
+    if any(trace.loose for trace in traces):
+        given.unsettled(*sorted({q for trace in traces for q in trace.questions}))
+    given.undefined()
+
+
 def confinement(given: Given) -> Work:
-    """The worst party's, with its name among the details where parties differ."""
+    """The worst party's, with its name among the details where parties differ; undefined where no
+    probe makes an attack cheaper."""
     exposed = given.see(exponent.exposed_parties)
     keys = [usage.key_of(party, "exponent.bits") for party, _ in exposed]
     silent = [key for (party, _), key in zip(exposed, keys, strict=True) if not party.exponent_bits]
@@ -91,12 +108,32 @@ def confinement(given: Given) -> Work:
     for party, check in exposed:
         width = party.exponent_bits or 0
         work = _open(given, confinements.confinement(width, order, group, check, reused=True))
+        if not dict(work.details)["queries"]:
+            continue
         named = () if party.role == EVERYBODY else (("party", party.role),)
         found.append(replace(work, details=(*named, *work.details)))
     return min(found, key=lambda work: work.bits)
 
 
+def special_number_field_sieve(given: Given) -> Work:
+    """Open only where a form was found: none found says nothing about those not looked for."""
+    n = _modulus_of_nature(given, "prime")
+    form = given.claims.special_form(n)
+    if form is None:
+        given.undefined()
+    given.cite(form)
+    return special_sieves.special_number_field_sieve(
+        log2(n),
+        len(form.coefficients) - 1,
+        log2(max(map(abs, form.coefficients))),
+        log2(max(form.g0, form.g1)),
+    )
+
+
 def raw_message(given: Given) -> Work:
+    if given.declaration.purpose not in (None, "encryption"):
+        given.rest_on("purpose")
+        given.undefined()
     if given.see(usage.scheme) != "elgamal-raw":
         given.undefined()
     length = given.see(usage.message_length)
@@ -142,6 +179,7 @@ def composite_modulus_outsider(given: Given) -> Work:
 ROUTES: Mapping[str, RoutePart] = MappingProxyType(
     {
         "number_field_sieve": number_field_sieve,
+        "special_number_field_sieve": special_number_field_sieve,
         "square_root": square_root,
         "pohlig_hellman": pohlig_hellman,
         "short_exponent": short_exponent,

@@ -1,0 +1,315 @@
+"""The complete record of a review: what every document is a rendering of.
+
+A pure function of what was read, the claims, the run values and the rulebooks, in the shape that
+``report.schema.json`` describes. The verifier builds it again and compares.
+"""
+
+import hashlib
+from collections.abc import Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from auditor import __version__
+from auditor.claims.collection import Claims
+from auditor.declaration import Declaration
+from auditor.encoding import plain
+from auditor.facts import Established, establish, vocabulary
+from auditor.facts.base import Absent, Fact
+from auditor.findings import Finding, Judgement, facts_in_use, judge
+from auditor.questions import Asks, Question
+from auditor.routes.base import Work, floor_bits
+from auditor.routes.standard_tables import modulus_strength
+from auditor.rulebook_types import Criterion, Rule, Rulebook
+from auditor.run import open_questions
+from auditor.run_values import RunValues
+from auditor.search.plan import LEVELS
+
+FORMAT = 1
+TOOL = "group-parameter auditor"
+POSITIONS = ("hold", "open", "conditions", "no objection")
+
+CAUTIONS = (
+    "This is a technical review of parameters, not a certification of a system.",
+    "Published guidance, local policy and the judgement of qualified cryptographers have the last "
+    "word.",
+    "Finding nothing proves nothing: what was not examined is listed, and what was looked for in "
+    "vain may still be there.",
+    "Work factors come from published cost models and are compared as if one step of each cost the "
+    "same; they are no forecast of time or money.",
+    "Every group here falls to a large quantum computer, whatever its size.",
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """What was read and what could not be, as the record lists it."""
+
+    declarations: tuple[Declaration, ...]
+    inputs: tuple[Mapping[str, Any], ...] = ()
+    errors: tuple[Mapping[str, Any], ...] = ()
+    skipped: tuple[Mapping[str, Any], ...] = ()
+    notices: tuple[str, ...] = ()
+
+
+def build(
+    reading: Reading,
+    claims: Claims,
+    run: RunValues,
+    books: Sequence[Rulebook],
+    fail_on: str,
+) -> dict[str, Any]:
+    """The record; equal arguments, equal record."""
+    known = [establish(declaration, claims, run) for declaration in reading.declarations]
+    places = _places(reading.declarations)
+    sets = [_parameter_set(item, books, places) for item in known]
+    consulted = {claim_id for item in known for claim_id in item.consulted}
+    return {
+        "report": FORMAT,
+        "tool": {"name": TOOL, "version": __version__},
+        "run": _run(run, fail_on),
+        "inputs": [dict(item) for item in reading.inputs],
+        "rulebooks": [_rulebook(book) for book in books],
+        "complete": not reading.errors,
+        "overview": _overview(sets, reading.declarations),
+        "parameter_sets": sets,
+        "claims": {claim.id: claim.record() for claim in claims.support(sorted(consulted))},
+        "notices": list(reading.notices),
+        "skipped": [dict(item) for item in reading.skipped],
+        "errors": [dict(item) for item in reading.errors],
+        "cautions": list(CAUTIONS),
+    }
+
+
+def in_use(
+    books: Sequence[Rulebook], facts: Mapping[str, Fact], absent: Mapping[str, Absent]
+) -> list[str]:
+    """The facts whose open questions are worth search: those that an outcome waits for, and the
+    work factors, which every report shows."""
+    strengths = [name for name in (*facts, *absent) if name.startswith("strength.")]
+    return sorted({*facts_in_use(books, facts, absent, vocabulary()), *strengths})
+
+
+def _run(run: RunValues, fail_on: str) -> dict[str, Any]:
+    return {
+        "as_of": run.as_of,
+        "effort": run.effort,
+        "factor_digits": run.factor_digits,
+        "engine": run.engine,
+        "rounds": run.rounds,
+        "fail_on": fail_on,
+    }
+
+
+def _overview(sets: list[dict[str, Any]], declarations: Sequence[Declaration]) -> dict[str, Any]:
+    positions = [item["position"] for item in sets]
+    users: dict[int, list[str]] = {}
+    for declaration in declarations:
+        users.setdefault(declaration.modulus, []).append(declaration.identity)
+    return {
+        "sets": len(sets),
+        "positions": {position: positions.count(position) for position in POSITIONS},
+        "moduli": [
+            {
+                "digest": hashlib.sha256(hex(modulus).encode()).hexdigest(),
+                "length": modulus.bit_length(),
+                "sets": identities,
+            }
+            for modulus, identities in users.items()
+        ],
+    }
+
+
+def _places(declarations: Iterable[Declaration]) -> dict[str, list[dict[str, Any]]]:
+    places: dict[str, list[dict[str, Any]]] = {}
+    for declaration in declarations:
+        place = {**_place(declaration), "name": declaration.name}
+        places.setdefault(declaration.digest(), []).append(place)
+    return places
+
+
+def _place(declaration: Declaration) -> dict[str, Any]:
+    place = declaration.place
+    return {"path": place.path, "line": place.line, "column": place.column}
+
+
+def _parameter_set(
+    known: Established, books: Sequence[Rulebook], places: Mapping[str, list[dict[str, Any]]]
+) -> dict[str, Any]:
+    declaration = known.declaration
+    judgement = judge(books, known.facts, known.absent, vocabulary())
+    digest = declaration.digest()
+    return {
+        "id": declaration.identity,
+        "digest": digest,
+        "name": declaration.name,
+        "source": _place(declaration),
+        "places": places[digest],
+        "declaration": declaration.document(),
+        "facts": {name: _fact(fact) for name, fact in known.facts.items()},
+        "absent": {name: _absence(absent) for name, absent in known.absent.items()},
+        "routes": [_route(work, declaration) for work in known.routes],
+        "exposure": [],
+        "properties": [],
+        "position": judgement.position,
+        "decided_by": judgement.decided_by.rule if judgement.decided_by else None,
+        "outcomes": dict(judgement.outcomes),
+        "books_left_out": [
+            {"name": left.name, "why": left.why, "missing": sorted(left.missing)}
+            for left in judgement.books_left_out
+        ],
+        "findings": [_finding(finding) for finding in judgement.findings],
+        "questions": _questions(known, judgement, books),
+    }
+
+
+def _fact(fact: Fact) -> dict[str, Any]:
+    return {
+        "value": plain(fact.value),
+        "standing": fact.standing.value,
+        "tight": fact.tight,
+        "claims": list(fact.claims),
+        "rests_on": list(fact.rests_on),
+    }
+
+
+def _absence(absent: Absent) -> dict[str, Any]:
+    questions = sorted(question.id for question in absent.questions)
+    return {"reason": absent.reason, "keys": sorted(absent.keys), "questions": questions}
+
+
+def _route(work: Work, declaration: Declaration) -> dict[str, Any]:
+    return {
+        "name": work.route,
+        "attacker": work.attacker,
+        "bits": floor_bits(work.bits),
+        "bound": work.bound,
+        "unit": work.unit.value,
+        "model": work.model.name,
+        "nature": work.model.certainty,
+        "source": work.source,
+        "explanation": work.explanation,
+        "counted": True,
+        "table": _table(work, declaration),
+        "details": [{"label": label, "value": plain(value)} for label, value in work.details],
+    }
+
+
+TABLES = "NIST SP 800-57 Part 1 Rev. 5, Table 2; SP 800-56A Rev. 3, Appendix D"
+
+
+def _table(work: Work, declaration: Declaration) -> dict[str, Any] | None:
+    """What the published tables give for the same thing as this route."""
+    details = dict(work.details)
+    match work.route:
+        case "number_field_sieve":
+            bits = modulus_strength(declaration.modulus.bit_length())
+        case "square_root" if work.bound == "exact":
+            bits = int(details["largest prime length"]) // 2
+        case "short_exponent":
+            bits = int(details["exponent width"]) // 2
+        case _:
+            return None
+    return {"bits": bits, "source": TABLES}
+
+
+def _criterion(criterion: Criterion) -> dict[str, Any]:
+    return {
+        "document": criterion.document.key,
+        "title": criterion.document.title,
+        "clause": criterion.clause,
+        "word": criterion.word,
+        "confidence": criterion.confidence,
+    }
+
+
+def _finding(finding: Finding) -> dict[str, Any]:
+    return {
+        "rule": finding.rule,
+        "title": finding.title,
+        "defect": finding.defect,
+        "grade": finding.grade,
+        "outcome": finding.outcome,
+        "statement": finding.statement,
+        "values": {name: plain(fact.value) for name, fact in finding.values.items()},
+        "missing": sorted(finding.missing),
+        "criterion": _criterion(finding.criterion),
+        "remedy": {"text": finding.remedy, "breaks": [], "patch": None},
+        "cautions": list(finding.cautions),
+        "concession": None,
+    }
+
+
+def _rulebook(book: Rulebook) -> dict[str, Any]:
+    record: dict[str, Any] = {
+        "name": book.name,
+        "title": book.title,
+        "sha256": book.sha256,
+        "notes": list(book.notes),
+        "documents": {
+            key: {"title": document.title, "date": document.date}
+            for key, document in sorted(book.documents.items())
+        },
+        "rules": {rule.id: _rule(rule) for rule in book.rules},
+    }
+    if book.extends is not None:
+        record["extends"] = book.extends.name
+    return record
+
+
+def _rule(rule: Rule) -> dict[str, Any]:
+    return {
+        "title": rule.title,
+        "defect": rule.defect,
+        "grade": rule.grade,
+        "requires": rule.requires.source,
+        "why": rule.why,
+        "criterion": _criterion(rule.criterion),
+        "cwe": list(rule.cwe),
+        "references": list(rule.references),
+    }
+
+
+def _questions(
+    known: Established, judgement: Judgement, books: Sequence[Rulebook]
+) -> list[dict[str, Any]]:
+    names = in_use(books, known.facts, known.absent)
+    asked = open_questions(known, names)
+    waiting = {q for finding in judgement.findings for q in finding.questions}
+    records = []
+    for question in sorted({*asked, *waiting}, key=lambda item: item.id):
+        cost, unit = _cost(question)
+        moved = [name for name, fact in known.facts.items() if question in fact.questions]
+        waits = [name for name, absent in known.absent.items() if question in absent.questions]
+        records.append(
+            {
+                "id": question.id,
+                "about": question.about,
+                "settles": sorted([*moved, *waits]),
+                "cost": cost,
+                "unit": unit,
+                "effect": _effect(question, judgement),
+            }
+        )
+    return records
+
+
+def _cost(question: Question) -> tuple[float | None, str]:
+    """The expected work of the next step of search."""
+    match question.asks:
+        case Asks.FACTORIZATION | Asks.MODULUS_FACTORS:
+            level = LEVELS[2]
+            return level.curves, f"elliptic curves for factors of {level.digits} digits"
+        case Asks.SPECIAL_FORM:
+            return 1, "search for a special form"
+        case _:
+            return 1, "primality test or exponentiation"
+
+
+def _effect(question: Question, judgement: Judgement) -> str:
+    waiting = [finding for finding in judgement.findings if question in finding.questions]
+    if not waiting:
+        return "An answer could lower a work factor; no finding waits for it."
+    titles = "; ".join(dict.fromkeys(finding.title for finding in waiting))
+    decides = judgement.decided_by is not None and judgement.decided_by in waiting
+    ending = ", which decides the position" if decides else ""
+    return f"An answer could settle: {titles}{ending}."

@@ -1,0 +1,127 @@
+"""The whole way through the house, as one short function: bytes in, the record of a review out."""
+
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import dataclass, replace
+from pathlib import Path
+from types import MappingProxyType
+from typing import Any, BinaryIO
+
+from auditor.answers import ALONE, Answers, Cores
+from auditor.claims.base import Claim, Draw
+from auditor.claims.collection import Claims
+from auditor.claims.ledger import Ledger
+from auditor.declaration import Declaration
+from auditor.facts import vocabulary
+from auditor.intake.tree import InputResult, read_inputs
+from auditor.questions import Question
+from auditor.report.record import Reading, build, in_use
+from auditor.rulebook import load_all
+from auditor.rulebook_types import Rulebook
+from auditor.run import settle
+from auditor.run_values import RunValues
+
+DEFAULT_BOOKS = ("group-structure", "strength")
+
+Progress = Callable[[Question], None]
+
+
+@dataclass(frozen=True, slots=True)
+class Surroundings:
+    """What a review needs from outside and what moves no answer: unpredictable numbers, cores, the
+    store of claims, and somebody to tell of progress and trouble."""
+
+    draw: Draw
+    progress: Progress = lambda question: None
+    ledger: Path | None = None
+    cores: Cores = ALONE
+
+
+def review(
+    paths: Iterable[str],
+    run: RunValues,
+    surroundings: Surroundings,
+    *,
+    books: Sequence[str | Path] = DEFAULT_BOOKS,
+    fail_on: str = "conditions",
+    stdin: BinaryIO | None = None,
+) -> dict[str, Any]:
+    """Read what is at ``paths``, settle what is worth settling, judge it by the rulebooks.
+
+    Returns the record that every document is a rendering of. Raises RulebookError for books that
+    cannot be used; inputs that cannot be read are errors in the record.
+    """
+    rulebooks = load_all(books, vocabulary())
+    read = read_inputs(paths, stdin)
+    run = replace(run, census=census(read.declarations))
+    claims, notices = investigate(read.declarations, run, rulebooks, surroundings)
+    return build(_reading(read, notices), claims, run, rulebooks, fail_on)
+
+
+def census(declarations: Iterable[Declaration]) -> MappingProxyType[int, int]:
+    """How many of the sets have each modulus."""
+    counts: dict[int, int] = {}
+    for declaration in declarations:
+        counts[declaration.modulus] = counts.get(declaration.modulus, 0) + 1
+    return MappingProxyType(counts)
+
+
+def investigate(
+    declarations: Sequence[Declaration],
+    run: RunValues,
+    books: Sequence[Rulebook],
+    surroundings: Surroundings,
+) -> tuple[Claims, tuple[str, ...]]:
+    """The claims about these declarations, from the ledger and from search, and what to notice."""
+    notices: list[str] = []
+    ledger = _ledger(surroundings, notices)
+    claims = Claims()
+
+    def keep(made: Iterable[Claim]) -> None:
+        if ledger is not None:
+            ledger.keep(made)
+
+    def recall(question: Question) -> list[Claim]:
+        if ledger is None:
+            return []
+        return [c for n in sorted(set(question.integers)) for c in ledger.recall(n, run.rounds)]
+
+    answers = Answers(claims, run, surroundings.draw, keep, surroundings.cores)
+    try:
+        refused = settle(
+            declarations,
+            answers,
+            run,
+            lambda facts, absent: in_use(books, facts, absent),
+            surroundings.progress,
+            recall,
+        )
+    finally:
+        if ledger is not None:
+            ledger.close()
+    return claims, (*notices, *refused)
+
+
+def _ledger(surroundings: Surroundings, notices: list[str]) -> Ledger | None:
+    if surroundings.ledger is None:
+        return None
+    return Ledger(surroundings.ledger, surroundings.draw, notices.append)
+
+
+def _reading(read: InputResult, notices: tuple[str, ...]) -> Reading:
+    return Reading(
+        declarations=read.declarations,
+        inputs=tuple({"path": item.path, "sha256": item.sha256} for item in read.inputs),
+        errors=tuple(
+            {
+                "path": error.path,
+                "line": error.line,
+                "column": error.column,
+                "message": error.message,
+            }
+            for error in read.errors
+        ),
+        skipped=tuple(
+            {"path": path, "reason": "not a declaration document"} for path in read.skipped
+        ),
+        notices=notices,
+    )
