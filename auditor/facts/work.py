@@ -112,6 +112,8 @@ def confinement(given: Given) -> Work:
             continue
         named = () if party.role == EVERYBODY else (("party", party.role),)
         found.append(replace(work, details=(*named, *work.details)))
+    if not found:
+        _nothing_new(given, parts.generator_order, parts.exponent_factors)
     return min(found, key=lambda work: work.bits)
 
 

@@ -1,0 +1,246 @@
+"""The commands, their options and exit statuses; everything else is imported where it is used.
+
+Exit status: 0 nothing at or above ``--fail-on``; 1 something is; 2 an input that could not be read,
+nothing recognised, or wrong usage, which outranks 1; 3 an internal fault; 130 interrupted; 141 the
+reader of standard output went away.
+"""
+
+import os
+import sys
+from datetime import date
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from auditor import __version__
+
+if TYPE_CHECKING:
+    from auditor.run_values import Effort, RunValues
+
+FAIL_ON = ("hold", "open", "conditions", "never")
+EFFORTS = ("quick", "standard", "thorough")
+MOST_DIGITS = 20_000
+"""Decimal digits that Python may read and write: enough for integers of 65,536 bits."""
+
+
+@click.group(context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(__version__, prog_name="auditor")
+def main() -> None:
+    """Review finite-field group parameters: the group, what an attack costs, what to change.
+
+    \b
+    auditor review samples/ --html report.html
+    auditor structure 3600 --of 7
+    auditor rulebook list
+    """
+
+
+@main.command()
+@click.argument("paths", nargs=-1, required=True)
+@click.option("--html", type=click.Path(dir_okay=False), help="Write the report as HTML.")
+@click.option("--markdown", type=click.Path(dir_okay=False), help="Write it as Markdown.")
+@click.option("--json", "json_", type=click.Path(dir_okay=False), help="Write the full record.")
+@click.option("--sarif", type=click.Path(dir_okay=False), help="Write it as SARIF 2.1.0.")
+@click.option("--markdown-limit", default=32_767, show_default=True, help="Most characters.")
+@click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
+@click.option("--effort", type=click.Choice(EFFORTS), default="standard", show_default=True)
+@click.option("--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search.")
+@click.option("--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today.")
+@click.option("--fail-on", type=click.Choice(FAIL_ON), default="conditions", show_default=True)
+@click.option("--allow-empty", is_flag=True, help="Nothing recognised is no error.")
+@click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
+@click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
+@click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+def review(paths: tuple[str, ...], **options: Any) -> int:
+    """Review parameter declarations in files and directories; '-' is standard input.
+
+    \b
+    auditor review links.yaml
+    auditor review configs/ --html report.html --markdown ticket.md --fail-on hold
+    auditor review - --effort thorough --json report.json < links.yaml
+    """
+    from auditor.outputs import Outputs
+
+    outputs = Outputs(
+        html=options["html"],
+        markdown=options["markdown"],
+        json=options["json_"],
+        sarif=options["sarif"],
+        markdown_limit=options["markdown_limit"],
+    )
+    outputs.check()
+    record = _reviewed(paths, options)
+    outputs.write(record)
+    for error in record["errors"]:
+        click.echo(
+            f"{error['path']}:{error['line']}:{error['column']}: {error['message']}", err=True
+        )
+    if not record["parameter_sets"] and not record["errors"] and not options["allow_empty"]:
+        click.echo("nothing was recognised as parameters; --allow-empty accepts that", err=True)
+        return 2
+    return _status(record, options["fail_on"])
+
+
+def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]:
+    import secrets
+
+    from auditor.answers import Cores
+    from auditor.pool import LocalPool
+    from auditor.progress import Progress, is_live
+    from auditor.review import DEFAULT_BOOKS, Surroundings
+    from auditor.review import review as review_inputs
+    from auditor.rulebook_types import RulebookError
+
+    progress = Progress(sys.stderr, is_live(os.environ))
+    with LocalPool(options["jobs"]) as pool:
+        try:
+            return review_inputs(
+                paths,
+                _run_values(options),
+                Surroundings(
+                    draw=secrets.randbelow,
+                    progress=progress,
+                    ledger=_ledger_path(options),
+                    cores=Cores(pool if pool.jobs > 1 else None, pool.jobs),
+                ),
+                books=options["rulebook"] or DEFAULT_BOOKS,
+                fail_on=options["fail_on"],
+                stdin=sys.stdin.buffer,
+            )
+        except RulebookError as error:
+            raise click.ClickException(str(error)) from error
+        finally:
+            progress.done()
+
+
+def _run_values(options: dict[str, Any]) -> "RunValues":
+    from auditor.run_values import RunValues
+
+    effort: Effort = options["effort"]
+    day = options["as_of"].date() if options["as_of"] else date.today()
+    return RunValues(day.isoformat(), effort, options["factor_digits"])
+
+
+def _ledger_path(options: dict[str, Any]) -> Path | None:
+    if options["no_ledger"]:
+        return None
+    if options["ledger"]:
+        return Path(options["ledger"])
+    from platformdirs import user_cache_path
+
+    return user_cache_path("group-parameter-auditor") / "ledger.sqlite"
+
+
+def _status(record: dict[str, Any], fail_on: str) -> int:
+    if record["errors"]:
+        return 2
+    if fail_on == "never":
+        return 0
+    failing = FAIL_ON[: FAIL_ON.index(fail_on) + 1]
+    return int(any(item["position"] in failing for item in record["parameter_sets"]))
+
+
+@main.command()
+@click.argument("report", type=click.Path(dir_okay=False))
+@click.option("--against", multiple=True, help="Check the inputs at this path too.")
+@click.option("--rulebook", multiple=True, help="A book of the report that is not shipped.")
+def verify(report: str, against: tuple[str, ...], rulebook: tuple[str, ...]) -> int:
+    """Check every claim in a JSON report, and draw its conclusions again.
+
+    Exit status: 0 all holds, 1 something does not, 2 cannot tell.
+
+    \b
+    auditor verify report.json
+    auditor verify report.json --against configs/
+    """
+    import secrets
+
+    from auditor.intake.tree import read_inputs
+    from auditor.outputs import read_report
+    from auditor.verify import verify as verify_report
+
+    inputs = read_inputs(against, sys.stdin.buffer) if against else None
+    result = verify_report(read_report(report), secrets.randbelow, rulebook, inputs)
+    for line in (*result.failures, *result.unclear):
+        click.echo(line)
+    verdict = {0: "all holds", 1: "does not hold", 2: "cannot tell"}[result.status]
+    click.echo(f"{verdict}: {result.claims} claims checked")
+    return result.status
+
+
+@main.group()
+def rulebook() -> None:
+    """List, read and test the rules.
+
+    \b
+    auditor rulebook list
+    auditor rulebook show generator-trivial
+    auditor rulebook test my-rules.yaml
+    """
+
+
+@rulebook.command("list")
+def list_books() -> int:
+    """List the shipped rulebooks and their rules."""
+    from auditor.rule_pages import listing
+
+    click.echo(listing(), nl=False)
+    return 0
+
+
+@rulebook.command("show")
+@click.argument("name")
+def show_rule(name: str) -> int:
+    """Show a rule or a whole book, by its id or name.
+
+    \b
+    auditor rulebook show generator-trivial
+    auditor rulebook show strength
+    """
+    from auditor.rule_pages import NoSuchRule, page
+
+    try:
+        click.echo(page(name), nl=False)
+    except NoSuchRule as error:
+        raise click.ClickException(str(error)) from error
+    return 0
+
+
+@rulebook.command("test")
+@click.argument("books", nargs=-1)
+def test_books(books: tuple[str, ...]) -> int:
+    """Load rulebooks and run the examples of their rules; all shipped ones by default.
+
+    \b
+    auditor rulebook test
+    auditor rulebook test my-rules.yaml
+    """
+    from auditor.rule_pages import tested
+
+    failures, summary = tested(books)
+    for failure in failures:
+        click.echo(failure)
+    click.echo(summary)
+    return 1 if failures else 0
+
+
+def run() -> int:
+    """The entry point: every way to end has its exit status, and none shows a traceback."""
+    sys.set_int_max_str_digits(MOST_DIGITS)
+    try:
+        status = main(standalone_mode=False) or 0
+        sys.stdout.flush()
+    except click.ClickException as error:
+        error.show()
+        status = 2
+    except (click.Abort, KeyboardInterrupt):
+        click.echo("interrupted; what was found is kept in the ledger", err=True)
+        status = 130
+    except (BrokenPipeError, SystemExit):
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        status = 141
+    except Exception as error:
+        click.echo(f"internal fault: {type(error).__name__}: {error}", err=True)
+        status = 3
+    return int(status)

@@ -1,0 +1,111 @@
+"""Where reports go: files written whole or not at all, standard output, the terminal."""
+
+import json
+import os
+import sys
+import tempfile
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import click
+
+STANDARD_OUTPUT = "-"
+
+
+@dataclass(frozen=True, slots=True)
+class Outputs:
+    """The formats asked for, each with the path it goes to; ``-`` is standard output."""
+
+    html: str | None = None
+    markdown: str | None = None
+    json: str | None = None
+    sarif: str | None = None
+    markdown_limit: int = 32_767
+
+    def check(self) -> None:
+        """Refuse, before any work is done, what cannot be written in the end."""
+        paths = [path for path in (self.html, self.markdown, self.json, self.sarif) if path]
+        if paths.count(STANDARD_OUTPUT) > 1:
+            raise click.UsageError("only one format can go to standard output")
+        files = [os.path.realpath(path) for path in paths if path != STANDARD_OUTPUT]
+        if len(set(files)) < len(files):
+            raise click.UsageError("two formats cannot go to one file")
+        for path in files:
+            if not os.access(os.path.dirname(path), os.W_OK):
+                raise click.UsageError(f"{path}: the directory cannot be written")
+
+    def write(self, record: Mapping[str, Any]) -> None:
+        """Write each format; a summary to standard output where no format goes there."""
+        from auditor.report import html, json_report, markdown, sarif
+
+        renderers: list[tuple[str | None, Callable[[], str]]] = [
+            (self.html, lambda: html.render(record)),
+            (self.markdown, lambda: markdown.render(record, limit=self.markdown_limit)),
+            (self.json, lambda: json_report.dumps(record)),
+            (self.sarif, lambda: sarif.render(record)),
+        ]
+        for path, render in renderers:
+            if path:
+                write_text(path, render())
+        if STANDARD_OUTPUT not in (self.html, self.markdown, self.json, self.sarif):
+            _summary(record)
+
+
+def _summary(record: Mapping[str, Any]) -> None:
+    from auditor.report import terminal
+
+    live = sys.stdout.isatty()
+    size = os.get_terminal_size() if live else os.terminal_size((80, 24))
+    colour = live and not os.environ.get("NO_COLOR") and os.environ.get("TERM") != "dumb"
+    width, height = max(60, size.columns), max(20, size.lines)
+    click.echo(terminal.render(record, width=width, height=height, colour=colour), nl=False)
+
+
+def write_text(path: str, text: str) -> None:
+    """Write a file whole: beside it first, then in its place. OSError becomes a usage error."""
+    if path == STANDARD_OUTPUT:
+        click.echo(text, nl=False)
+        return
+    target = Path(path)
+    try:
+        with tempfile.NamedTemporaryFile(
+            "w", encoding="utf-8", newline="\n", dir=target.parent, prefix=".", delete=False
+        ) as file:
+            file.write(text)
+        os.chmod(file.name, 0o666 & ~_umask())
+        os.replace(file.name, target)
+    except OSError as error:
+        raise click.FileError(path, error.strerror or str(error)) from error
+
+
+def _umask() -> int:
+    mask = os.umask(0)
+    os.umask(mask)
+    return mask
+
+
+def read_report(path: str) -> dict[str, Any]:
+    """A JSON report; a usage error for anything that is not one JSON object with unique keys."""
+    try:
+        data = Path(path).read_bytes() if path != STANDARD_OUTPUT else sys.stdin.buffer.read()
+        report = json.loads(data, object_pairs_hook=_unique, parse_constant=_no_constant)
+    except OSError as error:
+        raise click.FileError(path, error.strerror or str(error)) from error
+    except (ValueError, RecursionError) as error:
+        raise click.ClickException(f"{path}: not a JSON report: {error}") from error
+    if not isinstance(report, dict):
+        raise click.ClickException(f"{path}: not a JSON report: expected an object")
+    return report
+
+
+def _unique(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    record = dict(pairs)
+    if len(record) < len(pairs):
+        raise ValueError("a key stands twice in one object")
+    return record
+
+
+def _no_constant(name: str) -> float:
+    raise ValueError(f"{name} is no number")

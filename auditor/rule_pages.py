@@ -1,0 +1,107 @@
+"""Rulebooks for a person: a listing, the page of a rule or a book, and the result of its tests."""
+
+import textwrap
+from collections.abc import Iterable, Iterator, Sequence
+from difflib import get_close_matches
+
+from auditor.facts import vocabulary
+from auditor.rule_examples import failures
+from auditor.rulebook import available, load
+from auditor.rulebook_types import Criterion, Rule, Rulebook, RulebookError
+
+WIDTH = 88
+
+
+class NoSuchRule(LookupError):
+    """No shipped rule or book has that name."""
+
+
+def listing() -> str:
+    """Every shipped book with its rules, a line each."""
+    lines: list[str] = []
+    for name in available():
+        book = load(name, vocabulary())
+        lines += [f"{book.name}: {book.title}"]
+        lines += [f"  {rule.id:<40} {rule.grade:<12} {rule.title}" for rule in book.rules]
+    return "\n".join(lines) + "\n"
+
+
+def page(name: str) -> str:
+    """The page of the shipped rule or book of that name; raises :class:`NoSuchRule`."""
+    books = [load(book, vocabulary()) for book in available()]
+    for book in books:
+        if book.name == name:
+            return "\n".join(_book(book)) + "\n"
+    rules = {rule.id: (book, rule) for book in books for rule in book.rules}
+    if name not in rules:
+        close = get_close_matches(name, [*rules, *available()], 3)
+        hint = f"; did you mean {' or '.join(close)}?" if close else ""
+        raise NoSuchRule(f"no rule or book is called {name}{hint}")
+    return "\n".join(_rule(*rules[name])) + "\n"
+
+
+def tested(names: Sequence[str]) -> tuple[list[str], str]:
+    """The failures of these books, all shipped ones for none, and a line that sums up."""
+    found: list[str] = []
+    rules = examples = 0
+    for name in names or available():
+        try:
+            book = load(name, vocabulary())
+        except RulebookError as error:
+            found += [str(problem) for problem in error.problems]
+            continue
+        found += [str(problem) for problem in failures(book, vocabulary())]
+        rules += len(book.rules)
+        examples += sum(len(rule.examples) for rule in book.rules)
+    count = len(names or available())
+    return found, f"{count} books, {rules} rules, {examples} examples, {len(found)} failures"
+
+
+def _book(book: Rulebook) -> Iterator[str]:
+    yield f"{book.name}: {book.title}"
+    yield ""
+    for note in book.notes:
+        yield from _paragraph(note)
+    yield from (f"  {key}: {doc.title}, {doc.date}" for key, doc in sorted(book.documents.items()))
+    yield ""
+    yield from (f"  {rule.id:<40} {rule.grade:<12} {rule.title}" for rule in book.rules)
+
+
+def _rule(book: Rulebook, rule: Rule) -> Iterator[str]:
+    yield f"{rule.id} ({book.name}, {rule.grade})"
+    yield ""
+    yield from _paragraph(f"{rule.title}. {rule.why}")
+    yield ""
+    if rule.applies is not None:
+        yield from _entry("applies", rule.applies.source)
+    yield from _entry("requires", rule.requires.source)
+    yield from _entry("criterion", _criterion(rule.criterion))
+    yield from _entry("statement", rule.statement)
+    yield from _entry("remedy", rule.remedy)
+    yield from _entries("caution", rule.cautions)
+    yield from _entries("CWE", [str(number) for number in rule.cwe])
+    yield from _entries("reference", rule.references)
+
+
+def _criterion(criterion: Criterion) -> str:
+    known = {
+        "confirmed": "read in the document",
+        "secondary": "clause to be confirmed: read in a text that restates it",
+        "memory": "clause to be confirmed: from memory",
+    }[criterion.confidence]
+    return f"{criterion.document.title}, {criterion.clause} ({criterion.word}; {known})"
+
+
+def _entries(label: str, texts: Iterable[str]) -> Iterator[str]:
+    for text in texts:
+        yield from _entry(label, text)
+
+
+def _entry(label: str, text: str) -> Iterator[str]:
+    lines = textwrap.wrap(" ".join(text.split()), WIDTH - 12) or [""]
+    yield f"{label + ':':<12}{lines[0]}"
+    yield from (" " * 12 + line for line in lines[1:])
+
+
+def _paragraph(text: str) -> Iterator[str]:
+    yield from textwrap.wrap(" ".join(text.split()), WIDTH)

@@ -1,0 +1,182 @@
+"""Is a report what it says? Its claims checked one by one, its conclusions drawn again.
+
+Nothing is searched for and nothing in the report is believed but the owner's words and the record
+of search effort, which nobody can check. The verifier draws its own bases.
+"""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from types import MappingProxyType
+from typing import Any
+
+from auditor import __version__
+from auditor.claims.base import Draw
+from auditor.claims.collection import Claims, check_all, read_claim
+from auditor.declaration import Declaration, Place
+from auditor.encoding import shorten
+from auditor.facts import vocabulary
+from auditor.intake.record import declaration_from
+from auditor.intake.tree import InputResult
+from auditor.report.json_report import problems
+from auditor.report.record import FORMAT, Reading, build
+from auditor.review import census
+from auditor.rulebook import load_all
+from auditor.rulebook_types import RulebookError
+from auditor.run_values import RunValues
+
+
+@dataclass(frozen=True, slots=True)
+class Verification:
+    """``failures`` do not hold; ``unclear`` is what kept a part from being checked at all."""
+
+    failures: tuple[str, ...]
+    unclear: tuple[str, ...] = ()
+    claims: int = 0
+
+    @property
+    def status(self) -> int:
+        """Exit status: 1 something does not hold, 2 cannot tell, 0 all holds."""
+        return 1 if self.failures else 2 if self.unclear else 0
+
+
+def verify(
+    report: Mapping[str, Any],
+    draw: Draw,
+    books: Iterable[str] = (),
+    against: InputResult | None = None,
+) -> Verification:
+    """Check a report that was read from JSON.
+
+    ``books`` are files of rulebooks that are not shipped; ``against`` is what is in the inputs now.
+    """
+    if report.get("report") != FORMAT:
+        return Verification((), (f"the report has format {shorten(report.get('report'))}",))
+    if malformed := problems(report):
+        return Verification(tuple(malformed))
+    claims, failures = _claims(report)
+    failed = check_all(claims, draw)
+    failures += [f"claims.{claim_id}: {reason}" for claim_id, reason in failed.items()]
+    if against is not None:
+        failures += _differences_of_inputs(report, against)
+    if failures:
+        return Verification(tuple(failures), claims=len(claims))
+    if report["tool"]["version"] != __version__:
+        version = report["tool"]["version"]
+        return Verification(
+            (), (f"written by version {version}, this is {__version__}",), len(claims)
+        )
+    try:
+        again = _again(report, claims, books)
+    except RulebookError as error:
+        return Verification((), (f"the rulebooks cannot be loaded: {error}",), len(claims))
+    except (ValueError, KeyError) as error:
+        return Verification((f"the report cannot be drawn again: {error}",), claims=len(claims))
+    if other := _other_books(report, again):
+        return Verification((), tuple(other), len(claims))
+    return Verification(tuple(differences(again, report)), claims=len(claims))
+
+
+def _claims(report: Mapping[str, Any]) -> tuple[Claims, list[str]]:
+    claims, failures = Claims(), []
+    for claim_id, record in report["claims"].items():
+        try:
+            claim = read_claim(record)
+        except ValueError as error:
+            failures.append(f"claims.{claim_id}: {error}")
+            continue
+        if claim.id != claim_id:
+            failures.append(f"claims.{claim_id}: its id is not that of its content")
+        claims.add([claim])
+    return claims, failures
+
+
+def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> dict[str, Any]:
+    """The record that the declarations and claims in the report lead to."""
+    declarations = tuple(_declaration(item) for item in report["parameter_sets"])
+    run = report["run"]
+    values = RunValues(
+        as_of=run["as_of"],
+        effort=run["effort"],
+        factor_digits=run["factor_digits"],
+        engine=run["engine"],
+        census=MappingProxyType(dict(census(declarations))),
+    )
+    rulebooks = load_all([*(book["name"] for book in report["rulebooks"]), *books], vocabulary())
+    reading = Reading(
+        declarations,
+        tuple(report["inputs"]),
+        tuple(report["errors"]),
+        tuple(report["skipped"]),
+        tuple(report["notices"]),
+    )
+    return build(reading, claims, values, rulebooks, run["fail_on"])
+
+
+def _declaration(record: Mapping[str, Any]) -> Declaration:
+    source = record["source"]
+    place = Place(source["path"], source["line"], source.get("column", 1))
+    return declaration_from(record["declaration"], place)
+
+
+def _other_books(report: Mapping[str, Any], again: Mapping[str, Any]) -> list[str]:
+    now = {book["name"]: book["sha256"] for book in again["rulebooks"]}
+    return [
+        f"the rulebook {book['name']} is another one than the report was made with"
+        for book in report["rulebooks"]
+        if now.get(book["name"]) != book["sha256"]
+    ]
+
+
+def _differences_of_inputs(report: Mapping[str, Any], against: InputResult) -> list[str]:
+    then = {item["path"]: item["sha256"] for item in report["inputs"]}
+    now = {item.path: item.sha256 for item in against.inputs}
+    failures = [
+        f"inputs: {path} is another file now" if path in now else f"inputs: {path} is not there"
+        for path in sorted(then)
+        if now.get(path) != then[path]
+    ]
+    failures += [f"inputs: {path} was not reviewed" for path in sorted(now.keys() - then.keys())]
+    declared = {
+        declaration.identity: declaration.document() for declaration in against.declarations
+    }
+    reviewed = {item["id"]: item["declaration"] for item in report["parameter_sets"]}
+    failures += [
+        f"parameter_sets: {identity} is not what the inputs declare"
+        for identity in sorted(declared.keys() | reviewed.keys())
+        if declared.get(identity) != reviewed.get(identity)
+    ]
+    return failures
+
+
+def differences(expected: Any, found: Any, path: str = "") -> list[str]:
+    """Where ``found`` departs from ``expected``, a line each, deepest place first named."""
+    if type(expected) is not type(found) and not _both_numbers(expected, found):
+        return [f"{path or 'report'}: is {_shown(found)}, follows as {_shown(expected)}"]
+    if isinstance(expected, dict):
+        lines = []
+        for key in sorted(expected.keys() | found.keys()):
+            if key not in found:
+                lines.append(f"{path}.{key}".strip(".") + ": is missing")
+            elif key not in expected:
+                lines.append(f"{path}.{key}".strip(".") + ": does not follow from anything")
+            else:
+                lines += differences(expected[key], found[key], f"{path}.{key}".strip("."))
+        return lines
+    if isinstance(expected, list):
+        if len(expected) != len(found):
+            return [f"{path}: has {len(found)} entries, {len(expected)} follow"]
+        pairs = zip(expected, found, strict=True)
+        return [
+            line for i, (a, b) in enumerate(pairs) for line in differences(a, b, f"{path}[{i}]")
+        ]
+    if expected != found:
+        return [f"{path}: is {_shown(found)}, follows as {_shown(expected)}"]
+    return []
+
+
+def _both_numbers(*values: Any) -> bool:
+    return all(isinstance(value, int | float) and not isinstance(value, bool) for value in values)
+
+
+def _shown(value: Any) -> str:
+    return shorten(value) if isinstance(value, str | int) else shorten(repr(value))
