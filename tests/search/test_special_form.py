@@ -198,6 +198,30 @@ def test_reducible_form_is_reduced_to_the_factor_with_the_root() -> None:
     assert other is None
 
 
+@pytest.mark.parametrize("pair", sorted(relatives(((-1, -1, 0, 0, 1), 10**30 + 57, 10**30))))
+def test_forms_are_normal(pair: Pair) -> None:
+    """Whatever signs a pair comes with, root and cofactor come out positive and the value exact."""
+    p = abs(homogeneous_value(*pair))
+
+    form = special_form(p, 3, RawPair(*pair))
+
+    assert form is not None
+    assert form.g0 > 0
+    assert form.g1 > 0
+    assert form.cofactor == 1
+    assert homogeneous_value(form.coefficients, form.g1, form.g0) == p
+
+
+def test_leading_digits_do_not_count() -> None:
+    """They are small for every modulus; the others decide."""
+    m = 10**9
+    digits = (1, -3, 2, 700, 24)
+    value = homogeneous_value(digits, 1, m)
+
+    assert any_root._small_expansion(value, m, 4, limit=2) == digits
+    assert any_root._small_expansion(value, m, 4, limit=1) is None
+
+
 def test_tiers_commute() -> None:
     """The order in which tiers are asked for changes nothing; equal moduli give equal forms."""
     p = 2**448 - 2**224 - 1
@@ -267,7 +291,7 @@ def test_shortest_quotient_is_shortest(p: int, data: st.DataObject) -> None:
 
     u, v = hidden._shortest_quotient(root, p)
 
-    reduced = fmpz_mat([[p, 0], [root, 1]]).lll(delta=0.999).table()
+    reduced = fmpz_mat([[p, 0], [root, 1]]).lll().table()
     assert (u - root * v) % p == 0
     assert 0 < u * u + v * v <= min(int(x) ** 2 + int(y) ** 2 for x, y in reduced)
 
