@@ -88,7 +88,7 @@ class Answers:
     def settle_primality(self, n: int) -> Prime | Composite:
         """The claim that ``n`` > 1 is prime, or that it is composite; made if not yet there."""
         known = self.claims.prime(n)
-        if known is not None:
+        if known is not None and (self.claims.perfect_power(n) or not gmpy2.is_power(n)):
             return known
         candidate = primality.candidate(n)
         if not candidate.prime:

@@ -76,7 +76,7 @@ def smallest_factor_length(given: Given) -> int:
 )
 def special_form_seen(given: Given) -> bool:
     n = given.declaration.modulus
-    if given.see(parts.nature) != "prime":
+    if given.see(parts.nature) != "prime" or n == 2:
         given.undefined()
     form = given.claims.special_form(n)
     if form is not None:

@@ -7,6 +7,8 @@ Number Theory", 1993, section 1.4 (from memory).
 from dataclasses import dataclass
 from math import gcd, lcm
 
+import gmpy2
+
 from auditor.claims.base import Factors, product
 from auditor.facts.given import Given
 from auditor.questions import Asks, Question
@@ -21,11 +23,13 @@ def nature(given: Given) -> str:
         return "power of two"
     if given.is_prime(n):
         return "prime"
+    if not gmpy2.is_power(n):
+        return "composite"
     power = given.claims.perfect_power(n)
-    if power is not None and given.is_prime(power.base):
-        given.cite(power)
-        return "prime power"
-    return "composite"
+    if power is None:
+        given.unsettled(Question(Asks.PRIMALITY, (n,)))
+    given.cite(power)
+    return "prime power" if given.is_prime(power.base) else "composite"
 
 
 def modulus_factors(given: Given) -> Factors:

@@ -65,14 +65,20 @@ def standard_bits(given: Given) -> int:
 def _least(given: Given, attacker: Attacker) -> Work:
     """The least work known; loose while a route may be open whose work is not known."""
     found: list[Work] = []
+    unknown: list[Absent] = []
     for part in work.routes_for(attacker):
         outcome = given.peek(part)
         if not isinstance(outcome, Absent):
             found.append(given.see(part))
         elif outcome.reason != "undefined":
-            given.loosen(*outcome.questions)
+            unknown.append(outcome)
+    questions = {question for absent in unknown for question in absent.questions}
+    if not found and questions:
+        given.unsettled(*sorted(questions))
     if not found:
         given.undefined()
+    if unknown:
+        given.loosen(*questions)
     return min(found, key=lambda route: (route.bits, route.route, route.attacker))
 
 
@@ -147,12 +153,11 @@ BESIDE_TABLES = (
 
 
 def _all_reach(given: Given) -> bool:
-    """True, or absent with everything that is still open."""
-    for component in TABLE:
-        outcome = given.peek(component)
-        if isinstance(outcome, Absent) and outcome.reason == "undefined":
-            given.undefined()
+    """True; undefined, where a component is (a generator that is no unit, a modulus that is no
+    prime) and nothing unknown could still be too low; or absent with everything that is open."""
     _require_final(given, (*TABLE, *work.routes_for("peer")))
+    for component in TABLE:
+        given.see(component)
     return True
 
 

@@ -1,0 +1,124 @@
+"""More claims only add and tighten: facts, bounds, outcomes; stricter usage is never weaker."""
+
+import random
+from functools import cache
+
+import pytest
+import sympy
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from auditor.declaration import Declaration
+from auditor.facts import Established, vocabulary
+from auditor.findings import judge
+from auditor.rulebook import load_all
+from auditor.rulebook_types import Rulebook
+from tests.facts.knowledge import declare, known, partial_claims, reviewed, settled, some
+
+PRIMES = tuple(sympy.prevprime(1 << bits) for bits in range(8, 44, 3)) + (
+    1000003,
+    10007,
+    2**31 - 1,
+    495275018295207151,
+)
+LARGER_PRIMES = tuple(sympy.nextprime(1 << bits) for bits in (70, 90, 110, 130, 150))
+COMPOSITES = (15, 91, 561, 1001, 7**4, 101**2, 2**10, 2 * 7**2, 2 * 10007, 1, 2, 3, 4)
+
+
+@cache
+def books() -> tuple[Rulebook, ...]:
+    """The two books that speak about every set."""
+    return load_all(["group-structure", "strength"], vocabulary())
+
+
+def outcomes(facts: Established) -> dict[str, str]:
+    """Of every rule of the books."""
+    return dict(judge(books(), facts.facts, facts.absent, vocabulary()).outcomes)
+
+
+CHECKS = (None, (), ("range",), ("membership",), ("range", "membership"), ("cofactor",))
+
+
+@st.composite
+def declarations(draw: st.DrawFn, moduli: tuple[int, ...] = PRIMES + COMPOSITES) -> Declaration:
+    """Small sets, most of them over primes, of any usage."""
+    n = draw(st.sampled_from(moduli))
+    divisors = sympy.divisors(n - 1)[:200] if n > 1 else [1]
+    values: dict[str, object] = {
+        "subgroup_order": draw(st.none() | st.sampled_from(divisors) | st.integers(1, n + 1)),
+        "purpose": draw(st.sampled_from((None, "key-agreement", "encryption", "signature"))),
+        "required_strength": draw(st.integers(1, 24)),
+        "bits": draw(st.none() | st.integers(1, 70)),
+        "use": draw(st.sampled_from((None, "single", "reused", "static"))),
+        "checks": draw(st.sampled_from(CHECKS)),
+        "public_values": tuple(draw(st.lists(st.integers(0, n), max_size=2))),
+    }
+    return declare(n, draw(st.integers(0, 2 * n)), **values)
+
+
+@settings(max_examples=150)
+@given(declarations(), st.integers(0, 2**32))
+def test_more_claims_only_add_and_tighten(declaration: Declaration, seed: int) -> None:
+    """An exact fact, once there, stays as it is; a bound moves its own way; outcomes stand."""
+    rng = random.Random(seed)
+    everything = settled(declaration)
+    if declaration.modulus > 4 and sympy.isprime(declaration.modulus):
+        everything.add(partial_claims(declaration.modulus, declaration.generator, rng))
+    more = some(everything, rng)
+    fewer = some(more, rng)
+    before, after = known(declaration, fewer), known(declaration, more)
+
+    for name, fact in before.facts.items():
+        assert name in after.facts, name
+        now, word = after.facts[name], vocabulary()[name]
+        if word.bound is None or fact.tight:
+            assert now.value == fact.value, name
+        elif word.bound == "at_most":
+            assert now.value <= fact.value, name
+        elif word.bound == "at_least":
+            assert now.value >= fact.value, name
+        assert now.tight or not fact.tight, name
+    for name, absent in before.absent.items():
+        if absent.reason != "unsettled" and not absent.questions:
+            assert name in after.absent, name
+            assert after.absent[name].reason == absent.reason, name
+    late = outcomes(after)
+    for rule, outcome in outcomes(before).items():
+        assert outcome == "undetermined" or late[rule] == outcome, rule
+
+
+@settings(max_examples=40)
+@given(declarations())
+def test_a_settled_set_leaves_nothing_unsettled(declaration: Declaration) -> None:
+    """Numbers this small are settled completely: every absence has another reason.
+
+    Replay of seeds and the search for special forms have nothing to say here.
+    """
+    facts = reviewed(declaration)
+    unsettled = {name for name, absent in facts.absent.items() if absent.reason == "unsettled"}
+
+    assert not unsettled
+
+
+STRICTER = [((), ("range",)), (("range",), ("range", "membership")), ((), ("cofactor",))]
+
+
+@pytest.mark.parametrize(("loose", "strict"), STRICTER)
+@given(data=st.data())
+@settings(max_examples=25)
+def test_a_stricter_check_never_lowers_the_strength(
+    data: st.DataObject, loose: tuple[str, ...], strict: tuple[str, ...]
+) -> None:
+    """Nor does a wider exponent, from the width on at which half a step is below the rounding."""
+    n = data.draw(st.sampled_from(LARGER_PRIMES))
+    g, bits = data.draw(st.integers(2, n - 2)), data.draw(st.integers(40, 160))
+    wider = bits + data.draw(st.integers(0, 20))
+
+    def work(width: int, checks: tuple[str, ...]) -> float:
+        declaration = declare(
+            n, g, purpose="key-agreement", bits=width, use="static", checks=checks
+        )
+        return float(reviewed(declaration).facts["strength.work_bits_at_most"].value)
+
+    assert work(bits, loose) <= work(bits, strict)
+    assert work(bits, loose) <= work(wider, loose)
