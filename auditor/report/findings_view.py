@@ -10,18 +10,13 @@ Record = Mapping[str, Any]
 
 
 @dataclass(frozen=True, slots=True)
-class Requirement:
+class Criterion:
     """One rule that a merged finding stands for, and where its requirement comes from."""
 
     rule: str
     title: str
     source: str
     why: str
-
-    @property
-    def text(self) -> str:
-        """Rule, document and clause in one line."""
-        return f"{self.title} ({self.source})"
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,7 +45,7 @@ class MergedFinding:
     grade: str
     title: str
     statements: tuple[str, ...]
-    requirements: tuple[Requirement, ...]
+    criteria: tuple[Criterion, ...]
     values: tuple[tuple[str, str], ...]
     missing: tuple[tuple[str, str], ...]
     remedies: tuple[Remedy, ...]
@@ -58,6 +53,13 @@ class MergedFinding:
     concessions: tuple[Concession, ...]
     waits_for: tuple[str, ...]
     """Ids of open questions, and declared keys as ``key:NAME``."""
+
+    @property
+    def heading(self) -> str:
+        """The title as a sentence; empty where it is open, since that would assert it."""
+        if self.outcome == "undetermined":
+            return ""
+        return self.title if self.title.endswith((".", "?", "!")) else f"{self.title}."
 
     @property
     def words(self) -> str:
@@ -98,7 +100,7 @@ def _merged(
         grade=first["grade"],
         title=first["title"],
         statements=_once(finding["statement"] for finding in group),
-        requirements=_once(_requirement(finding, rules) for finding in group),
+        criteria=_once(_criterion(finding, rules) for finding in group),
         values=tuple((name, plain_value(value)) for name, value in values.items()),
         missing=tuple((name, _why_missing(name, parameter_set)) for name in missing),
         remedies=_once(remedy(f["remedy"]) for f in group if f["remedy"]),
@@ -113,13 +115,13 @@ def _once(items: Iterable[Any]) -> tuple[Any, ...]:
     return tuple(dict.fromkeys(items))
 
 
-def _requirement(finding: Record, rules: Mapping[str, Record]) -> Requirement:
+def _criterion(finding: Record, rules: Mapping[str, Record]) -> Criterion:
     criterion = finding["criterion"]
     doubt = CONFIDENCE_MEANING[criterion["confidence"]]
     parts = [criterion["title"], criterion["clause"], f"“{criterion['word']}”", doubt]
     why = rules[finding["rule"]]["why"] if finding["rule"] in rules else ""
     source = ", ".join(part for part in parts if part)
-    return Requirement(finding["rule"], finding["title"], source, why)
+    return Criterion(finding["rule"], finding["title"], source, why)
 
 
 def remedy(record: Record) -> Remedy:

@@ -202,9 +202,12 @@ def _number(number: Number) -> str:
 
 def _finding(sheet: Sheet, number: int) -> str:
     finding = sheet.findings[number - 1]
-    lines = [f"\n{number}. **{finding.words}**: {prose(finding.statements[0])}", ""]
+    heading = f"**{finding.words}:** {prose(finding.heading)} {prose(finding.statements[0])}"
+    lines = [f"\n{number}. {re.sub(' +', ' ', heading)}", ""]
     lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
-    lines += [f"   - Requirement: {prose(item.text)}" for item in finding.requirements]
+    lines += [
+        f"   - Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria
+    ]
     for name, why in finding.missing if finding.outcome == "undetermined" else ():
         lines.append(f"   - Missing: {code(name)}, {prose(why)}")
     for remedy, first in sheet.remedies(number):

@@ -134,8 +134,8 @@ class View:
     @property
     def notices(self) -> tuple[str, ...]:
         """What the reader of the whole run must know."""
-        interrupted = "This review was interrupted: sets or answers are missing."
-        return (() if self.record["complete"] else (interrupted,)) + tuple(self.record["notices"])
+        missing = "This report is incomplete: inputs, sets or answers are missing."
+        return (() if self.record["complete"] else (missing,)) + tuple(self.record["notices"])
 
     @property
     def cautions(self) -> tuple[str, ...]:

@@ -81,7 +81,7 @@ def test_the_limit_holds_and_what_is_left_out_is_counted(limit: int, sets: int) 
     """In UTF-16 units; every finding is either in the text or in the count."""
     record = bulky(sets)
     text = render(record, limit=limit)
-    found = len(re.findall(r"^\d+\. \*\*major nonconformity\*\*", text, re.MULTILINE))
+    found = len(re.findall(r"^\d+\. \*\*major nonconformity:", text, re.MULTILINE))
     left = re.search(r"Left out for length: ([\d,]+) findings?", text)
     missing = int(left[1].replace(",", "")) if left else 0
 

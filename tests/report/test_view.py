@@ -40,10 +40,10 @@ def test_the_worst_sheet_comes_first() -> None:
 
 
 def test_equal_findings_are_merged_with_all_criteria() -> None:
-    """Two rules of one defect, outcome and grade become one finding with two requirements."""
+    """Two rules of one defect, outcome and grade become one finding with two criteria."""
     first, second = sheet_named("crane telemetry").findings
 
-    assert [item.rule for item in first.requirements] == [
+    assert [item.rule for item in first.criteria] == [
         "received-values-confined",
         "received-values-checked",
     ]
@@ -72,8 +72,9 @@ def test_the_deciding_finding_is_the_reason() -> None:
 
     assert sheet.record["decided_by"] == "strength-sufficient"
     assert sheet.record["findings"][0]["rule"] != "strength-sufficient"
-    assert sheet.findings[0].requirements[0].rule == "strength-sufficient"
-    assert sheet.reason == "Whether the parameters reach the required 112 bits is not established."
+    assert sheet.findings[0].criteria[0].rule == "strength-sufficient"
+    assert sheet.reason == sheet.findings[0].statements[0]
+    assert sheet.reason.startswith("It is open whether this holds: “The parameters do not reach")
     assert sheet.remedy == sheet.findings[0].remedies[0]
     assert [finding.grade for finding in sheet.findings] == ["major"] * 3 + ["minor", "observation"]
 
@@ -188,4 +189,4 @@ def test_usage_tells_silence_from_nothing() -> None:
 
 def test_a_set_that_was_interrupted_is_announced() -> None:
     """An incomplete review says so first."""
-    assert view(fixture("nothing-read")).notices[0].startswith("This review was interrupted")
+    assert view(fixture("nothing-read")).notices[0].startswith("This report is incomplete")
