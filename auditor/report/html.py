@@ -5,34 +5,63 @@ templates' escaping, which is always on; a name that a template asks for and doe
 error and never an empty place.
 """
 
-from collections.abc import Mapping
 from functools import cache
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from auditor.data_files import data
 from auditor.report import words
+from auditor.report.claim_words import is_small_prime, sentence
 from auditor.report.order_view import GroupOrders
 from auditor.report.pictures import PART_MEANING, routes_picture
-from auditor.report.view import view
+from auditor.report.text import read_integer
+from auditor.report.view import Record, View, view
 
 if TYPE_CHECKING:
     from jinja2 import Environment
 
+MOST_SHEETS = 250
+"""Sheets written out, the worst first; the decision sheet has all sets, the JSON report all."""
 
-def render(record: Mapping[str, Any]) -> str:
+MOST_ROWS = 1_000
+"""Rows of the decision sheet with all their reasons, and entries of any other list."""
+
+
+def render(record: Record | View) -> str:
     """The whole report as an HTML document."""
     report = view(record)
-    orders = GroupOrders.read(report.record["claims"])
-    template = _environment().get_template("report.html.j2")
-    return template.render(
-        report=report,
-        words=words,
-        part_meaning=PART_MEANING,
-        strip=lambda sheet: orders.strip(sheet.record["declaration"]),
-        routes_picture=lambda sheet: routes_picture(
-            sheet.record["routes"], sheet.strength.required
-        ),
+    claims = report.record["claims"]
+    orders = GroupOrders.read(claims)
+    shown = report.sheets[:MOST_SHEETS]
+    keys = sorted(claims) if len(claims) <= MOST_ROWS else report.claims_behind(shown)
+    return (
+        _environment()
+        .get_template("report.html.j2")
+        .render(
+            report=report,
+            words=words,
+            most_rows=MOST_ROWS,
+            shown=shown,
+            claims=[(key, claims[key]) for key in keys if not is_small_prime(claims[key])],
+            small_primes=_small_primes({key: claims[key] for key in keys}),
+            claims_left_out=len(claims) - len(keys),
+            sentence=sentence,
+            part_meaning=PART_MEANING,
+            strip=lambda sheet: orders.strip(sheet.record["declaration"]),
+            routes_picture=lambda sheet: routes_picture(
+                sheet.record["routes"], sheet.strength.required
+            ),
+        )
     )
+
+
+def _small_primes(claims: Record) -> list[tuple[str, int]]:
+    """Id and number of every claim that a number below 2^64 is prime, by number."""
+    found = [
+        (key, read_integer(claim["statement"]["n"]))
+        for key, claim in claims.items()
+        if is_small_prime(claim)
+    ]
+    return sorted(found, key=lambda item: item[1])
 
 
 @cache

@@ -17,6 +17,7 @@ BY_LINE = ("parameter_sets", "claims")
 compared line by line."""
 
 _HIDDEN = re.compile(HIDDEN)
+_ESCAPE = re.compile(r'\\[^"\\]')
 
 
 def dumps(record: Mapping[str, Any]) -> str:
@@ -27,6 +28,11 @@ def dumps(record: Mapping[str, Any]) -> str:
     """
     members = (f"{_compact(key)}: {_member(key, value)}" for key, value in record.items())
     return "{" + ",\n".join(members) + "}\n"
+
+
+def may_hide(text: str) -> bool:
+    """Whether JSON text of :func:`dumps` holds an escape of a character that does not show."""
+    return _ESCAPE.search(text) is not None
 
 
 def problems(record: Mapping[str, Any]) -> list[str]:

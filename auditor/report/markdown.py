@@ -6,14 +6,13 @@ active characters defused.
 """
 
 import re
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
-from typing import Any
 
 from auditor.report.questions_view import Question
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import Number, clipped
-from auditor.report.view import View, view
+from auditor.report.view import Record, View, view
 from auditor.report.words import plural
 
 LIMIT = 32_767
@@ -28,7 +27,7 @@ _ACTIVE = re.compile(r"([\\`*\[\]|~]|<(?=[A-Za-z/!?])|(?<![0-9A-Za-z])_|_(?![0-9
 _CALLING = re.compile(r"(@|://|\b(?i:www)\.|#(?=\d)|\b(?i:GH)-(?=\d))")
 
 
-def render(record: Mapping[str, Any], *, limit: int = LIMIT) -> str:
+def render(record: Record | View, *, limit: int = LIMIT) -> str:
     """The report in at most ``limit`` UTF-16 units. ValueError for a limit below :data:`LEAST`."""
     if limit < LEAST:
         raise ValueError(f"a limit of at least {LEAST:,} characters is needed, not {limit:,}")

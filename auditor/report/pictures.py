@@ -10,6 +10,7 @@ from typing import Any, Literal
 
 from auditor.report.strength_view import judged
 from auditor.report.words import plain_value, plural
+from auditor.report.words import route as route_name
 
 Record = Mapping[str, Any]
 
@@ -88,7 +89,7 @@ def _route_mark(route: Record, required: int, x: Any, end: int, y: float) -> Rou
     if not route["counted"]:
         figures += ", not counted"
     return RouteMark(
-        name=route["name"].replace("_", " "),
+        name=route_name(route["name"]),
         attacker=route["attacker"],
         figures=figures,
         y=y,

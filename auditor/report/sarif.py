@@ -12,10 +12,9 @@ from hashlib import sha256
 from typing import Any
 from urllib.parse import quote
 
-from auditor.report.text import clipped, visible_record
+from auditor.report.text import clipped
+from auditor.report.view import Record, View, view
 from auditor.report.words import CONFIDENCE_MEANING, outcome, plain_value
-
-Record = Mapping[str, Any]
 
 LEVELS: Mapping[str, str] = {"major": "error", "minor": "warning", "observation": "note"}
 SEVERITY: Mapping[str, str] = {"major": "8.0", "minor": "5.0", "observation": "2.0"}
@@ -30,9 +29,9 @@ _SCHEMA = (
 )
 
 
-def render(record: Record) -> str:
-    """A SARIF log with one run: a result for every finding at every place, in record order."""
-    shown = visible_record(record)
+def render(record: Record | View) -> str:
+    """A SARIF log with one run: a result for every finding of every set, in record order."""
+    shown = view(record).record
     rules = {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
     named = sorted(rules)
     index = {rule: number for number, rule in enumerate(named)}

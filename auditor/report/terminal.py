@@ -5,11 +5,10 @@ Colour is only added when asked for, around words that carry the meaning without
 
 from collections.abc import Iterator, Mapping
 from textwrap import wrap
-from typing import Any
 
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import clipped
-from auditor.report.view import View, view
+from auditor.report.view import Record, View, view
 from auditor.report.words import plural
 
 _STYLES: Mapping[str, str] = {"hold": "1;31", "open": "1;34", "conditions": "1", "no objection": ""}
@@ -21,7 +20,7 @@ _MOST_LISTED = 3
 
 
 def render(
-    record: Mapping[str, Any], *, width: int = 80, height: int = 24, colour: bool = False
+    record: Record | View, *, width: int = 80, height: int = 24, colour: bool = False
 ) -> str:
     """The summary: ``height`` lines of ``width`` columns, more only for the worst set's own.
 

@@ -7,18 +7,17 @@ open question once with all that waits for it. All text that leaves this module 
 """
 
 import hashlib
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
 
 from auditor.report import words
-from auditor.report.claim_words import is_small_prime, sentence
-from auditor.report.json_report import dumps
+from auditor.report.json_report import dumps, may_hide
 from auditor.report.questions_view import Question, questions
 from auditor.report.sheet_view import Sheet, sheet
 from auditor.report.strength_view import strength
-from auditor.report.text import read_integer, visible_record
+from auditor.report.text import visible_record
 from auditor.report.words import plural
 
 Record = Mapping[str, Any]
@@ -49,9 +48,16 @@ class View:
     """A whole report, ready to be written in any format."""
 
     record: Record
-    record_digest: str
+    json: str
+    """The JSON report: the record as it was given, before its text was made visible."""
+
     sheets: tuple[Sheet, ...]
     books: tuple[Book, ...]
+
+    @cached_property
+    def record_digest(self) -> str:
+        """SHA-256 of the JSON report."""
+        return hashlib.sha256(self.json.encode()).hexdigest()
 
     @property
     def as_of(self) -> str:
@@ -105,19 +111,31 @@ class View:
         """What is open, the question that most waits for first; the owner's after search's."""
         return questions(self.sheets)
 
-    @property
-    def claims(self) -> Iterator[tuple[str, str, tuple[str, ...]]]:
-        """Id, sentence and used ids of every claim but the small primes, by id."""
-        for claim_id, claim in self.record["claims"].items():
-            if not is_small_prime(claim):
-                yield claim_id, sentence(claim), tuple(claim["uses"])
-
     @cached_property
-    def small_primes(self) -> tuple[tuple[str, int], ...]:
-        """Id and number of every claim that a number below 2^64 is prime, by number."""
-        claims = self.record["claims"].items()
-        found = [(key, read_integer(c["statement"]["n"])) for key, c in claims if is_small_prime(c)]
-        return tuple(sorted(found, key=lambda item: item[1]))
+    def limits(self) -> Mapping[str, tuple[Sheet, ...]]:
+        """What was not examined or settled, each sentence once with the sheets it is true of."""
+        found: dict[str, list[Sheet]] = {}
+        for item in self.sheets:
+            for limit in item.limits:
+                found.setdefault(limit, []).append(item)
+        return {limit: tuple(sheets) for limit, sheets in found.items()}
+
+    def claims_behind(self, sheets: Iterable[Sheet]) -> list[str]:
+        """Ids of the claims that any value of these sheets rests on, directly or not, sorted."""
+        claims = self.record["claims"]
+        wanted = [
+            key
+            for item in sheets
+            for fact in item.record["facts"].values()
+            for key in fact["claims"]
+        ]
+        found: set[str] = set()
+        while wanted:
+            key = wanted.pop()
+            if key in claims and key not in found:
+                found.add(key)
+                wanted += claims[key]["uses"]
+        return sorted(found)
 
     @property
     def problems(self) -> tuple[str, ...]:
@@ -143,9 +161,13 @@ class View:
         return tuple(self.record["cautions"])
 
 
-def view(record: Record) -> View:
-    """The view of a record in the shape of ``report.schema.json``."""
-    shown = visible_record(record)
+def view(record: "Record | View") -> View:
+    """The view of a record in the shape of ``report.schema.json``; a view is its own view, so
+    that several renderers can share one."""
+    if isinstance(record, View):
+        return record
+    text = dumps(record)
+    shown = visible_record(record) if may_hide(text) else record
     rules = {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
     groups: dict[str, list[Record]] = {}
     for parameter_set in shown["parameter_sets"]:
@@ -153,7 +175,7 @@ def view(record: Record) -> View:
     ordered = sorted(groups.values(), key=_urgency)
     return View(
         shown,
-        hashlib.sha256(dumps(record).encode()).hexdigest(),
+        text,
         tuple(sheet(number, group, rules) for number, group in enumerate(ordered, 1)),
         tuple(_book(book) for book in shown["rulebooks"]),
     )

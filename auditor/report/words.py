@@ -119,6 +119,11 @@ def _party(record: Mapping[str, Any]) -> str:
     return f"{bits}, {use}; {checks}"
 
 
+def route(name: str) -> str:
+    """The name of an attack route as a practitioner writes it."""
+    return "Pohlig-Hellman" if name == "pohlig_hellman" else name.replace("_", " ")
+
+
 def plain_value(value: Any) -> str:
     """A value of a record in one line, long integers shortened."""
     match value:
