@@ -16,17 +16,21 @@ from auditor.search.special_form_pair import CHANCE_BITS, DEGREES, RawPair, expa
 BASES = (2, 3, 5, 6, 7, 10)
 WIDTH = 16
 """How far above p^(1/d), in bits, roots are tried."""
+FINE_UP_TO = 4096
+"""Length of the moduli, in bits, up to which every power is tried."""
 
 
 def exponents(p: int, degree: int, base: int) -> range:
     """The j for which base^j lies between p^(1/(d+1)) and 2^16 p^(1/d).
 
-    Below that range the vector (m, -1, 0, ...) is short for every p.
+    Below that range the vector (m, -1, 0, ...) is short for every p. From 4096 bits only every
+    second j is tried, from 8192 every third and so on: the coefficients then grow by a few bits,
+    which at that length is nothing, and the number of lattices does not grow any more.
     """
     n = log2(p)
     least = floor(n / (degree + 1) / log2(base)) + 1
     most = floor((n / degree + WIDTH) / log2(base))
-    return range(least, most + 1)
+    return range(least, most + 1, 1 + floor(n / FINE_UP_TO))
 
 
 def tests(p: int) -> int:

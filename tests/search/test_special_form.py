@@ -28,7 +28,7 @@ from auditor.intake.standard_groups import find
 from auditor.search import special_form_any_root as any_root
 from auditor.search import special_form_hidden as hidden
 from auditor.search import special_form_known_root as known_root
-from auditor.search.special_form import LEAST_LENGTH, looked_for, search
+from auditor.search.special_form import LARGEST_HIDDEN, LEAST_LENGTH, looked_for, search
 from auditor.search.special_form_pair import (
     DEGREES,
     RawPair,
@@ -230,8 +230,8 @@ def test_tiers_commute() -> None:
 
 
 def test_what_was_looked_for_is_said() -> None:
-    """Each tier asked for is described, in order, with its number of tests; short moduli are not
-    looked at."""
+    """Each tier asked for is described, in order, with its number of tests; moduli too short for
+    any, and too long for the third, are not looked at."""
     p = modulus("modp2048")
 
     assert [(item.tier, item.tests) for item in looked_for(p, (3, 1, 2))] == [
@@ -239,6 +239,7 @@ def test_what_was_looked_for_is_said() -> None:
         (2, any_root.tests()),
         (3, hidden.tests()),
     ]
+    assert [item.tier for item in looked_for(1 << LARGEST_HIDDEN, (1, 2, 3))] == [1, 2]
     short = (1 << (LEAST_LENGTH - 2)) + 1
     assert looked_for(short) == ()
     assert search(short) is None
@@ -263,15 +264,16 @@ def test_lattice_is_that_of_the_root(degree: int) -> None:
         assert homogeneous_value([int(c) for c in row], 1, m) % p == 0
 
 
-@given(st.integers(2**127, 2**2048), st.sampled_from(DEGREES), st.sampled_from(known_root.BASES))
+@given(st.integers(2**127, 2**9000), st.sampled_from(DEGREES), st.sampled_from(known_root.BASES))
 def test_roots_span_their_range(p: int, degree: int, base: int) -> None:
-    """Exactly the powers above p^(1/(d+1)) and up to 2^16 p^(1/d) are tried."""
+    """The powers above p^(1/(d+1)) and up to 2^16 p^(1/d) are tried, all of them or regularly."""
     exponents = known_root.exponents(p, degree, base)
 
     inside = [base ** exponents[0], base ** exponents[-1]]
     assert all(m ** (degree + 1) > p and m**degree <= p << 16 * degree for m in inside)
     assert (inside[0] // base) ** (degree + 1) <= p
-    assert (inside[1] * base) ** degree > p << 16 * degree
+    assert (inside[1] * base**exponents.step) ** degree > p << 16 * degree
+    assert exponents.step == 1 + int(log2(p)) // known_root.FINE_UP_TO
 
 
 @given(st.integers(0, 2**600), st.integers(2, 2**200), st.integers(1, 8))
