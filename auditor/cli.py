@@ -92,7 +92,7 @@ def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]
     from auditor.review import review as review_inputs
     from auditor.rulebook_types import RulebookError
 
-    progress = Progress(sys.stderr, is_live(os.environ))
+    progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
     with LocalPool(options["jobs"]) as pool:
         try:
             return review_inputs(

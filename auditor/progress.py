@@ -1,6 +1,5 @@
 """What a person sees while questions are answered: a line that moves, or a line now and then."""
 
-import sys
 import time
 from collections.abc import Callable, Mapping
 from typing import TextIO
@@ -41,6 +40,6 @@ class Progress:
             self._stream.flush()
 
 
-def is_live(environment: Mapping[str, str], stream: TextIO = sys.stderr) -> bool:
+def is_live(environment: Mapping[str, str], stream: TextIO) -> bool:
     """Whether a moving line is welcome: a terminal with a person before it."""
     return stream.isatty() and not environment.get("CI") and environment.get("TERM") != "dumb"
