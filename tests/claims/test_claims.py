@@ -1,4 +1,4 @@
-"""Every kind of claim: what holds is accepted, what does not is refuted with the step that fails."""
+"""Every kind of claim: what holds is accepted, what does not is refuted for its own reason."""
 
 import secrets
 from math import prod
