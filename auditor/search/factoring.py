@@ -5,7 +5,7 @@ whoever uses it. Work is counted, curves are numbered, and units of curves are c
 of their numbers however many processes run them, so equal arguments give equal results.
 """
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field, replace
 from functools import partial
 from typing import Any
@@ -16,6 +16,7 @@ from auditor.search import lucas
 from auditor.search.curves import BuiltIn, Engine, Executor, Task, outcomes
 from auditor.search.parts import Parts
 from auditor.search.plan import Plan
+from auditor.search.primality import is_likely_prime
 from auditor.search.rho import fermat, rho
 from auditor.search.trial import small_factors
 from auditor.search.work import Work
@@ -173,20 +174,31 @@ class _Search:
             self.attempt(partial(rho, iterations=plan.rho_iterations), "rho")
             self.did(rho_iterations=plan.rho_iterations)
         if plan.p_minus_1 > work.p_minus_1:
-            self.attempt(
+            self.attempt_at_once(
                 partial(lucas.p_minus_1, b1=plan.p_minus_1[0], b2=plan.p_minus_1[1]), "p-1"
             )
             self.did(p_minus_1=plan.p_minus_1)
         b1, b2 = plan.p_plus_1
         starts = plan.p_plus_1_starts if plan.p_plus_1 > work.p_plus_1 else 0
         for start in range(starts):
-            self.attempt(partial(lucas.p_plus_1, b1=b1, b2=b2, start=start), "p+1")
+            self.attempt_at_once(partial(lucas.p_plus_1, b1=b1, b2=b2, start=start), "p+1")
             self.did(p_plus_1=plan.p_plus_1, p_plus_1_starts=start + 1)
 
     def attempt(self, method: Callable[[int], int], name: str) -> None:
         """Uses a method until it finds nothing more."""
         while self.parts.open > 1 and self.found(method(self.parts.open), name):
             pass
+
+    def attempt_at_once(self, method: Callable[[int], Sequence[int]], name: str) -> None:
+        """Uses a method that finds all within its reach at once: once on the whole, then on the
+        pieces that it found, which may hold several primes each."""
+        waiting = [self.parts.open]
+        while waiting:
+            number = waiting.pop()
+            pieces = [d for d in method(number) if 1 < d < number] if number > 1 else []
+            self.divide(pieces, name)
+            waiting += [piece for piece in pieces if not is_likely_prime(piece)]
+        self.complete()
 
     def found(self, divisor: int, method: str) -> bool:
         """Takes up a divisor of the open part; whether it was a proper one."""

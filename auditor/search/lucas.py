@@ -21,25 +21,29 @@ P_PLUS_1_STARTS = ((2, 7), (6, 5), (5, 1))
 """2/7 and 6/5 give group orders divisible by 6 and 4 (README of GMP-ECM)."""
 
 
-def p_minus_1(n: int, b1: int, b2: int) -> int:
-    """A divisor of odd ``n`` above 1, or 1. The divisor may be ``n`` itself."""
-    modulus = mpz(n)
-    power, common = _stage_one(mpz(START), mpz(1), b1, modulus, _power)
-    if common > 1 or b2 <= b1:
-        return int(common)
-    trace = (power + gmpy2.invert(power, modulus)) % modulus
-    return _stage_two(trace, b1, b2, modulus)
+def p_minus_1(n: int, b1: int, b2: int) -> list[int]:
+    """Divisors of odd ``n`` above 1, coprime to each other; a divisor may be ``n`` itself.
+
+    All factors within reach are found in one pass: what a divisor leaves of n is not tried again.
+    """
+    found, power, modulus = _stage_one(mpz(START), mpz(1), b1, mpz(n), _power)
+    if modulus > 1 and b2 > b1:
+        trace = (power + gmpy2.invert(power, modulus)) % modulus
+        found.append(_stage_two(trace, b1, b2, modulus))
+    return [divisor for divisor in found if divisor > 1]
 
 
-def p_plus_1(n: int, b1: int, b2: int, start: int) -> int:
-    """A divisor of odd ``n`` above 1, or 1, from the starting trace number ``start``."""
-    modulus = mpz(n)
+def p_plus_1(n: int, b1: int, b2: int, start: int) -> list[int]:
+    """Divisors of odd ``n`` above 1, from the starting trace number ``start``; as for p-1."""
     numerator, denominator = P_PLUS_1_STARTS[start]
-    trace = numerator * gmpy2.invert(denominator, modulus) % modulus
-    trace, common = _stage_one(trace, mpz(2), b1, modulus, _trace_of_power)
-    if common > 1 or b2 <= b1:
-        return int(common)
-    return _stage_two(trace, b1, b2, modulus)
+    trace = numerator * gmpy2.invert(denominator, n) % n
+    found, trace, modulus = _stage_one(trace, mpz(2), b1, mpz(n), _trace_of_power)
+    if modulus > 1 and b2 > b1:
+        found.append(_stage_two(trace, b1, b2, modulus))
+    return [divisor for divisor in found if divisor > 1]
+
+
+Raise = Callable[[mpz, mpz, mpz], mpz]
 
 
 def _power(value: mpz, exponent: mpz, n: mpz) -> mpz:
@@ -51,37 +55,45 @@ def _trace_of_power(trace: mpz, exponent: mpz, n: mpz) -> mpz:
 
 
 def _stage_one(
-    value: mpz, identity: mpz, b1: int, n: mpz, raised: Callable[[mpz, mpz, mpz], mpz]
-) -> tuple[mpz, mpz]:
-    """The value raised to lcm(1, ..., b1), and a common divisor with n.
+    value: mpz, identity: mpz, b1: int, n: mpz, raised: Raise
+) -> tuple[list[int], mpz, mpz]:
+    """Divisors of n that appear on the way to lcm(1, ..., b1), the value raised to that, and what
+    the divisors leave of n.
 
-    The divisor is looked for after each batch of primes; a batch in which all factors of n appear
-    is gone through again prime by prime.
+    A divisor is looked for after each batch of primes; a batch in which all of n appears is gone
+    through again prime by prime.
     """
+    found: list[int] = []
     for batch in in_batches(primes_of_lcm(b1), BATCH):
         before = value
         value = raised(before, product(batch), n)
         common = gmpy2.gcd(value - identity, n)
         if common == n:
-            return _prime_by_prime(before, identity, batch, n, raised)
-        if common > 1:
-            return value, common
-    return value, mpz(1)
+            divisors, value, n = _prime_by_prime(before, identity, batch, n, raised)
+            found += divisors
+        elif common > 1:
+            found.append(int(common))
+            n //= common
+            value %= n
+        if n == 1:
+            break
+    return found, value, n
 
 
 def _prime_by_prime(
-    value: mpz,
-    identity: mpz,
-    batch: Sequence[int],
-    n: mpz,
-    raised: Callable[[mpz, mpz, mpz], mpz],
-) -> tuple[mpz, mpz]:
+    value: mpz, identity: mpz, batch: Sequence[int], n: mpz, raised: Raise
+) -> tuple[list[int], mpz, mpz]:
+    found: list[int] = []
     for prime in batch:
         value = raised(value, mpz(prime), n)
         common = gmpy2.gcd(value - identity, n)
         if common > 1:
-            return value, common
-    return value, mpz(1)
+            found.append(int(common))
+            n //= common
+            value %= n
+        if n == 1:
+            break
+    return found, value, n
 
 
 @dataclass(frozen=True, slots=True)
