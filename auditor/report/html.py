@@ -22,8 +22,8 @@ if TYPE_CHECKING:
 MOST_SHEETS = 250
 """Sheets written out, the worst first; the decision sheet has all sets, the JSON report all."""
 
-MOST_ROWS = 1_000
-"""Rows of the decision sheet with all their reasons, and entries of any other list."""
+MOST_ENTRIES = 1_000
+"""Entries written out of any other list."""
 
 
 def render(record: Record | View) -> str:
@@ -32,14 +32,14 @@ def render(record: Record | View) -> str:
     claims = report.record["claims"]
     orders = GroupOrders.read(claims)
     shown = report.sheets[:MOST_SHEETS]
-    keys = sorted(claims) if len(claims) <= MOST_ROWS else report.claims_behind(shown)
+    keys = sorted(claims) if len(claims) <= MOST_ENTRIES else report.claims_behind(shown)
     return (
         _environment()
         .get_template("report.html.j2")
         .render(
             report=report,
             words=words,
-            most_rows=MOST_ROWS,
+            most_entries=MOST_ENTRIES,
             shown=shown,
             claims=[(key, claims[key]) for key in keys if not is_small_prime(claims[key])],
             small_primes=_small_primes({key: claims[key] for key in keys}),

@@ -6,14 +6,17 @@ active characters defused.
 """
 
 import re
-from collections.abc import Iterable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
+from typing import TypeVar
 
 from auditor.report.questions_view import Question
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import Number, clipped
 from auditor.report.view import Record, View, view
 from auditor.report.words import plural
+
+Item = TypeVar("Item")
 
 LIMIT = 32_767
 """Characters that the fields of common trackers hold; counted in UTF-16 units, the most that any
@@ -36,11 +39,11 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
     room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
     parts = [
         head,
-        _fitted("set", _DECISIONS, map(_row, report.sheets), room.share(3)),
+        _fitted("set", _DECISIONS, report.sheets, _row, room.share(3)),
         *_findings(report, room),
-        _fitted("question", "\n## Open questions\n\n", map(_question, report.questions), room),
-        _fitted("message", "\n## Not read\n\n", map(_message, report.problems), room),
-        _fitted("entry", "\n## Skipped\n\n", map(_message, report.skipped), room),
+        _fitted("question", "\n## Open questions\n\n", report.questions, _question, room),
+        _fitted("message", "\n## Not read\n\n", report.problems, _message, room),
+        _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room),
         foot,
     ]
     return "".join(part for part in parts if part)
@@ -150,27 +153,31 @@ def _row(sheet: Sheet) -> str:
 
 
 def _findings(report: View, room: _Room) -> Iterator[str]:
-    """Sheets with their findings, worst first, while they fit; then what was left out."""
-    left_out, sets_left_out, title = 0, 0, "\n## Findings\n"
-    for sheet in report.sheets:
-        texts = [_finding(sheet, number) for number in range(1, len(sheet.findings) + 1)]
-        opening = title + _opening(sheet)
-        whole = left_out == 0 and room.take(opening + (texts[0] if texts else ""))
-        if not whole:
-            left_out, sets_left_out = left_out + len(texts), sets_left_out + 1
-            continue
-        yield opening + "".join(texts[:1])
-        title = ""
-        for text in texts[1:]:
-            if left_out == 0 and room.take(text):
-                yield text
-            else:
-                left_out += 1
-    if left_out or sets_left_out:
+    """Sheets with their findings, worst first, until one does not fit; then what was left out."""
+    shown, sheets = 0, 0
+    for text, finding in _pieces(report):
+        if not room.take(text):
+            break
+        yield text
+        shown, sheets = shown + finding, sheets + (text.startswith("\n#"))
+    findings = sum(len(sheet.findings) for sheet in report.sheets) - shown
+    if findings or sheets < len(report.sheets):
         yield (
-            f"\nLeft out for length: {plural(left_out, 'finding')}, and the sheets of "
-            f"{plural(sets_left_out, 'set')}; the worst are above.\n"
+            f"\nLeft out for length: {plural(findings, 'finding')}, and the sheets of "
+            f"{plural(len(report.sheets) - sheets, 'set')}; the worst are above.\n"
         )
+
+
+def _pieces(report: View) -> Iterator[tuple[str, int]]:
+    """What may not be cut apart, and how many findings are in it: a sheet's opening goes with its
+    first finding."""
+    title = "\n## Findings\n"
+    for sheet in report.sheets:
+        first = _finding(sheet, 1) if sheet.findings else ""
+        yield title + _opening(sheet) + first, len(sheet.findings[:1])
+        title = ""
+        for number in range(2, len(sheet.findings) + 1):
+            yield _finding(sheet, number), 1
 
 
 def _opening(sheet: Sheet) -> str:
@@ -234,15 +241,17 @@ def _message(text: str) -> str:
     return f"- {code(text, _MESSAGE)}\n"
 
 
-def _fitted(kind: str, title: str, items: Iterable[str], room: _Room) -> str:
+def _fitted(
+    kind: str, title: str, items: Sequence[Item], write: Callable[[Item], str], room: _Room
+) -> str:
     """A section with as many of its items as fit, and how many do not."""
-    texts = list(items)
     shown: list[str] = []
-    for text in texts:
+    for item in items:
+        text = write(item)
         if not room.take(text if shown else title + text):
             break
         shown.append(text)
-    left = len(texts) - len(shown)
+    left = len(items) - len(shown)
     note = f"\nLeft out for length: {plural(left, kind)}.\n" if left else ""
     return (title if shown else "") + "".join(shown) + note
 

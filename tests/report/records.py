@@ -16,6 +16,18 @@ def fixture(name: str) -> dict[str, Any]:
     return json.loads((FOLDER / "fixtures" / f"{name}.json").read_text(encoding="utf-8"))
 
 
+def bulky(sets: int) -> dict[str, Any]:
+    """A record of so many different sets, each with findings, and as many errors."""
+    record = fixture("harbour")
+    crane = next(s for s in record["parameter_sets"] if s["name"] == "crane telemetry")
+    record["parameter_sets"] = [
+        crane | {"digest": f"{number:064x}", "name": f"set {number} 🏗", "id": f"x#{number}"}
+        for number in range(sets)
+    ]
+    record["errors"] *= sets
+    return record
+
+
 def hostile_texts() -> list[str]:
     """The corpus; a lone surrogate cannot stand in a file and is put in here."""
     entries = yaml.safe_load((FOLDER / "hostile_text.yaml").read_text(encoding="utf-8"))

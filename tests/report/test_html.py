@@ -6,10 +6,11 @@ import sys
 
 import pytest
 
+from auditor.report import html
 from auditor.report.html import render
 from auditor.report.text import HIDDEN, visible
 from tests.report.pages import Page
-from tests.report.records import FIXTURES, fixture, hostile_texts, with_text
+from tests.report.records import FIXTURES, bulky, fixture, hostile_texts, with_text
 
 PLAIN = {name: Page.read(render(fixture(name))) for name in FIXTURES}
 HARMLESS = Page.read(render(with_text("harmless")))
@@ -106,6 +107,21 @@ def test_outside_text_stays_text(text: str) -> None:
     assert not re.search(HIDDEN, source.replace("\n", ""))
     assert " ".join(visible(text).split()) in page.words()
     source.encode("utf-8")
+
+
+def test_a_long_report_writes_out_the_worst_and_says_so(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Every set is on the decision sheet; what has no sheet has no link to one."""
+    monkeypatch.setattr(html, "MOST_SHEETS", 5)
+    monkeypatch.setattr(html, "MOST_ENTRIES", 7)
+    page = Page.read(render(bulky(12)))
+    text, ids = page.words(), page.attributes("id")
+
+    assert all(f"set {number} 🏗" in text for number in range(12))
+    assert len([name for name in ids if re.fullmatch(r"set-\d+", name)]) == 5
+    assert {target[1:] for target in page.attributes("href")} <= set(ids)
+    assert "The sheets of the other 7 sets, none of a worse position" in text
+    assert "and 5 more messages, in the JSON report" in text
+    assert re.search(r"The other \d+ claims", text)
 
 
 def test_the_same_record_gives_the_same_bytes() -> None:

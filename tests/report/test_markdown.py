@@ -1,7 +1,6 @@
 """The Markdown report, read by a CommonMark parser with the tables of GitHub Flavored Markdown."""
 
 import re
-from typing import Any
 
 import pytest
 from hypothesis import given
@@ -11,7 +10,7 @@ from markdown_it.token import Token
 
 from auditor.report.markdown import LEAST, LIMIT, code, prose, render
 from auditor.report.text import HIDDEN, clipped, visible
-from tests.report.records import FIXTURES, fixture, hostile_texts, with_text
+from tests.report.records import FIXTURES, bulky, fixture, hostile_texts, with_text
 
 PARSER = MarkdownIt("commonmark").enable(["table", "strikethrough"])
 
@@ -61,18 +60,6 @@ def test_the_ticket_holds_what_decides() -> None:
                 assert all(prose(cost) in text for cost in finding["remedy"]["breaks"])
     for caution in record["cautions"]:
         assert prose(caution) in text
-
-
-def bulky(sets: int) -> dict[str, Any]:
-    """A record of so many different sets, each with findings."""
-    record = fixture("harbour")
-    first, *_ = [s for s in record["parameter_sets"] if s["name"] == "crane telemetry"]
-    record["parameter_sets"] = [
-        first | {"digest": f"{number:064x}", "name": f"set {number} 🏗", "id": f"x#{number}"}
-        for number in range(sets)
-    ]
-    record["errors"] = record["errors"] * sets
-    return record
 
 
 @pytest.mark.parametrize("limit", [LEAST, 5_000, 10_000, LIMIT, 65_536])
