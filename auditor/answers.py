@@ -15,9 +15,15 @@ from auditor.claims.base import Claim, Draw, Factors, Refuted, product
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite, PerfectPower
 from auditor.claims.factorization import Factorization
+from auditor.claims.forgery import forgery_relations
 from auditor.claims.order import Membership, Order
+from auditor.claims.origin import regenerate
+from auditor.claims.origin_formula import CONSTANTS, formula_of, least_offset
+from auditor.claims.origin_generator import generator_from_integers
+from auditor.claims.origin_recipe import Recipe
 from auditor.claims.primality_tests import DETERMINISTIC_BELOW
 from auditor.claims.prime import Prime
+from auditor.claims.public_values import shared_exponents, visible_exponents
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.questions import Asks, Question
@@ -84,6 +90,32 @@ class Answers:
 
             case Asks.SPECIAL_FORM:
                 self._special_form(*question.integers)
+
+            case Asks.LEAST_OFFSET if self._run.effort != "thorough":
+                pass
+            case _:
+                self._take(self._made(question))
+
+    def _made(self, question: Question) -> Claim:
+        """A claim whose check is the very computation that makes it; that is not done twice."""
+        n, *others = question.integers
+        match question.asks:
+            case Asks.ORIGIN:
+                recipe = Recipe.from_integers(tuple(others[1:]))
+                return regenerate(n, others[0], recipe, self.settle_primality, self._draw)
+            case Asks.CANONICAL_GENERATOR:
+                return generator_from_integers(*question.integers)
+            case Asks.FORMULA:
+                return formula_of(n, CONSTANTS[others[0]])
+            case Asks.LEAST_OFFSET:
+                return least_offset(n, CONSTANTS[others[0]], others[1], self._draw)
+            case Asks.SHARED_EXPONENTS:
+                return shared_exponents(n, others[0], others[1:])
+            case Asks.VISIBLE_EXPONENTS:
+                return visible_exponents(n, others[0], others[1], others[2:])
+            case Asks.FORGERY_RELATIONS:
+                return forgery_relations(n, others[0])
+        raise ValueError(f"no such question: {question.asks}")
 
     def settle_primality(self, n: int) -> Prime | Composite:
         """The claim that ``n`` > 1 is prime, or that it is composite; made if not yet there."""
@@ -200,6 +232,9 @@ class Answers:
     def _accept(self, claim: Kind) -> Kind:
         used = {claim_id: self.claims[claim_id] for claim_id in claim.uses}
         claim.check(used, self._draw)
+        return self._take(claim)
+
+    def _take(self, claim: Kind) -> Kind:
         self.claims.add([claim])
         self._keep([claim])
         return claim

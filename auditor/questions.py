@@ -29,10 +29,37 @@ class Asks(StrEnum):
     """n, a, t: is a^t = 1 modulo n?"""
     SPECIAL_FORM = "special-form"
     """n: has it a form that the special number field sieve can use?"""
+    ORIGIN = "origin"
+    """n, q, and a recipe spelled in integers: does it lead to n and q?"""
+    CANONICAL_GENERATOR = "canonical-generator"
+    """n, q, g, hash, seed, index: does FIPS 186-4, A.2.3 make g?"""
+    FORMULA = "formula"
+    """n, and 0 for pi or 1 for e: is n made from those digits?"""
+    LEAST_OFFSET = "least-offset"
+    """n, 0 or 1, x: gives no offset below x a safe prime?"""
+    SHARED_EXPONENTS = "shared-exponents"
+    """n, t, and values: which have equal powers with exponent t?"""
+    VISIBLE_EXPONENTS = "visible-exponents"
+    """n, g, k, and values: which are up to sign powers of g with exponents up to k?"""
+    FORGERY_RELATIONS = "forgery-relations"
+    """n, a: which relations between a and n-1 help to forge signatures?"""
 
 
-CHEAP = frozenset({Asks.PRIMALITY, Asks.SMALL_FACTORS, Asks.ORDER, Asks.MEMBERSHIP})
-"""Kinds that cost at most a few exponentiations or primality tests."""
+CHEAP = frozenset(
+    {
+        Asks.PRIMALITY,
+        Asks.SMALL_FACTORS,
+        Asks.ORDER,
+        Asks.MEMBERSHIP,
+        Asks.ORIGIN,
+        Asks.CANONICAL_GENERATOR,
+        Asks.FORMULA,
+        Asks.SHARED_EXPONENTS,
+        Asks.VISIBLE_EXPONENTS,
+        Asks.FORGERY_RELATIONS,
+    }
+)
+"""Kinds that cost a few exponentiations or, for an origin, a few hundred."""
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -65,3 +92,18 @@ class Question:
                 return f"Is the power of {others[0]} with exponent {others[1]} equal to 1?"
             case Asks.SPECIAL_FORM:
                 return f"Has {first} a form that the special number field sieve can use?"
+            case Asks.ORIGIN:
+                return f"Do the declared seed and counter lead to {first} and {others[0]}?"
+            case Asks.CANONICAL_GENERATOR:
+                return f"Do the declared seed and index lead to the generator {others[1]}?"
+            case Asks.FORMULA:
+                digits = "e" if self.integers[1] else "pi"
+                return f"Is {first} made from the digits of {digits}?"
+            case Asks.LEAST_OFFSET:
+                return f"Gives an offset below {others[1]} a safe prime in the formula of {first}?"
+            case Asks.SHARED_EXPONENTS:
+                return "Which public values share their exponent modulo the order of the generator?"
+            case Asks.VISIBLE_EXPONENTS:
+                return f"Which public values are small powers of {others[0]}?"
+            case Asks.FORGERY_RELATIONS:
+                return f"Which relations to the order forge signatures with the base {others[0]}?"

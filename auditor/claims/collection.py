@@ -6,8 +6,13 @@ from typing import Any, TypeVar
 from auditor.claims.base import Claim, Draw, Refuted
 from auditor.claims.composite import Composite, PerfectPower
 from auditor.claims.factorization import Factorization
+from auditor.claims.forgery import ForgeryRelations
 from auditor.claims.order import Membership, Order
+from auditor.claims.origin import Origin
+from auditor.claims.origin_formula import Formula, LeastOffset
+from auditor.claims.origin_generator import CanonicalGenerator
 from auditor.claims.prime import Prime
+from auditor.claims.public_values import SharedExponents, VisibleExponents
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.claims.standing import Standing, weakest
@@ -26,6 +31,13 @@ KINDS: Mapping[str, type[Claim]] = {
         Searched,
         SpecialForm,
         FormSearched,
+        Origin,
+        Formula,
+        LeastOffset,
+        CanonicalGenerator,
+        SharedExponents,
+        VisibleExponents,
+        ForgeryRelations,
     )
 }
 
@@ -95,6 +107,20 @@ class Claims:
         """All records of searches that left ``n``, by id."""
         found = self._by_subject.get(("searched", n), [])
         return tuple(sorted((c for c in found if isinstance(c, Searched)), key=lambda c: c.id))
+
+    def about(self, kind: type[Kind], n: int, **values: object) -> Kind | None:
+        """The claim of that kind about ``n`` whose fields have these values."""
+        found = self._by_subject.get((kind.kind, n), [])
+        return min(
+            (
+                claim
+                for claim in found
+                if isinstance(claim, kind)
+                and all(getattr(claim, name) == value for name, value in values.items())
+            ),
+            key=self._preference,
+            default=None,
+        )
 
     def standing(self, claim_id: str) -> Standing:
         """The weakest standing among the claim and all that it rests on."""

@@ -18,10 +18,6 @@ from auditor.routes.base import Attacker
 from auditor.routes.factors import Factors
 from auditor.routes.pohlig_hellman import pohlig_hellman_bits
 
-LARGEST_DIVISOR = 2**20
-MOST_DIVISORS = 4096
-HIGHEST_POWER = 64
-
 
 class Condition(StrEnum):
     """Why signatures may be forged."""
@@ -36,9 +32,8 @@ class Forgery:
     """A condition that holds, and what a forgery costs.
 
     ``bits`` is log2 of the group multiplications spent once per public key; ``subgroup`` is b
-    and ``r`` the first half of the forged signatures. The relation is r^power = alpha for
-    POWER_OF_DIVISOR and r = alpha^power for SHARED_FACTOR, up to the sign when ``negative``. For
-    UNKNOWN_ORIGIN there is no relation that anybody else could know.
+    and ``r`` the first half of the forged signatures. For UNKNOWN_ORIGIN there is no relation that
+    anybody but the maker could know, and both are None.
     """
 
     condition: Condition
@@ -47,93 +42,47 @@ class Forgery:
     explanation: str
     subgroup: int | None = None
     r: int | None = None
-    power: int | None = None
-    negative: bool = False
 
 
-def signature_forgery(
-    p: int, alpha: int, factors: Factors, budget_bits: float, origin_verified: bool
-) -> tuple[Forgery, ...]:
-    """The conditions that hold for a prime ``p`` and base ``alpha``, 1 < alpha < p.
+def power_of_divisor(p: int, r: int, factors: Factors) -> Forgery:
+    """alpha = +-a^(+-k) with a | p - 1 and k small, where ``r`` = (p - 1) / a = -1/a: b is a.
 
-    ``factors`` is the factorization of p - 1 as far as known; an unfactored rest makes costs
-    upper bounds, and divisors in it are not tried. Reported are forgeries that cost at most
-    2^budget_bits. Looked at are the 4096 smallest known divisors up to 2^20 of p - 1 and powers
-    of alpha up to the 64th; other relations may exist. Whoever chose alpha without showing how
-    may know one, for any p: alpha = (c w)^k with a secret k looks like any other base.
+    ``factors`` is the factorization of p - 1 as far as known; an unfactored rest makes the cost
+    an upper bound.
     """
-    found = (
-        _power_of_divisor(p, alpha, factors),
-        _shared_factor(p, alpha, factors),
-        None if origin_verified else _unknown_origin(),
-    )
-    return tuple(forgery for forgery in found if forgery and forgery.bits <= budget_bits)
-
-
-def _power_of_divisor(p: int, alpha: int, factors: Factors) -> Forgery | None:
-    """alpha = +-a^(+-k) with a | p - 1: r = (p - 1) / a = -a^-1 and b = a. The cheapest a."""
-    inverse = pow(alpha, -1, p)
-    targets = {alpha: 1, p - alpha: 1, inverse: -1, p - inverse: -1}
-    found = []
-    for divisor in _divisors(factors):
-        power = 1
-        for k in range(1, HIGHEST_POWER + 1):
-            power = power * divisor % p
-            if power in targets:
-                found.append(_divisor_forgery(p, alpha, factors, divisor, k * targets[power]))
-                break
-    return min(found, key=lambda forgery: (forgery.bits, forgery.r), default=None)
-
-
-def _divisor_forgery(p: int, alpha: int, factors: Factors, divisor: int, k: int) -> Forgery:
-    r = (p - 1) // divisor
+    subgroup = (p - 1) // r
     return Forgery(
         condition=Condition.POWER_OF_DIVISOR,
         attacker="passive",
-        bits=pohlig_hellman_bits(factors.restricted(divisor)),
+        bits=pohlig_hellman_bits(factors.restricted(subgroup)),
         explanation=(
-            f"The base is, up to sign, a power of {divisor}, which divides p - 1: signatures "
+            f"The base is, up to sign, a power of {subgroup}, which divides p - 1: signatures "
             "can be forged without the private key."
         ),
-        subgroup=divisor,
+        subgroup=subgroup,
         r=r,
-        power=-k,
-        negative=pow(r, -k, p) != alpha,
     )
 
 
-def _shared_factor(p: int, alpha: int, factors: Factors) -> Forgery | None:
-    """r = +-alpha^(+-j) with w = gcd(r, p - 1) and b = (p - 1) / w. The cheapest b, if any."""
-    found = []
-    for base, direction in ((alpha, 1), (pow(alpha, -1, p), -1)):
-        power = 1
-        for j in range(1, HIGHEST_POWER + 1):
-            power = power * base % p
-            for r, negative in ((power, False), (p - power, True)):
-                if r not in (1, p - 1):
-                    found.append(_shared_forgery(p, factors, r, direction * j, negative))
-    return min(found, key=lambda forgery: (forgery.bits, forgery.subgroup), default=None)
-
-
-def _shared_forgery(p: int, factors: Factors, r: int, power: int, negative: bool) -> Forgery:
+def shared_factor(p: int, r: int, factors: Factors) -> Forgery:
+    """``r`` = +-alpha^(+-k) with k small: w = gcd(r, p - 1) and b = (p - 1) / w."""
     subgroup = (p - 1) // gcd(r, p - 1)
-    sign = "-" if negative else ""
     return Forgery(
         condition=Condition.SHARED_FACTOR,
         attacker="passive",
         bits=pohlig_hellman_bits(factors.restricted(subgroup)),
         explanation=(
-            f"{sign}alpha^{power} and p - 1 share so large a factor that signatures can be forged "
-            f"after logarithms in a subgroup of {subgroup.bit_length()}-bit order."
+            "A small power of the base and p - 1 share so large a factor that signatures can be "
+            f"forged after logarithms in a subgroup of {subgroup.bit_length()}-bit order."
         ),
         subgroup=subgroup,
         r=r,
-        power=power,
-        negative=negative,
     )
 
 
-def _unknown_origin() -> Forgery:
+def unknown_origin() -> Forgery:
+    """Whoever chose alpha without showing how may know a relation, for any p: alpha = (c w)^k with
+    a secret k looks like any other base."""
     return Forgery(
         condition=Condition.UNKNOWN_ORIGIN,
         attacker="designer",
@@ -143,13 +92,3 @@ def _unknown_origin() -> Forgery:
             "signatures cannot be excluded; require a base derived from a public seed."
         ),
     )
-
-
-def _divisors(factors: Factors) -> list[int]:
-    """The smallest known divisors of p - 1 from 2 to 2^20, at most 4096, ascending."""
-    divisors = [1]
-    for prime, exponent in factors.known:
-        powers = [prime**e for e in range(exponent + 1) if prime**e <= LARGEST_DIVISOR]
-        products = sorted(d * power for d in divisors for power in powers)
-        divisors = [d for d in products if d <= LARGEST_DIVISOR][: MOST_DIVISORS + 1]
-    return divisors[1:]

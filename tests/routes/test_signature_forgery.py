@@ -7,9 +7,16 @@ import flint
 import gmpy2
 import pytest
 
+from auditor.claims.forgery import Relation, relations
 from auditor.intake.standard_groups import StandardGroup
 from auditor.routes.factors import Factors
-from auditor.routes.signature_forgery import Condition, Forgery, signature_forgery
+from auditor.routes.signature_forgery import (
+    Condition,
+    Forgery,
+    power_of_divisor,
+    shared_factor,
+    unknown_origin,
+)
 from tests.routes.cases import cases, group, units
 
 SIGNATURES = cases("signatures")
@@ -22,10 +29,22 @@ def complete(p: int) -> Factors:
     return Factors(tuple((int(prime), e) for prime, e in flint.fmpz(p - 1).factor()))
 
 
-def forgeries(p: int, alpha: int, budget: float = BUDGET) -> dict[Condition, Forgery]:
-    """What is reported for a base of verified origin, by condition."""
-    found = signature_forgery(p, alpha, complete(p), budget, origin_verified=True)
-    return {forgery.condition: forgery for forgery in found}
+Found = tuple[Forgery, Relation]
+
+
+def reported(p: int, alpha: int, factors: Factors) -> list[Found]:
+    """Every relation between base and order, with what it costs to use."""
+    routes = {"root": power_of_divisor, "power": shared_factor}
+    return [(routes[found.form](p, found.r, factors), found) for found in relations(p, alpha)]
+
+
+def forgeries(
+    p: int, alpha: int, budget: float = BUDGET, factors: Factors | None = None
+) -> dict[Condition, Found]:
+    """The cheapest within the budget, by condition."""
+    found = reported(p, alpha, factors or complete(p))
+    found.sort(key=lambda pair: (pair[0].bits, pair[0].subgroup), reverse=True)
+    return {pair[0].condition: pair for pair in found if pair[0].bits <= budget}
 
 
 def verifies(p: int, alpha: int, y: int, h: int, r: int, s: int) -> bool:
@@ -33,30 +52,30 @@ def verifies(p: int, alpha: int, y: int, h: int, r: int, s: int) -> bool:
     return 0 < r < p and pow(alpha, h, p) == pow(y, r, p) * pow(r, s, p) % p
 
 
-def forge(p: int, alpha: int, y: int, h: int, forgery: Forgery) -> tuple[int, int] | None:
+def forge(p: int, alpha: int, y: int, h: int, found: Found) -> tuple[int, int] | None:
     """A signature of ``h`` from the reported relation alone; None where it does not reach h."""
-    assert forgery.r is not None
+    forgery, relation = found
+    assert forgery.r == relation.r
     assert forgery.subgroup is not None
-    assert forgery.power is not None
-    sign = -1 if forgery.negative else 1
-    if forgery.condition is Condition.POWER_OF_DIVISOR:
-        assert pow(forgery.r, forgery.power, p) == sign * alpha % p
+    sign = -1 if relation.negative else 1
+    if relation.form == "root":
+        assert pow(relation.r, relation.power, p) == sign * alpha % p
     else:
-        assert forgery.r == sign * pow(alpha, forgery.power, p) % p
+        assert relation.r == sign * pow(alpha, relation.power, p) % p
     w = (p - 1) // forgery.subgroup
     step, target = pow(alpha, w, p), pow(y, w, p)
     z = next(z for z in range(forgery.subgroup) if pow(step, z, p) == target)
-    need = (h - forgery.r * z) % (p - 1)
-    if forgery.condition is Condition.POWER_OF_DIVISOR:
-        candidates = [forgery.power * need]
+    need = (h - relation.r * z) % (p - 1)
+    if relation.form == "root":
+        candidates = [relation.power * need]
     else:
-        candidates = solutions(forgery.power, need, p - 1) + solutions(
-            forgery.power + (p - 1) // 2, need, p - 1
+        candidates = solutions(relation.power, need, p - 1) + solutions(
+            relation.power + (p - 1) // 2, need, p - 1
         )
     for s in candidates:
         for shifted in (s, s + (p - 1) // 2):
-            if verifies(p, alpha, y, h, forgery.r, shifted % (p - 1)):
-                return forgery.r, shifted % (p - 1)
+            if verifies(p, alpha, y, h, relation.r, shifted % (p - 1)):
+                return relation.r, shifted % (p - 1)
     return None
 
 
@@ -119,18 +138,15 @@ def test_generator_two_of_a_standard_group() -> None:
     case = SIGNATURES["standard"]
     standard = group(case["group"])
     p, q = standard.modulus, standard.subgroup_order
-    found = signature_forgery(p, 2, units("modp2048"), BUDGET, origin_verified=True)
+    found = forgeries(p, 2, factors=units("modp2048"))
     generator = Random(2048)
 
-    assert {forgery.condition for forgery in found} == {
-        Condition.POWER_OF_DIVISOR,
-        Condition.SHARED_FACTOR,
-    }
-    for forgery in found:
+    assert set(found) == {Condition.POWER_OF_DIVISOR, Condition.SHARED_FACTOR}
+    for forgery, relation in found.values():
         assert (forgery.subgroup, forgery.r) == (case["subgroup"], q)
         for _ in range(case["messages"]):
             y = pow(2, generator.randrange(1, q), p)
-            assert forge(p, 2, y, generator.randrange(1, q), forgery)
+            assert forge(p, 2, y, generator.randrange(1, q), (forgery, relation))
 
 
 def test_a_trapdoor_leaves_no_trace() -> None:
@@ -139,12 +155,12 @@ def test_a_trapdoor_leaves_no_trace() -> None:
     p, alpha, r, k = case["p"], case["alpha"], case["beta"], case["k"]
     assert pow(r, k, p) == alpha
 
-    found = signature_forgery(p, alpha, complete(p), BUDGET, origin_verified=False)
-
-    assert [forgery.condition for forgery in found] == [Condition.UNKNOWN_ORIGIN]
-    assert found[0].attacker == "designer"
-    secret = Forgery(
-        Condition.POWER_OF_DIVISOR, "designer", 0, "", (p - 1) // math.gcd(r, p - 1), r, k
+    assert forgeries(p, alpha) == {}
+    assert unknown_origin().attacker == "designer"
+    subgroup = (p - 1) // math.gcd(r, p - 1)
+    secret = (
+        Forgery(Condition.POWER_OF_DIVISOR, "designer", 0, "", subgroup, r),
+        Relation("root", r, k, negative=False),
     )
     generator = Random(p)
     for _ in range(100):
@@ -157,7 +173,8 @@ def test_a_verified_base_without_relations_is_not_reported() -> None:
     case = SIGNATURES["trapdoor"]
 
     assert forgeries(case["p"], case["alpha"], budget=7) == {}
-    assert 7 < forgeries(case["p"], case["alpha"], budget=20)[Condition.SHARED_FACTOR].bits < 8
+    found, _ = forgeries(case["p"], case["alpha"], budget=20)[Condition.SHARED_FACTOR]
+    assert 7 < found.bits < 8
 
 
 @pytest.mark.parametrize("case", SIGNATURES["least_subgroup"], ids=str)
@@ -165,7 +182,7 @@ def test_least_subgroups(case: dict[str, int]) -> None:
     """The subgroup in which a logarithm is needed is the one worked out beforehand."""
     found = forgeries(case["p"], case["alpha"], budget=64)
 
-    assert found[Condition.SHARED_FACTOR].subgroup == case["b"]
+    assert found[Condition.SHARED_FACTOR][0].subgroup == case["b"]
 
 
 def test_a_group_of_rfc_5114_is_not_affected() -> None:
@@ -174,8 +191,8 @@ def test_a_group_of_rfc_5114_is_not_affected() -> None:
     standard = group(name)
     order = units(name)
 
-    assert not signature_forgery(standard.modulus, standard.generator, order, 128, True)
-    (found,) = signature_forgery(standard.modulus, standard.generator, order, 1024, True)
+    assert not forgeries(standard.modulus, standard.generator, 128, order)
+    ((found, _),) = forgeries(standard.modulus, standard.generator, 1024, order).values()
     assert found.condition is Condition.SHARED_FACTOR
     assert found.subgroup is not None
     for highest, bits in SIGNATURES["rfc5114_1024_160_subgroup_bits"].items():
@@ -212,6 +229,6 @@ def test_an_incomplete_factorization_only_raises_the_cost() -> None:
     p = case["p"]
     partial = Factors(((2, 1),), (p - 1) // 2)
 
-    complete_cost = forgeries(p, case["alpha"], budget=64)[Condition.SHARED_FACTOR].bits
-    (found,) = signature_forgery(p, case["alpha"], partial, 64, origin_verified=True)
+    complete_cost = forgeries(p, case["alpha"], budget=64)[Condition.SHARED_FACTOR][0].bits
+    ((found, _),) = forgeries(p, case["alpha"], 64, partial).values()
     assert found.bits >= complete_cost
