@@ -12,6 +12,8 @@ from typing import Any
 import click
 
 STANDARD_OUTPUT = "-"
+PIPED = (80, 200)
+"""Columns and lines of the summary where there is no screen to fit."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,7 +59,7 @@ def _summary(record: Mapping[str, Any]) -> None:
     from auditor.report import terminal
 
     live = sys.stdout.isatty()
-    size = os.get_terminal_size() if live else os.terminal_size((80, 24))
+    size = os.get_terminal_size() if live else os.terminal_size(PIPED)
     colour = live and not os.environ.get("NO_COLOR") and os.environ.get("TERM") != "dumb"
     width, height = max(60, size.columns), max(20, size.lines)
     click.echo(terminal.render(record, width=width, height=height, colour=colour), nl=False)

@@ -8,16 +8,15 @@ the sample documents. The numbers are for demonstration only.
 import hashlib
 
 import gmpy2
+import sympy
 
-SIEVE = [prime for prime in range(3, 20_000) if all(prime % d for d in range(2, 142) if d < prime)]
+SIEVE = tuple(sympy.primerange(3, 20_000))
 
 
 def bits_from(label: str, bits: int) -> int:
     """An integer of exactly ``bits`` bits: the label hashed with a counter, top bit set."""
     blocks = -(-bits // 256)
-    text = b"".join(
-        hashlib.sha256(f"{label}/{block}".encode()).digest() for block in range(blocks)
-    )
+    text = b"".join(hashlib.sha256(f"{label}/{block}".encode()).digest() for block in range(blocks))
     value = int.from_bytes(text, "big") >> (256 * blocks - bits)
     return value | 1 << (bits - 1)
 
@@ -70,9 +69,10 @@ def smooth_prime(label: str, bits: int, largest: int) -> tuple[int, list[int]]:
         body *= factor
     index = 0
     while True:
-        last = prime(f"{label}/last {index}", bits - body.bit_length() + 1)
-        if gmpy2.is_prime(body * last + 1, 30):
-            return body * last + 1, sorted([2, *factors, last])
+        last = prime(f"{label}/last {index}", bits - body.bit_length())
+        p = body * last + 1
+        if p.bit_length() == bits and gmpy2.is_prime(p, 30):
+            return p, sorted([2, *factors, last])
         index += 1
 
 
