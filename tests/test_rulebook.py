@@ -204,7 +204,7 @@ def test_sources(tmp_path, write):
     assert load("strength", VOCABULARY).path == "strength.yaml"
 
     assert "did you mean 'strength'" in problems("strenght")[0]
-    assert "shipped are group-structure" in problems("zzz")[0]
+    assert "shipped are " in problems("zzz")[0]
     assert "a path to a .yaml file" in problems(tmp_path / "book.txt")[0]
     assert "cannot be read" in problems(tmp_path / "none.yaml")[0]
     assert "cannot be read" in problems(tmp_path / "..yaml")[0]

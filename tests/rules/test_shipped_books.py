@@ -16,6 +16,7 @@ from tests.rules.mutations import mutants
 from tests.vocabulary_of_the_contract import VOCABULARY
 
 BOOKS = load_all(available(), VOCABULARY)
+CORE = load_all(("group-structure", "strength"), VOCABULARY)
 RULES = [rule for book in BOOKS for rule in book.rules]
 CATEGORIES_AND_DISCOURAGED = {310, 320, 1205, 20, 330, 345, 693}
 
@@ -148,7 +149,7 @@ UNUSED = dict.fromkeys(
 
 def judged(facts: dict[str, Fact], absent: dict[str, Absent] | None = None) -> Judgement:
     absent = {name: why for name, why in (UNUSED | (absent or {})).items() if name not in facts}
-    return judge(BOOKS[:2], facts, absent, VOCABULARY)
+    return judge(CORE, facts, absent, VOCABULARY)
 
 
 SIGNATURE = {"usage.purpose": Fact("signature", Standing.DECLARED)}
@@ -231,7 +232,7 @@ def test_nothing_asks_for_factors_where_nothing_depends_on_them():
     """With the order of the generator known and exponents used once, no search is in use."""
     facts = SAFE_PRIME_GROUP | AGREEMENT | proven(modulus__safe_prime=False)
 
-    assert facts_in_use(BOOKS[:2], facts, UNUSED, VOCABULARY) == ()
+    assert facts_in_use(CORE, facts, UNUSED, VOCABULARY) == ()
 
 
 def test_a_composite_modulus_asks_for_nothing_deep():
@@ -243,7 +244,7 @@ def test_a_composite_modulus_asks_for_nothing_deep():
         generator__unit=True,
         strength__required_bits=112,
     )
-    used = facts_in_use(BOOKS[:2], facts, UNUSED, VOCABULARY)
+    used = facts_in_use(CORE, facts, UNUSED, VOCABULARY)
 
     assert judged(facts).decided_by.rule == "modulus-composite"
     assert not [name for name in used if name.startswith(("group.", "exponent."))]
