@@ -3,6 +3,7 @@
 import re
 
 from auditor.data_files import data
+from auditor.facts import vocabulary
 from auditor.facts.base import FactType
 from auditor.rule_examples import failures
 from auditor.rulebook import load
@@ -24,6 +25,17 @@ def test_the_books_of_the_manual_work(tmp_path):
         assert failures(book, VOCABULARY) == ()
 
     assert names == ["house", "house-strength"]
+
+
+def test_facts_keep_the_kinds_of_the_contract():
+    """A fact that rules may name has the kind and the words that the contract gives it."""
+    real = vocabulary()
+    shared = sorted(real.keys() & VOCABULARY.keys())
+
+    assert len(shared) > 60
+    assert [(name, real[name].kind, real[name].values) for name in shared] == [
+        (name, VOCABULARY[name].kind, VOCABULARY[name].values) for name in shared
+    ]
 
 
 def test_the_table_has_a_place():

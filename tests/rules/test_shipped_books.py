@@ -11,10 +11,10 @@ from auditor.facts import vocabulary
 from auditor.facts.base import Absent, Fact
 from auditor.findings import Judgement, evaluate, facts_in_use, judge
 from auditor.rule_examples import failures, rule_failures
-from auditor.rulebook import available, load, load_all
+from auditor.rulebook import available, load_all
 from tests.rules.mutations import mutants
-from tests.vocabulary_of_the_contract import VOCABULARY
 
+VOCABULARY = vocabulary()
 BOOKS = load_all(available(), VOCABULARY)
 CORE = load_all(("group-structure", "strength"), VOCABULARY)
 RULES = [rule for book in BOOKS for rule in book.rules]
@@ -32,12 +32,6 @@ def rule_ids(rule) -> str:
 def test_examples_behave(book):
     """Every example of the book has the outcome it is listed for."""
     assert failures(book, VOCABULARY) == ()
-
-
-@pytest.mark.parametrize("name", available())
-def test_the_programs_own_vocabulary_carries_the_books(name):
-    """Each book loads over the facts that the program establishes, and its examples behave."""
-    assert failures(load(name, vocabulary()), vocabulary()) == ()
 
 
 def test_enough_rules():
