@@ -6,7 +6,7 @@ A kind that is not known here is written out member by member, so that no claim 
 from collections.abc import Callable, Mapping
 from typing import Any
 
-from auditor.report.words import plain_value, power
+from auditor.report.words import listed, plain_value, power
 
 Record = Mapping[str, Any]
 
@@ -107,10 +107,11 @@ def _run(run: Record) -> str:
 
 
 def _product(factors: list[list[Any]], rest: int | str) -> str:
-    parts = [power(prime, exponent) for prime, exponent in factors]
-    if rest != 1:
-        parts.append(f"{plain_value(rest)}, which is composite and not factored")
-    return " · ".join(parts) or "1"
+    known = listed([power(prime, exponent) for prime, exponent in factors], " · ")
+    if rest == 1:
+        return known or "1"
+    unknown = f"{plain_value(rest)}, which is composite and not factored"
+    return f"{known} · {unknown}" if known else unknown
 
 
 def _any_kind(statement: Record, certificate: Record) -> str:

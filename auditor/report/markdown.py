@@ -37,16 +37,13 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
     report = view(record)
     head, foot = "\n".join(_head(report)), "\n".join(_foot(report))
     room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
-    parts = [
-        head,
-        _fitted("set", _DECISIONS, report.sheets, _row, room.share(3)),
-        *_findings(report, room),
-        _fitted("question", "\n## Open questions\n\n", report.questions, _question, room),
-        _fitted("message", "\n## Not read\n\n", report.problems, _message, room),
-        _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room),
-        foot,
+    decisions = _fitted("set", _DECISIONS, report.sheets, _row, room.share(3))
+    after = [
+        _fitted("question", "\n## Open questions\n\n", report.questions, _question, room.share(6)),
+        _fitted("message", "\n## Not read\n\n", report.problems, _message, room.share(6)),
+        _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room.share(12)),
     ]
-    return "".join(part for part in parts if part)
+    return "".join([head, decisions, *_findings(report, room), *after, foot])
 
 
 _RESERVE = 600
@@ -207,9 +204,13 @@ def _number(number: Number) -> str:
 
 
 def _finding(sheet: Sheet, number: int) -> str:
+    """A finding with its criteria and remedies; an observation in one paragraph."""
     finding = sheet.findings[number - 1]
     heading = f"**{finding.words}:** {prose(finding.heading)} {prose(finding.statements[0])}"
-    lines = [f"\n{number}. {re.sub(' +', ' ', heading)}", ""]
+    lines = [f"\n{number}. {re.sub(' +', ' ', heading)}"]
+    if finding.grade == "observation":
+        return f"{lines[0]} ({', '.join(code(item.rule) for item in finding.criteria)})\n"
+    lines.append("")
     lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
     lines += [
         f"   - Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria
@@ -246,14 +247,14 @@ def _fitted(
 ) -> str:
     """A section with as many of its items as fit, and how many do not."""
     shown: list[str] = []
-    for item in items:
-        text = write(item)
-        if not room.take(text if shown else title + text):
+    fits = room.take(title) if items else False
+    for text in map(write, items) if fits else ():
+        if not room.take(text):
             break
         shown.append(text)
     left = len(items) - len(shown)
     note = f"\nLeft out for length: {plural(left, kind)}.\n" if left else ""
-    return (title if shown else "") + "".join(shown) + note
+    return (title if fits else "") + "".join(shown) + note
 
 
 def _foot(report: View) -> Iterator[str]:

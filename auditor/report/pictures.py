@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from typing import Any, Literal
 
 from auditor.report.strength_view import judged
-from auditor.report.words import plain_value, plural
+from auditor.report.words import listed, plain_value, plural
 from auditor.report.words import route as route_name
 
 Record = Mapping[str, Any]
@@ -166,15 +166,15 @@ def order_strip(
         return None
     pieces = _merged(pieces)
     segments = _laid_out(pieces)
-    known = " · ".join(_power(prime, exponent) for prime, exponent in sorted(factors.items()))
+    known = listed([_power(prime, exponent) for prime, exponent in sorted(factors.items())], " · ")
     text = f"{known} · a composite rest of {rest.bit_length()} bits" if rest > 1 else known
     parts = tuple(part for part in PARTS if any(s.part == part for s in segments))
-    listed = "; ".join(
-        f"{PART_MEANING[part]}: "
-        + ", ".join(f"{s.label} ({plural(s.bits, 'bit')})" for s in segments if s.part == part)
+    pieces_of = {
+        part: [f"{s.label} ({plural(s.bits, 'bit')})" for s in segments if s.part == part]
         for part in parts
-    )
-    return OrderStrip(segments, text, parts, f"Pieces by size in bits. {listed}.")
+    }
+    described = "; ".join(f"{PART_MEANING[part]}: {listed(pieces_of[part])}" for part in parts)
+    return OrderStrip(segments, text, parts, f"Pieces by size in bits. {described}.")
 
 
 def _pieces(prime: int, exponent: int, inside: int | None) -> list[tuple[Part, str, int]]:

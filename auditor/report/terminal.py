@@ -24,15 +24,17 @@ def render(
 ) -> str:
     """The summary: ``height`` lines of ``width`` columns, more only for the worst set's own.
 
-    As many sets as fit are shown, the worst first, and the line below counts the others.
+    As many sets as fit are shown, the worst first, and the line below counts the others. Where
+    not all fit with two lines of reasons, each has one, without its place.
     """
     report = view(record)
     head, foot = list(_head(report, width)), list(_foot(report, width))
     room = height - len(head) - len(foot) - 1
     body: list[str] = []
     shown = 0
+    most = 2 if 3 * len(report.sheets) <= room else 1
     for sheet in report.sheets:
-        lines = _sheet(sheet, width, colour)
+        lines = _sheet(sheet, width, most, colour)
         if body and len(body) + len(lines) > room:
             break
         body += lines
@@ -55,7 +57,7 @@ def _head(report: View, width: int) -> Iterator[str]:
         yield f"{'position':<{_LABEL}}{columns}  set"
 
 
-def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
+def _sheet(sheet: Sheet, width: int, most: int, colour: bool) -> list[str]:
     strength = sheet.strength
     figures = [
         str(strength.required),
@@ -67,11 +69,12 @@ def _sheet(sheet: Sheet, width: int, colour: bool) -> list[str]:
     row = " ".join(f"{figure:>8}" for figure in figures) + "  "
     more = len(sheet.places) - 1
     places = sheet.places[0] + (f" and {plural(more, 'more place')}" if more else "")
+    reason = f"{places}: {sheet.reason}" if most > 1 else sheet.reason
     return [
         _styled(f"{sheet.position:<{_LABEL}}", sheet.position, colour)
         + row
         + clipped(sheet.name, max(width - _LABEL - len(row), 8)),
-        *_entry("", f"{places}: {sheet.reason}", width),
+        *_entry("", reason, width, most),
     ]
 
 
@@ -90,11 +93,12 @@ def _listed(label: str, items: tuple[str, ...], width: int) -> Iterator[str]:
         yield from _entry(label, f"and {len(items) - _MOST_LISTED:,} more", width)
 
 
-def _entry(label: str, text: str, width: int) -> list[str]:
-    """A label and at most two lines of text beside it."""
+def _entry(label: str, text: str, width: int, most: int = 2) -> list[str]:
+    """A label and at most so many lines of text beside it."""
     room = width - _LABEL
-    first, *others = wrap(text, room) or [""]
-    lines = [first, *([clipped(" ".join(others), room)] if others else [])]
+    lines = wrap(text, room) or [""]
+    if len(lines) > most:
+        lines[most - 1 :] = [clipped(" ".join(lines[most - 1 :]), room)]
     return [f"{label if number == 0 else '':<{_LABEL}}{line}" for number, line in enumerate(lines)]
 
 

@@ -3,7 +3,7 @@
 One table for each closed list of words; a test holds them against the published schema.
 """
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from auditor.report.text import Number
@@ -138,12 +138,19 @@ def plain_value(value: Any) -> str:
         case str():
             return _number_or_text(value)
         case [[_, _], *_]:
-            return " · ".join(power(prime, exponent) for prime, exponent in value)
+            return listed([power(prime, exponent) for prime, exponent in value], " · ")
         case list():
-            return ", ".join(map(plain_value, value)) if value else "none"
+            return listed([plain_value(item) for item in value]) or "none"
         case Mapping():
             return ", ".join(f"{key} {plain_value(item)}" for key, item in value.items())
     return str(value)
+
+
+def listed(items: Sequence[str], between: str = ", ", most: int = 16) -> str:
+    """The items in one line; of very many the first, and how many more there are."""
+    if len(items) <= most:
+        return between.join(items)
+    return between.join([*items[:most], f"{len(items) - most:,} more"])
 
 
 def power(prime: int | str, exponent: int) -> str:

@@ -22,12 +22,12 @@ def test_it_fits_the_screen(name: str, width: int, height: int) -> None:
 
 def test_the_worst_is_on_the_screen_and_the_rest_is_counted() -> None:
     """Position, figures, place and reason of the worst; how many more there are."""
-    text = render(fixture("harbour"))
+    text = render(fixture("harbour"), height=20)
 
     assert re.search(r"^hold +112 +none +19 +19 +19  lock gate <demo>$", text, re.MULTILINE)
     assert re.search(r"^hold +112 +112 +≤ 110 +≤ 35 +≤ 35  crane telemetry$", text, re.MULTILINE)
-    assert "samples/cranes.yaml:12 and 1 more place" in text
-    assert "2 more sets, none of a worse position." in text
+    assert re.search("^ {14}A peer recovers the 224-bit static exponent", text, re.MULTILINE)
+    assert "3 more sets, none of a worse position." in text
     assert "hold 3   open 1   conditions 1   no objection 1" in text
 
 
@@ -37,6 +37,7 @@ def test_all_sets_are_shown_where_there_is_room() -> None:
     text = render(record, height=60)
 
     assert "more set" not in text
+    assert "samples/cranes.yaml:12 and 1 more place: A peer recovers" in " ".join(text.split())
     for item in record["parameter_sets"][:5]:
         assert item["name"][:10] in text
 
