@@ -30,6 +30,13 @@ _TEXTS = {
         "fips186-4-probable-primes", "fips186-4-provable-primes", "fips186-2",
         "pi-formula", "e-formula", "other",
     ),
+    "provenance.disagreement": (
+        "lengths not of this method", "counter beyond its limit", "seed too short",
+        "hash shorter than q", "q does not divide p - 1", "seed gives another q", "q not prime",
+        "p not prime", "counter gives another p", "an earlier counter gives a prime",
+        "no prime within the limit", "seed counts past its length", "digits give another modulus",
+    ),
+    "scheme.dsa_sizes": ("1024/160", "2048/224", "2048/256", "3072/256", "other"),
 }  # fmt: skip
 _BY_KIND: dict[FactKind, str] = {
     "bool": """
@@ -38,21 +45,25 @@ _BY_KIND: dict[FactKind, str] = {
         generator.unit generator.trivial generator.order_prime generator.order_even
         generator.generates_group generator.order_is_declared generator.canonical
         subgroup.declared subgroup.order_prime subgroup.divides_group
-        provenance.verified strength.sufficient""",
+        provenance.verified provenance.regenerated provenance.offset_least
+        scheme.forgery_seen scheme.message_symbol_leaks scheme.distinguisher_seen
+        strength.sufficient""",
     "int": """
         usage.exponent_width usage.message_length usage.protect_until run.year modulus.length
         modulus.occurrences modulus.smallest_factor_length_at_most
         group.unfactored_length_at_most group.searched_digits_at_least
         generator.order_length generator.largest_prime_length subgroup.order_length
         public_values.count public_values.out_of_range public_values.outside_subgroup
-        public_values.small_order strength.required_bits strength.standard_bits""",
+        public_values.small_order public_values.related public_values.plainly_visible
+        provenance.offset strength.required_bits strength.standard_bits""",
     "real": """
         group.order_bits group.exponent_bits group.missed_factor_risk_at_most
         generator.order_bits generator.index_bits subgroup.cofactor_bits
         exponent.public_leak_bits_at_least exponent.confinement_leak_bits_at_least
+        scheme.forgery_bits_at_most
         strength.work_bits_at_most strength.work_bits strength.designer_bits_at_most"""
     + " ".join(f" strength.{route}_bits_at_most" for route in ROUTES),
-    "exhibit": "group.cycles subgroup.small_factors_seen",
+    "exhibit": "group.cycles subgroup.small_factors_seen public_values.offending",
 }
 
 VOCABULARY: dict[str, FactType] = {

@@ -12,12 +12,14 @@ from auditor.facts import (  # noqa: F401  (imported to register their facts)
     modulus,
     provenance,
     public_values,
+    schemes,
     strength,
     subgroup,
     usage,
 )
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.facts.given import Given
+from auditor.facts.properties import Property, properties
 from auditor.facts.registry import establish as fact_of
 from auditor.facts.registry import registered
 from auditor.facts.work import all_open
@@ -32,13 +34,14 @@ def vocabulary() -> Mapping[str, FactType]:
 
 @dataclass(frozen=True, slots=True)
 class Established:
-    """What is known about one declaration: facts, absences, open routes, and the ids of all claims
-    that were consulted on the way."""
+    """What is known about one declaration: facts, absences, open routes, properties that are no
+    amount of work, and the ids of all claims that were consulted on the way."""
 
     declaration: Declaration
     facts: Mapping[str, Fact]
     absent: Mapping[str, Absent]
     routes: tuple[Work, ...]
+    properties: tuple[Property, ...]
     consulted: frozenset[str]
 
 
@@ -53,4 +56,5 @@ def establish(declaration: Declaration, claims: Claims, run: RunValues) -> Estab
             facts[name] = outcome
         else:
             absent[name] = outcome
-    return Established(declaration, facts, absent, all_open(given), frozenset(given.consulted))
+    routes, others = all_open(given), properties(given)
+    return Established(declaration, facts, absent, routes, others, frozenset(given.consulted))

@@ -7,9 +7,12 @@ divisor of A times an unknown divisor of C. What that already decides is final; 
 from math import gcd, log2
 
 from auditor.claims.base import product
-from auditor.facts import parts
+from auditor.claims.origin_generator import CanonicalGenerator
+from auditor.claims.origin_recipe import HASHES, PROBABLE, PROVABLE, seed_integer
+from auditor.facts import parts, provenance, subgroup
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
+from auditor.questions import Asks, Question
 from auditor.routes.base import floor_bits
 
 
@@ -91,7 +94,22 @@ def order_is_declared(given: Given) -> bool:
 
 @fact("generator.canonical", "bool", "g was regenerated from the declared seed and index")
 def canonical(given: Given) -> bool:
-    # Replay of seeds is not done yet: what is declared is not examined, and the fact is absent.
+    """FIPS 186-4, A.2.4; its inputs p and q are primes with q dividing p - 1. A method without an
+    index makes no canonical generator, so the index counts as undeclared there."""
+    n, g = given.declaration.modulus, given.declaration.generator
     if given.declaration.provenance is None:
         given.undeclared("provenance")
-    given.unsettled()
+    if given.declaration.provenance.method not in (PROBABLE, PROVABLE):
+        given.undeclared("provenance.generator_index")
+    (index,) = provenance.declared(given, "generator_index")
+    name, seed = given.see(provenance.hash_name), b"".join(given.see(provenance.seeds))
+    q = given.see(subgroup.declared_order)
+    if not (given.is_prime(n) and given.is_prime(q)) or (n - 1) % q or not 0 <= int(index) < 256:
+        given.undefined()
+    values = {"hash": name, "seed": seed, "index": int(index)}
+    claim = given.claims.about(CanonicalGenerator, n, q=q, g=g, **values)
+    if claim is None:
+        spelled = HASHES.index(name), seed_integer(seed), int(index)
+        given.unsettled(Question(Asks.CANONICAL_GENERATOR, (n, q, g, *spelled)))
+    given.cite(claim)
+    return claim.canonical

@@ -1,10 +1,23 @@
-"""Facts about declared public values: range and membership, never a logarithm."""
+"""Facts about declared public values: range, membership, relations; never a logarithm."""
 
+from collections import Counter
+from collections.abc import Callable
 from math import gcd
 
+from auditor.claims.public_values import (
+    LARGEST_EXPONENT,
+    SharedExponents,
+    VisibleExponents,
+)
+from auditor.encoding import shorten
 from auditor.facts import parts, subgroup
+from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
+from auditor.questions import Asks, Question
+
+LONGEST_STEPPED = 8192
+"""Bits of a modulus up to which all exponents to 2^16 are stepped through; 2^12 beyond."""
 
 
 def declared(given: Given) -> tuple[int, ...]:
@@ -19,6 +32,79 @@ def in_range(given: Given, y: int) -> bool:
     return 2 <= y <= given.declaration.modulus - 2
 
 
+def units(given: Given) -> tuple[int, ...]:
+    """The different values in range that are units, ascending."""
+    n = given.declaration.modulus
+    return tuple(sorted({y for y in given.see(declared) if in_range(given, y) and gcd(y, n) == 1}))
+
+
+def beyond_range(given: Given) -> frozenset[int]:
+    """Values outside [2, n-2]."""
+    return frozenset(y for y in given.see(declared) if not in_range(given, y))
+
+
+def outsiders(given: Given) -> frozenset[int]:
+    """Values y, in range, with y^q != 1."""
+    q = given.see(_subgroup_order)
+    values = {y for y in given.see(declared) if in_range(given, y)}
+    return frozenset(values - _members(given, values, q))
+
+
+def confined(given: Given) -> frozenset[int]:
+    """Values that are no unit, or whose order divides the cofactor."""
+    n, cofactor = given.declaration.modulus, given.see(_cofactor)
+    values = set(given.see(declared))
+    others = {y for y in values if gcd(y, n) != 1}
+    return frozenset(others | _members(given, values - others, cofactor))
+
+
+def _members(given: Given, values: set[int], exponent: int) -> set[int]:
+    """Those with y^exponent = 1; what is open about any of them is asked at once."""
+    n = given.declaration.modulus
+    asked = [
+        Question(Asks.MEMBERSHIP, (n, y % n, exponent))
+        for y in sorted(values)
+        if given.claims.membership(n, y % n, exponent) is None
+    ]
+    if asked:
+        given.unsettled(*asked)
+    return {y for y in sorted(values) if given.is_member(n, y % n, exponent)}
+
+
+def related_values(given: Given) -> frozenset[int]:
+    """Values that occur twice, and values equal to another up to an element whose order divides
+    the cofactor: their exponents agree modulo q."""
+    n, cofactor, values = given.declaration.modulus, given.see(_cofactor), given.see(units)
+    repeated = {y for y, times in Counter(given.see(declared)).items() if times > 1}
+    if len(values) < 2:
+        return frozenset(repeated)
+    claim = given.claims.about(SharedExponents, n, exponent=cofactor, values=values)
+    if claim is None:
+        given.unsettled(Question(Asks.SHARED_EXPONENTS, (n, cofactor, *values)))
+    given.cite(claim)
+    return frozenset(repeated.union(*claim.groups))
+
+
+def visible_values(given: Given) -> frozenset[int]:
+    """Values that are, up to sign, powers of g with small exponents of either sign."""
+    n, g, values = given.declaration.modulus, given.see(parts.element), given.see(units)
+    if g in (1, n - 1):
+        given.undefined()
+    if not values:
+        return frozenset()
+    limit = LARGEST_EXPONENT if n.bit_length() <= LONGEST_STEPPED else LARGEST_EXPONENT >> 4
+    claim = given.claims.about(VisibleExponents, n, g=g, limit=limit, values=values)
+    if claim is None:
+        given.unsettled(Question(Asks.VISIBLE_EXPONENTS, (n, g, limit, *values)))
+    given.cite(claim)
+    return frozenset(claim.visible)
+
+
+def _count(given: Given, offending: Callable[[Given], frozenset[int]]) -> int:
+    found = given.see(offending)
+    return sum(y in found for y in given.see(declared))
+
+
 @fact("public_values.count", "int", "how many public values are declared")
 def count(given: Given) -> int:
     return len(given.declaration.public_values)
@@ -26,14 +112,12 @@ def count(given: Given) -> int:
 
 @fact("public_values.out_of_range", "int", "public values outside [2, n-2]")
 def out_of_range(given: Given) -> int:
-    return sum(not in_range(given, y) for y in given.see(declared))
+    return _count(given, beyond_range)
 
 
 @fact("public_values.outside_subgroup", "int", "public values y, in range, with y^q != 1")
 def outside_subgroup(given: Given) -> int:
-    n, q = given.declaration.modulus, given.see(_subgroup_order)
-    values = [y for y in given.see(declared) if in_range(given, y)]
-    return sum(not given.is_member(n, y, q) for y in values)
+    return _count(given, outsiders)
 
 
 @fact(
@@ -42,13 +126,56 @@ def outside_subgroup(given: Given) -> int:
     "public values that are no unit, or whose order divides the cofactor or its known part",
 )
 def small_order(given: Given) -> int:
-    n, q = given.declaration.modulus, given.see(_subgroup_order)
-    order = given.see(parts.group_order)
-    if order % q:
-        given.undefined()
-    units = [y % n for y in given.see(declared) if gcd(y, n) == 1]
-    confined = sum(given.is_member(n, y, order // q) for y in units)
-    return len(given.see(declared)) - len(units) + confined
+    return _count(given, confined)
+
+
+@fact(
+    "public_values.related",
+    "int",
+    "public values that share their exponent modulo q with another one: equal to it, or up to an "
+    "element whose order divides the cofactor",
+)
+def related(given: Given) -> int:
+    return _count(given, related_values)
+
+
+@fact(
+    "public_values.plainly_visible",
+    "int",
+    "public values whose exponent anybody sees: up to sign g^k with k of either sign and at most "
+    "2^16 (2^12 for moduli beyond 8192 bits)",
+)
+def plainly_visible(given: Given) -> int:
+    return _count(given, visible_values)
+
+
+OFFENCES: tuple[tuple[str, Callable[[Given], frozenset[int]]], ...] = (
+    ("out of range", beyond_range),
+    ("outside the subgroup", outsiders),
+    ("of small order", confined),
+    ("sharing an exponent", related_values),
+    ("with a visible exponent", visible_values),
+)
+
+
+@fact(
+    "public_values.offending",
+    "exhibit",
+    "the public values counted above, by their place in the declaration, and why",
+)
+def offending(given: Given) -> list[str]:
+    reasons: dict[int, list[str]] = {}
+    for reason, part in OFFENCES:
+        outcome = given.peek(part)
+        if isinstance(outcome, Absent) and outcome.reason == "undefined":
+            continue
+        for y in given.see(part):
+            reasons.setdefault(y, []).append(reason)
+    return [
+        f"{place} ({shorten(y)}): {', '.join(reasons[y])}"
+        for place, y in enumerate(given.see(declared), start=1)
+        if y in reasons
+    ]
 
 
 def _subgroup_order(given: Given) -> int:
@@ -59,3 +186,11 @@ def _subgroup_order(given: Given) -> int:
     if q < 1:
         given.undefined()
     return q
+
+
+def _cofactor(given: Given) -> int:
+    """phi(n)/q; undefined where q does not divide it."""
+    q, order = given.see(_subgroup_order), given.see(parts.group_order)
+    if order % q:
+        given.undefined()
+    return order // q
