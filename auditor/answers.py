@@ -64,6 +64,11 @@ class Answers:
         self._keep = keep
         self._cores = cores
 
+    @property
+    def deep(self) -> bool:
+        """Whether the effort goes beyond what costs next to nothing."""
+        return self._run.effort != "quick" or self._run.factor_digits is not None
+
     def answer(self, question: Question) -> None:
         """Make the claims that the question calls for.
 

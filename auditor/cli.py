@@ -7,6 +7,8 @@ reader of standard output went away.
 
 import os
 import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
 from datetime import date
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -16,6 +18,7 @@ import click
 from auditor import __version__
 
 if TYPE_CHECKING:
+    from auditor.review import Surroundings
     from auditor.run_values import Effort, RunValues
 
 FAIL_ON = ("hold", "open", "conditions", "never")
@@ -83,30 +86,40 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
 
 
 def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]:
+    from auditor.review import DEFAULT_BOOKS
+    from auditor.review import review as review_inputs
+
+    with _surroundings(options) as surroundings:
+        return review_inputs(
+            paths,
+            _run_values(options),
+            surroundings,
+            books=options["rulebook"] or DEFAULT_BOOKS,
+            fail_on=options["fail_on"],
+            stdin=sys.stdin.buffer,
+        )
+
+
+@contextmanager
+def _surroundings(options: dict[str, Any]) -> "Iterator[Surroundings]":
+    """What a review needs from outside, for as long as it runs; books that cannot be used become a
+    usage error."""
     import secrets
 
     from auditor.answers import Cores
     from auditor.pool import LocalPool
     from auditor.progress import Progress, is_live
-    from auditor.review import DEFAULT_BOOKS, Surroundings
-    from auditor.review import review as review_inputs
+    from auditor.review import Surroundings
     from auditor.rulebook_types import RulebookError
 
     progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
     with LocalPool(options["jobs"]) as pool:
         try:
-            return review_inputs(
-                paths,
-                _run_values(options),
-                Surroundings(
-                    draw=secrets.randbelow,
-                    progress=progress,
-                    ledger=_ledger_path(options),
-                    cores=Cores(pool if pool.jobs > 1 else None, pool.jobs),
-                ),
-                books=options["rulebook"] or DEFAULT_BOOKS,
-                fail_on=options["fail_on"],
-                stdin=sys.stdin.buffer,
+            yield Surroundings(
+                draw=secrets.randbelow,
+                progress=progress,
+                ledger=_ledger_path(options),
+                cores=Cores(pool if pool.jobs > 1 else None, pool.jobs),
             )
         except RulebookError as error:
             raise click.ClickException(str(error)) from error
@@ -142,6 +155,49 @@ def _status(record: dict[str, Any], fail_on: str) -> int:
 
 
 @main.command()
+@click.argument("paths", nargs=-1, required=True)
+@click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
+@click.option("--effort", type=click.Choice(EFFORTS), default="standard", show_default=True)
+@click.option("--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search.")
+@click.option("--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today.")
+@click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
+@click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
+@click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+def ask(paths: tuple[str, ...], **options: Any) -> int:
+    """Show which answers, the owner's or of more search, would change a position, and how.
+
+    \b
+    auditor ask links.yaml
+    auditor ask configs/ --effort quick
+    """
+    from auditor.report.asking import render
+
+    asked, errors = _asked(paths, options)
+    click.echo(render(asked), nl=False)
+    for error in errors:
+        click.echo(str(error), err=True)
+    return 2 if errors or not asked else 0
+
+
+def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], list[Any]]:
+    from dataclasses import replace
+
+    from auditor.ask import ask as ask_about
+    from auditor.facts import vocabulary
+    from auditor.intake.tree import read_inputs
+    from auditor.review import DEFAULT_BOOKS, census, investigate
+    from auditor.rulebook import load_all
+
+    books = load_all(options["rulebook"] or DEFAULT_BOOKS, vocabulary())
+    read = read_inputs(paths, sys.stdin.buffer)
+    run = replace(_run_values(options), census=census(read.declarations))
+    with _surroundings(options) as surroundings:
+        claims, _ = investigate(read.declarations, run, books, surroundings)
+    asked = [ask_about(item, claims, run, books) for item in read.declarations]
+    return asked, list(read.errors)
+
+
+@main.command()
 @click.argument("report", type=click.Path(dir_okay=False))
 @click.option("--against", multiple=True, help="Check the inputs at this path too.")
 @click.option("--rulebook", multiple=True, help="A book of the report that is not shipped.")
@@ -167,6 +223,62 @@ def verify(report: str, against: tuple[str, ...], rulebook: tuple[str, ...]) -> 
     verdict = {0: "all holds", 1: "does not hold", 2: "cannot tell"}[result.status]
     click.echo(f"{verdict}: {result.claims} claims checked")
     return result.status
+
+
+@main.command()
+@click.argument("numbers", nargs=-1, required=True)
+@click.option("--of", "elements", multiple=True, help="An element whose order is wanted.")
+@click.option("--json", "as_json", is_flag=True, help="A record for programs.")
+@click.option("--effort", type=click.Choice(EFFORTS), default="standard", show_default=True)
+@click.option("--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search.")
+@click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+def structure(
+    numbers: tuple[str, ...], elements: tuple[str, ...], as_json: bool, **options: Any
+) -> int:
+    """Show the units modulo N: factors, cycles, orders, whether several groups are isomorphic.
+
+    Numbers are decimal or hexadecimal (0x…).
+
+    \b
+    auditor structure 3600 --of 7
+    auditor structure 15 16 20
+    auditor structure 0xffffffffffffffff --json
+    """
+    import json
+    import secrets
+
+    from auditor.answers import Answers, Cores
+    from auditor.claims.collection import Claims
+    from auditor.pool import LocalPool
+    from auditor.report.unit_group_text import classes_text, record, text
+    from auditor.unit_groups import isomorphic, order_of
+    from auditor.unit_groups import structure as structure_of
+
+    run = _run_values({**options, "as_of": None})
+    with LocalPool(options["jobs"]) as pool:
+        cores = Cores(pool if pool.jobs > 1 else None, pool.jobs)
+        answers = Answers(Claims(), run, secrets.randbelow, lambda claims: None, cores)
+        found = [structure_of(_number(number), answers) for number in numbers]
+    orders = [[order_of(_number(element), item) for element in elements] for item in found]
+    if as_json:
+        records = [record(item, listed) for item, listed in zip(found, orders, strict=True)]
+        click.echo(json.dumps(records, indent=2))
+    else:
+        click.echo(text(found, orders), nl=False)
+        if len(found) > 1:
+            click.echo(classes_text(isomorphic(found)), nl=False)
+    return 0
+
+
+def _number(word: str) -> int:
+    """A positive integer of at most 65,536 bits from the command line."""
+    try:
+        value = int(word.replace("_", ""), 16 if word.lower().startswith("0x") else 10)
+    except ValueError:
+        raise click.BadParameter(f"{word[:40]}: expected a decimal or 0x… integer") from None
+    if not 1 <= value < 1 << 65_536:
+        raise click.BadParameter(f"{word[:40]}: expected 1 to 2^65536 - 1")
+    return value
 
 
 @main.group()

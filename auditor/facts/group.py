@@ -19,18 +19,14 @@ FIRST_BITS = 20
 def cyclic(given: Given) -> bool:
     # Gauss, Disquisitiones arithmeticae, articles 82-92: n is 2, 4, p^k or 2 p^k, p an odd prime.
     n = given.declaration.modulus
-    kind = given.see(parts.nature)
-    if kind == "composite":
-        odd, twos = n, 0
-        while odd % 2 == 0:
-            odd, twos = odd // 2, twos + 1
-        if twos != 1:
-            given.settle()
-            return False
-        factors = given.see(parts.modulus_factors)
-        return len(factors) == 2
-    given.settle()
-    return kind != "power of two" or n == 4
+    if given.see(parts.nature) == "composite" and n % 4 != 2:
+        return False
+    return given.see(parts.units).cyclic
+
+
+@fact("group.cycles", "exhibit", "the invariant factors of the unit group, largest first")
+def cycles(given: Given) -> tuple[int, ...]:
+    return given.see(parts.units).invariant_factors
 
 
 @fact("group.order_bits", "real", "log2 of phi(n)")

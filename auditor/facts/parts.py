@@ -5,13 +5,14 @@ Number Theory", 1993, section 1.4 (from memory).
 """
 
 from dataclasses import dataclass
-from math import gcd, lcm
+from math import gcd
 
 import gmpy2
 
 from auditor.claims.base import Factors, product
 from auditor.facts.given import Given
 from auditor.questions import Asks, Question
+from auditor.structure import FactoredModulus
 
 
 def nature(given: Given) -> str:
@@ -52,21 +53,19 @@ def known_modulus_factors(given: Given) -> tuple[Factors, int]:
     return claim.factors, claim.rest
 
 
+def units(given: Given) -> FactoredModulus:
+    """The unit group, as far as the factorization of the modulus settles it."""
+    return FactoredModulus(given.see(modulus_factors))
+
+
 def group_order(given: Given) -> int:
     """phi(n), exactly."""
-    order = 1
-    for prime, exponent in given.see(modulus_factors):
-        order *= prime ** (exponent - 1) * (prime - 1)
-    return order
+    return given.see(units).order
 
 
 def group_exponent(given: Given) -> int:
     """lambda(n), exactly: the least t with a^t = 1 for every unit a."""
-    exponents = []
-    for prime, exponent in given.see(modulus_factors):
-        order = prime ** (exponent - 1) * (prime - 1)
-        exponents.append(order // 2 if prime == 2 and exponent >= 3 else order)
-    return lcm(*exponents)
+    return given.see(units).exponent
 
 
 def hints(given: Given) -> tuple[int, ...]:
