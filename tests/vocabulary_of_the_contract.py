@@ -63,7 +63,10 @@ _BY_KIND: dict[FactKind, str] = {
         scheme.forgery_bits_at_most
         strength.work_bits_at_most strength.work_bits strength.designer_bits_at_most"""
     + " ".join(f" strength.{route}_bits_at_most" for route in ROUTES),
-    "exhibit": "group.cycles subgroup.small_factors_seen public_values.offending",
+    "exhibit": """
+        group.cycles subgroup.small_factors_seen public_values.values_out_of_range
+        public_values.values_outside_subgroup public_values.values_of_small_order
+        public_values.values_related public_values.values_plainly_visible""",
 }
 
 VOCABULARY: dict[str, FactType] = {

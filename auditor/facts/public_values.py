@@ -9,9 +9,7 @@ from auditor.claims.public_values import (
     SharedExponents,
     VisibleExponents,
 )
-from auditor.encoding import shorten
 from auditor.facts import parts, subgroup
-from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
 from auditor.questions import Asks, Question
@@ -149,33 +147,17 @@ def plainly_visible(given: Given) -> int:
     return _count(given, visible_values)
 
 
-OFFENCES: tuple[tuple[str, Callable[[Given], frozenset[int]]], ...] = (
-    ("out of range", beyond_range),
-    ("outside the subgroup", outsiders),
-    ("of small order", confined),
-    ("sharing an exponent", related_values),
-    ("with a visible exponent", visible_values),
-)
+def _list(name: str, meaning: str, offending: Callable[[Given], frozenset[int]]) -> None:
+    @fact(f"public_values.{name}", "exhibit", f"the public values {meaning}")
+    def values(given: Given) -> list[int]:
+        return sorted(given.see(offending))
 
 
-@fact(
-    "public_values.offending",
-    "exhibit",
-    "the public values counted above, by their place in the declaration, and why",
-)
-def offending(given: Given) -> list[str]:
-    reasons: dict[int, list[str]] = {}
-    for reason, part in OFFENCES:
-        outcome = given.peek(part)
-        if isinstance(outcome, Absent) and outcome.reason == "undefined":
-            continue
-        for y in given.see(part):
-            reasons.setdefault(y, []).append(reason)
-    return [
-        f"{place} ({shorten(y)}): {', '.join(reasons[y])}"
-        for place, y in enumerate(given.see(declared), start=1)
-        if y in reasons
-    ]
+_list("values_out_of_range", "outside [2, n-2]", beyond_range)
+_list("values_outside_subgroup", "y, in range, with y^q != 1", outsiders)
+_list("values_of_small_order", "counted by public_values.small_order", confined)
+_list("values_related", "counted by public_values.related", related_values)
+_list("values_plainly_visible", "counted by public_values.plainly_visible", visible_values)
 
 
 def _subgroup_order(given: Given) -> int:
