@@ -12,7 +12,16 @@ from auditor.rulebook_types import GRADES
 from auditor.strict_yaml import load
 
 NUMBERS = range(1, 133)
-STANDARD_BOOKS = """bsi-tr-02102 fips186-dsa ikev2 sp800-56a ssh tls transition x942-cms""".split()
+STANDARD_BOOKS = (
+    "bsi-tr-02102",
+    "fips186-dsa",
+    "ikev2",
+    "sp800-56a",
+    "ssh",
+    "tls",
+    "transition",
+    "x942-cms",
+)
 KEYS_OF_REASON = {
     "not shown": {"because"},
     "needs a fact": {"because", "needs"},

@@ -38,7 +38,7 @@ def proven(values: dict[str, Any]) -> dict[str, Fact]:
 def judged(values: dict[str, Any], absent: dict[str, Absent] | None = None) -> Judgement:
     """All books on a set with these facts; routes and leaks that are not named are closed."""
     closed = [n for n in VOCABULARY if n.startswith(("strength.", "exponent.", "public_values."))]
-    absences = {name: UNDEFINED for name in closed} | (absent or {})
+    absences = dict.fromkeys(closed, UNDEFINED) | (absent or {})
     absences = {name: why for name, why in absences.items() if name not in values}
     return judge(BOOKS, proven(values), absences, VOCABULARY)
 
