@@ -24,13 +24,13 @@ GENERATOR = (mpz(-120), mpz(240))
 
 
 def parameter(number: int, b1: int, index: int) -> int:
-    """The parameter of the curve ``index`` for ``number`` at ``b1``: 63 bits of a hash, at least 6.
+    """The parameter of the curve ``index`` for ``number`` at ``b1``: 32 bits of a hash, at least 6.
 
     A search can thus be repeated, shared out and taken up again, and nobody who makes a number
     can choose it against curves drawn for all numbers.
     """
     text = f"elliptic curve {index} for {number:#x} with bound {b1}"
-    return 6 + (int.from_bytes(hashlib.sha256(text.encode()).digest()[:8], "big") >> 1)
+    return 6 + int.from_bytes(hashlib.sha256(text.encode()).digest()[:4], "big")
 
 
 @dataclass(frozen=True, slots=True)

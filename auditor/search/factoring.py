@@ -22,8 +22,6 @@ from auditor.search.trial import small_factors
 from auditor.search.work import Work
 
 __all__ = [
-    "Engine",
-    "Executor",
     "Factor",
     "SearchInterrupted",
     "SearchResult",
@@ -106,7 +104,7 @@ def search(
     """
     if m < 1:
         raise ValueError("only positive integers are factored")
-    run = _Search(m, plan, done or Work(), on_factor, progress)
+    run = _Search(m, plan.for_length(m.bit_length()), done or Work(), on_factor, progress)
     try:
         run.divide(known, "known")
         run.easy_methods()

@@ -115,6 +115,10 @@ class NormOne:
         """The inverse, which is the conjugate."""
         return point[0], -point[1]
 
+    def identity_coordinate(self) -> mpz:
+        """Half the trace of 1."""
+        return mpz(1)
+
     def coordinate(self, point: tuple[mpz, mpz]) -> mpz:
         """Half the trace."""
         return point[0]

@@ -41,6 +41,9 @@ class Group(Protocol[P]):
     def coordinate(self, point: P) -> mpz:
         """A residue modulo n that is the same for a point and its negative only."""
 
+    def identity_coordinate(self) -> mpz | None:
+        """The coordinate of the identity; None where it has none and sums to it raise Divisor."""
+
 
 @dataclass(frozen=True, slots=True)
 class Wheel:
@@ -126,7 +129,11 @@ def common_divisor(group: Group[P], point: P, b1: int, b2: int) -> mpz:
     roots = [group.coordinate(p) for p in _small_steps(group, point, plan)]
     giant = times(group, point, plan.d)
     steps = progression(group, times(group, giant, plan.first), giant, plan.multiples)
-    return gmpy2.gcd(_product([group.coordinate(p) for p in steps], roots, group.n), group.n)
+    values = [group.coordinate(p) for p in steps]
+    identity = group.identity_coordinate()
+    if identity is not None:  # the multiple 0 of d, for primes that are residues themselves
+        values.append(identity)
+    return gmpy2.gcd(_product(values, roots, group.n), group.n)
 
 
 def times(group: Group[P], point: P, scalar: int) -> P:

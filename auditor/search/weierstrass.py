@@ -51,6 +51,9 @@ class Weierstrass:
         """The inverse of a point."""
         return point[0], -point[1] % self.n
 
+    def identity_coordinate(self) -> None:
+        """None: the identity is the point at infinity."""
+
     def coordinate(self, point: Point) -> mpz:
         """X, which a point shares with its negative."""
         return point[0]

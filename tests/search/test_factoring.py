@@ -1,49 +1,89 @@
-"""The factor search: laws, independent oracles, determinism, interruption and loss of workers."""
+"""The factor search: laws, other libraries, and numbers made to be awkward."""
 
 from math import prod
 
+import flint
 import gmpy2
 import pytest
 import sympy
+from cypari import pari
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.search.factoring import search, split
-from auditor.search.plan import plan_for
+from auditor.search.factoring import Factor, search, split
+from auditor.search.plan import Plan, plan_for
+from tests.benchmarks.inputs import composite, prime, with_factor
 
 QUICK = plan_for("quick")
 STANDARD = plan_for("standard")
 
 
-@given(st.integers(1, 2**96))
-def test_small_numbers_are_factored_as_another_library_does(m: int) -> None:
-    """Against sympy's factorint."""
+@given(st.integers(1, 2**110))
+def test_small_numbers_are_factored_as_other_libraries_do(m: int) -> None:
+    """Against python-flint and PARI."""
     result = search(m, QUICK)
+    primes, exponents = pari.factor(m)
 
-    assert dict(result.pairs) == sympy.factorint(m) if m > 1 else result.pairs == ()
+    assert [(int(p), e) for p, e in flint.fmpz(m).factor()] == list(result.pairs)
+    assert list(zip(map(int, primes), map(int, exponents), strict=True)) == list(result.pairs)
     assert result.rest == 1
 
 
-@given(st.integers(1, 2**300))
-def test_the_parts_multiply_to_the_number(m: int) -> None:
+@given(st.lists(st.integers(2, 2**60), min_size=1, max_size=7), st.integers(1, 3))
+def test_the_parts_multiply_to_the_number(numbers: list[int], exponent: int) -> None:
     """Factors are likely prime, what is left is composite, and nothing is lost."""
+    m = prod(numbers) ** exponent
     result = search(m, QUICK)
 
-    assert prod(prime**exponent for prime, exponent in result.pairs) * result.rest == m
-    assert all(gmpy2.is_prime(prime) for prime, _ in result.pairs)
+    assert prod(p**e for p, e in result.pairs) * result.rest == m
+    assert all(gmpy2.is_prime(p) for p, _ in result.pairs)
     assert not any(gmpy2.is_prime(part) for part, _ in result.composites)
+    assert list(result.pairs) == sorted(result.pairs)
 
 
-def test_zero_is_refused() -> None:
-    """Only positive integers have a factorization."""
+@given(st.lists(st.integers(-5, 2**80), max_size=5), st.integers(1, 2**80))
+def test_known_divisors_help_and_others_do_no_harm(known: list[int], m: int) -> None:
+    """Whatever is said to be known, the factorization is that of the number."""
+    assert search(m, QUICK, known).pairs == search(m, QUICK).pairs
+
+
+@pytest.mark.parametrize("m", [0, -1])
+def test_only_positive_integers_are_factored(m: int) -> None:
+    """Zero and negative numbers are refused."""
     with pytest.raises(ValueError, match="positive"):
-        search(0, QUICK)
+        search(m, QUICK)
+
+
+def test_numbers_without_work() -> None:
+    """One, a prime, and a prime power need no method."""
+    p = 2**127 - 1
+
+    assert search(1, QUICK).factors == ()
+    assert search(p, QUICK).factors == (Factor(p, 1, "itself"),)
+    assert search(p**5, QUICK).factors == (Factor(p, 5, "itself"),)
+
+
+def test_a_power_of_a_composite_stays_together() -> None:
+    """The base is what is unfactored; its exponent is kept."""
+    base = composite(0, 512)
+    result = search(base**3, Plan(1000, 20))
+
+    assert result.composites == ((base, 3),)
+    assert result.rest == base**3
+
+
+def test_a_smooth_number_of_2048_bits() -> None:
+    """A hundred primes of twenty bits, then the same with primes beyond trial division."""
+    small = [prime(f"smooth {i}", 19) for i in range(107)]
+    larger = [prime(f"smooth {i}", 24) for i in range(40)]
+    for primes in (small, larger):
+        m = prod(primes)
+        assert dict(search(m, STANDARD).pairs) == {p: primes.count(p) for p in primes}
 
 
 def test_a_trapdoor_modulus_is_split_by_the_method_its_maker_had_in_mind() -> None:
-    """Both p-1 are 2^14-smooth: the case pm1 of the project's reference values."""
+    """Both p-1 are 2^14-smooth: made with PARI and gmpy2 for this test, factors stated there."""
     n = 0x626CB3DC708C74F7F155E6EAB3AEA85D048F669168EFD8C9DB85276CD7CC57F1C4D
-
     factors = split(n, STANDARD).factors
 
     assert {factor.prime for factor in factors} == {
@@ -51,3 +91,64 @@ def test_a_trapdoor_modulus_is_split_by_the_method_its_maker_had_in_mind() -> No
         372343236131169543340156773737015624579,
     }
     assert {factor.method for factor in factors} == {"p-1"}
+
+
+def test_a_trapdoor_at_full_size() -> None:
+    """2048 bits, p-1 a product of primes below 2^16, q-1 not: found by p-1 at quick effort."""
+    draw = iter(range(10**6))
+    smooth = 2
+    while smooth.bit_length() < 1000:
+        smooth *= sympy.nextprime(int(prime(f"trapdoor {next(draw)}", 16)))
+    p = next(k * smooth + 1 for k in range(1, 10**5) if gmpy2.is_prime(k * smooth + 1))
+    q = prime("the other factor", 1024)
+
+    found = {factor.prime: factor.method for factor in split(p * q, QUICK).factors}
+    assert found == {p: "p-1", q: "p-1"}
+
+
+def test_close_factors_are_found_by_fermat() -> None:
+    """Two consecutive primes of 1024 bits."""
+    p = prime("close", 1024)
+    q = int(gmpy2.next_prime(p))
+
+    assert split(p * q, QUICK).factors == (Factor(p, 1, "Fermat"), Factor(q, 1, "Fermat"))
+
+
+class Reported(Exception):
+    """The planted factor was reported."""
+
+
+@pytest.mark.parametrize("number", range(3))
+def test_planted_factors_of_forty_bits_are_found(number: int) -> None:
+    """A sample of those in tests/benchmarks/planted_factors.py, in composites of 2048 bits."""
+    planted = prime(f"forty bits {number}", 40)
+
+    def stop(factor: Factor) -> None:
+        assert factor.prime == planted
+        raise Reported
+
+    with pytest.raises(Reported):
+        search(with_factor(planted, number, 2008), STANDARD, on_factor=stop)
+
+
+def test_the_search_in_a_hard_composite_ends_with_nothing() -> None:
+    """Nothing found is what is said: no factor, all of it left, and the work that was done."""
+    n = composite(1, 512)
+    result = search(n, STANDARD)
+
+    assert result.factors == ()
+    assert result.composites == ((n, 1),)
+    assert result.work.trial_bound == STANDARD.trial_bound
+    assert result.work.p_minus_1 == STANDARD.p_minus_1
+    assert [done.count for done in result.work.curves] == [
+        level.curves for level in STANDARD.levels
+    ]
+
+
+def test_very_long_numbers_get_less_work_and_the_record_says_so() -> None:
+    """A plan for 16,384 bits does about a third."""
+    plan = STANDARD.for_length(16_384)
+
+    assert STANDARD.for_length(8_192) == STANDARD
+    assert 0.3 < plan.levels[0].curves / STANDARD.levels[0].curves < 0.35
+    assert 0.3 < plan.p_minus_1[0] / STANDARD.p_minus_1[0] < 0.35
