@@ -165,6 +165,7 @@ def test_laws_of_the_decomposition(parts: list[int]) -> None:
     assert prod(r**e for r, e in group.elementary_divisors) == group.order
     assert prod(r**e for r, e in group.exponent_factors) == group.exponent
     assert all(a % b == 0 for a, b in pairwise(chain))
+    assert all(cycle.order > 1 for cycle in group.cycles)
     assert group.exponent == (chain[0] if chain else 1)
     assert group.solutions(group.exponent) == group.order
 
@@ -174,9 +175,12 @@ def test_laws_of_the_decomposition(parts: list[int]) -> None:
 def test_primitive_roots_lift(p: int, g: int, k: int) -> None:
     """From p to p^k and 2 p^k, the exceptional pairs 14 mod 29 and 5 mod 40487 included."""
     lifted = lift_primitive_root(g, p, k)
+    doubled = double_primitive_root(lifted, p**k)
 
+    assert 0 < lifted < p**k
+    assert 0 < doubled < 2 * p**k
     assert group_modulo(p**k).is_primitive_root(lifted)
-    assert group_modulo(2 * p**k).is_primitive_root(double_primitive_root(lifted, p**k))
+    assert group_modulo(2 * p**k).is_primitive_root(doubled)
 
 
 def test_an_exceptional_root_does_not_lift_unchanged() -> None:
@@ -303,6 +307,14 @@ def test_nothing_is_said_of_an_unsplit_modulus_alone() -> None:
 
     assert isinstance(group, UnsplitGroup)
     assert not group.known_not_cyclic
+
+
+def test_two_even_orders_exclude_a_primitive_root() -> None:
+    """5 * 3 with 3 unfactored is known not to be cyclic, the least such case."""
+    group = known_structure({5: 1}, {5: {2: 2}}, unfactored=3)
+
+    assert isinstance(group, UnsplitGroup)
+    assert group.known_not_cyclic
 
 
 @pytest.mark.parametrize(

@@ -17,11 +17,14 @@ from gmpy2 import mpz, powmod
 
 from auditor.search.log_result import Logarithm, Tally
 from auditor.search.log_seed import drawn
-from auditor.search.log_steps import SCANNED, logarithm_in_interval
+from auditor.search.log_steps import logarithm_in_interval
 
 TAME, WILD = 0, 1
 
 JUMPS = 32
+
+NARROWEST = 128
+"""Narrower intervals are searched by steps: the jumps alone would cost more to prepare."""
 PATIENCE = 16
 """A pair of kangaroos that has made so many times the expected jumps is replaced."""
 
@@ -51,10 +54,11 @@ def kangaroo(
     Expected work 2 sqrt(width) operations, at most 4 percent more for the distinguished points.
     Exponents are reduced by ``order``, the order of g or a multiple of it, where that is given. A
     walk cannot tell that there is no such x: then OutOfBudget is raised, and without a budget in
-    ``tally`` the search would not end. Intervals of up to 128 exponents are tried one by one.
+    ``tally`` the search would not end. Intervals of less than 128 exponents are
+    searched by steps.
     """
     n, g, h, tally = mpz(n), mpz(g) % n, mpz(h) % n, tally or Tally()
-    if width <= SCANNED:
+    if width < NARROWEST:
         shifted = h * tally.power(g, -low, n) % n
         found = logarithm_in_interval(n, g, shifted, width, tally=tally)
         return Logarithm(low + found.value, 0, tally.operations)

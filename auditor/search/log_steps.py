@@ -1,5 +1,8 @@
 """Baby-step giant-step: an exponent in an interval, or the certainty that there is none.
 
+Few steps are kept as group elements in a dictionary, many as fingerprints, which cost a seventh
+of a multiplication at 2048 bits.
+
 Source: Shanks, "Class number, a theory of factorization, and genera" (1971); Menezes, van
 Oorschot, Vanstone, Handbook of Applied Cryptography (1996), algorithm 3.56 (both from memory).
 """
@@ -12,24 +15,45 @@ from math import isqrt
 from gmpy2 import invert, mpz
 
 from auditor.search.log_fingerprints import Row, prepare
-from auditor.search.log_result import Logarithm, Tally
+from auditor.search.log_result import Logarithm, NotFound, Tally
 
-SCANNED = 128
-"""Up to so many exponents are tried one by one: a table would cost more to make."""
+WIDEST_BY_ELEMENTS = 2**22
+"""Wider intervals repay the preparation of fingerprints, at 64 bits as at 2048."""
 
 WIDEST_ROW = 512
 """Elements prepared together: more gain nothing (181 ns an element at 512, 2048 bits)."""
 
 MOST_STEPS = 2**22
-"""Baby steps kept, unless said otherwise: about 300 MB, at 75 bytes each."""
+"""Baby steps kept, unless said otherwise: about 400 MB, at 100 bytes each."""
 
 
 @dataclass(frozen=True, slots=True)
-class Steps:
-    """The fingerprints of g^0 .. g^(count - 1) modulo n, and what the giant steps need.
+class FewSteps:
+    """g^0 .. g^(count - 1) modulo n themselves, each with its exponent, and g^-count."""
 
-    Usable for any number of logarithms to the same base; never changed after it is made.
-    """
+    n: mpz
+    count: int
+    exponents: dict[mpz, int]
+    back: mpz
+
+    def search(self, h: int, width: int, tally: Tally) -> Logarithm:
+        """The least x with h = g^x and 0 <= x < width; NotFound when there is none."""
+        element, n, back, exponents = mpz(h) % self.n, self.n, self.back, self.exponents
+        for giant in range(-(-width // self.count)):
+            if element in exponents:
+                x = giant * self.count + exponents[element]
+                tally.spend(giant)
+                if x < width:
+                    return Logarithm(x, 0, tally.operations)
+                raise _nothing(tally)
+            element = element * back % n
+        tally.spend(-(-width // self.count))
+        raise _nothing(tally)
+
+
+@dataclass(frozen=True, slots=True)
+class ManySteps:
+    """The fingerprints of g^0 .. g^(count - 1) modulo n, and what the giant steps need."""
 
     n: mpz
     g: mpz
@@ -39,6 +63,45 @@ class Steps:
     seen: frozenset[int]
     strides: Row
     leap: mpz
+
+    def search(self, h: int, width: int, tally: Tally) -> Logarithm:
+        """An x with h = g^x and 0 <= x < width; NotFound when there is none.
+
+        When nothing is found the search is made again with the fingerprints rounded at other
+        places, so that NotFound never rests on a rounding.
+        """
+        element = mpz(h) % self.n
+        found = self._search_once(element, width, tally)
+        if found is None:
+            again = _many_steps(self.n, self.g, self.count, not self.shifted, tally)
+            found = again._search_once(element, width, tally)
+        if found is None:
+            raise _nothing(tally)
+        return Logarithm(found, 0, tally.operations)
+
+    def _search_once(self, h: mpz, width: int, tally: Tally) -> int | None:
+        across = self.strides.width
+        blocks = -(-width // (self.count * across))
+        for block, u in enumerate(_geometric(h, self.leap, blocks, self.n, tally)):
+            tally.spend(across)
+            prints = self.strides.fingerprints(u)
+            if not self.seen.isdisjoint(prints):
+                for x in self._matches(prints, block * across):
+                    if x < width and tally.power(self.g, x, self.n) == h:
+                        return x
+        return None
+
+    def _matches(self, prints: tuple[int, ...], first: int) -> Iterator[int]:
+        """Exponents that the equal fingerprints point to, ascending."""
+        for giant, fingerprint in enumerate(prints, first):
+            if fingerprint in self.seen:
+                for baby, other in enumerate(self.sequence):
+                    if other == fingerprint:
+                        yield giant * self.count + baby
+
+
+Steps = FewSteps | ManySteps
+"""A table for logarithms to one base, usable any number of times and never changed."""
 
 
 def logarithm_in_interval(
@@ -52,101 +115,61 @@ def logarithm_in_interval(
 ) -> Logarithm:
     """The x with h = g^x and 0 <= x < width, for units g and h modulo n.
 
-    Work on average sqrt(2 width) operations and at most 1.5 times that; memory 75 bytes for each
-    of sqrt(width/2) steps. With the steps limited to ``most_steps`` = m the work is up to
-    m + width/m. NotFound is certain: every exponent in the interval has been excluded.
+    Work on average sqrt(2 width) operations and at most 1.5 times that. With the steps limited to
+    ``most_steps`` = m the work is up to m + width/m; memory is 100 bytes a step. NotFound is
+    certain: every exponent in the interval has been excluded. ValueError when g is no unit.
     """
     tally = tally or Tally()
-    if width <= SCANNED:
-        return _scan(mpz(n), mpz(g), mpz(h), width, tally)
     steps = baby_steps(n, g, width, most_steps=most_steps, tally=tally)
-    return giant_steps(steps, h, width, tally=tally)
+    return steps.search(h, width, tally)
 
 
 def baby_steps(
-    n: int,
-    g: int,
-    width: int,
-    *,
-    most_steps: int = MOST_STEPS,
-    shifted: bool = False,
-    tally: Tally | None = None,
+    n: int, g: int, width: int, *, most_steps: int = MOST_STEPS, tally: Tally | None = None
 ) -> Steps:
     """The table for logarithms to the base g in intervals of about ``width`` exponents.
 
-    ValueError when g is not a unit modulo n.
+    sqrt(width/2) steps, which makes the average work least. ValueError when g is no unit.
     """
-    n, g, tally = mpz(n), mpz(g) % n, tally or Tally()
+    modulus, tally = mpz(n), tally or Tally()
     count = max(1, min(isqrt(width // 2), most_steps))
-    across = max(1, min(isqrt(count), WIDEST_ROW))
+    if width <= WIDEST_BY_ELEMENTS:
+        return _few_steps(modulus, mpz(g) % modulus, count, tally)
+    return _many_steps(modulus, mpz(g) % modulus, count, False, tally)
+
+
+def _few_steps(n: mpz, g: mpz, count: int, tally: Tally) -> FewSteps:
+    tally.spend(count)
+    exponents: dict[mpz, int] = {}
+    element = mpz(1) % n
+    for x in range(count):
+        exponents.setdefault(element, x)
+        element = element * g % n
+    return FewSteps(n, count, exponents, _inverse(element, n))
+
+
+def _many_steps(n: mpz, g: mpz, count: int, shifted: bool, tally: Tally) -> ManySteps:
+    across = min(isqrt(count), WIDEST_ROW)
     count -= count % across
     row, leap = _powers(n, g, across, shifted, tally)
     sequence = array("Q")
     for u in _geometric(mpz(1), leap, count // across, n, tally):
         tally.spend(across)
         sequence.extend(row.fingerprints(u))
-    backwards = tally.power(_inverse(g, n), count, n)
-    strides, leap = _powers(n, backwards, across, shifted, tally)
-    return Steps(n, g, count, shifted, sequence, frozenset(sequence), strides, leap)
-
-
-def giant_steps(steps: Steps, h: int, width: int, *, tally: Tally | None = None) -> Logarithm:
-    """The x with h = g^x and 0 <= x < width, by the table ``steps`` for g.
-
-    When nothing is found the search is made again with the fingerprints rounded at other places,
-    so that NotFound never rests on a rounding.
-    """
-    tally = tally or Tally()
-    found = _search(steps, mpz(h) % steps.n, width, tally)
-    if found is None:
-        again = baby_steps(
-            steps.n, steps.g, 2 * steps.count**2, shifted=not steps.shifted, tally=tally
-        )
-        found = _search(again, mpz(h) % steps.n, width, tally)
-    if found is None:
-        raise tally.nothing("no exponent in the interval gives the element")
-    return Logarithm(found, 0, tally.operations)
-
-
-def _search(steps: Steps, h: mpz, width: int, tally: Tally) -> int | None:
-    across = steps.strides.width
-    blocks = -(-width // (steps.count * across))
-    for block, u in enumerate(_geometric(h, steps.leap, blocks, steps.n, tally)):
-        tally.spend(across)
-        prints = steps.strides.fingerprints(u)
-        if not steps.seen.isdisjoint(prints):
-            for x in _matches(steps, prints, block * across):
-                if x < width and tally.power(steps.g, x, steps.n) == h:
-                    return x
-    return None
-
-
-def _matches(steps: Steps, prints: tuple[int, ...], first: int) -> Iterator[int]:
-    """Exponents that the equal fingerprints point to, ascending."""
-    for giant, fingerprint in enumerate(prints, first):
-        if fingerprint in steps.seen:
-            for baby, other in enumerate(steps.sequence):
-                if other == fingerprint:
-                    yield giant * steps.count + baby
-
-
-def _scan(n: mpz, g: mpz, h: mpz, width: int, tally: Tally) -> Logarithm:
-    h %= n
-    for x, power in enumerate(_geometric(mpz(1) % n, g, width, n, tally)):
-        if power == h:
-            return Logarithm(x, 0, tally.operations)
-    raise tally.nothing("no exponent in the interval gives the element")
+    back = tally.power(_inverse(g, n), count, n)
+    strides, leap = _powers(n, back, across, shifted, tally)
+    return ManySteps(n, g, count, shifted, sequence, frozenset(sequence), strides, leap)
 
 
 def _powers(n: mpz, g: mpz, count: int, shifted: bool, tally: Tally) -> tuple[Row, mpz]:
     """A row of g^0 .. g^(count - 1), and g^count."""
-    *elements, leap = _geometric(mpz(1) % n, g, count + 1, n, tally)
+    *elements, leap = _geometric(mpz(1), g, count + 1, n, tally)
     return prepare(elements, n, shifted), leap
 
 
 def _geometric(first: mpz, ratio: mpz, count: int, n: mpz, tally: Tally) -> Iterator[mpz]:
     """``count`` elements, each ``ratio`` times the one before."""
-    element = first
+    element = first % n
     for index in range(count):
         if index:
             tally.spend(1)
@@ -159,3 +182,7 @@ def _inverse(g: mpz, n: mpz) -> mpz:
         return invert(g, n)
     except ZeroDivisionError as error:
         raise ValueError("the base is not a unit of the modulus") from error
+
+
+def _nothing(tally: Tally) -> NotFound:
+    return tally.nothing("no exponent in the interval gives the element")

@@ -24,13 +24,7 @@ from gmpy2 import invert, mpz
 from auditor.search.log_kangaroo import kangaroo
 from auditor.search.log_result import Logarithm, LogarithmError, NotFound, OutOfBudget, Tally
 from auditor.search.log_rho import rho
-from auditor.search.log_steps import (
-    SCANNED,
-    Steps,
-    baby_steps,
-    giant_steps,
-    logarithm_in_interval,
-)
+from auditor.search.log_steps import Steps, baby_steps, logarithm_in_interval
 
 __all__ = [
     "Logarithm",
@@ -99,8 +93,9 @@ def pohlig_hellman(
     if tally.power(h, order, n) != 1:
         raise tally.nothing("the element is not in the group of the base")
     known = Logarithm(0, 1, 0)
-    pair = tally.power(g, rest, n), tally.power(h, rest, n)
-    for q, e, base, element in _primary_parts(n, *pair, tuple(factors), tally):
+    if rest > 1:
+        g, h = tally.power(g, rest, n), tally.power(h, rest, n)
+    for q, e, base, element in _primary_parts(n, g, h, tuple(factors), tally):
         part = _prime_power_order(n, base, element, q, e, seed, executor, tally)
         known = combined(known, part)
     return Logarithm(known.value, known.modulus, tally.operations)
@@ -137,11 +132,14 @@ def finish_by_kangaroo(
     known: Logarithm,
     bound: int,
     *,
-    order: int = 0,
+    order: int,
     seed: int = 0,
     tally: Tally | None = None,
 ) -> Logarithm:
-    """The x below ``bound`` with h = g^x modulo n, when x is ``known`` modulo something."""
+    """The x below ``bound`` with h = g^x modulo n, when x is ``known`` modulo something.
+
+    ``order`` is that of g or a multiple of it. Raises as kangaroo does.
+    """
     tally = tally or Tally()
     z, x0 = known.modulus, known.value
     base = tally.power(g, z, mpz(n))
@@ -157,7 +155,7 @@ def _primary_parts(
 ) -> Iterator[tuple[int, int, mpz, mpz]]:
     """For each (q, e) the powers of g and h whose orders divide q^e, by halving the list."""
     if len(factors) == 1:
-        yield *factors[0], g, h
+        yield (*factors[0], g, h)
     elif factors:
         middle = len(factors) // 2
         for mine, others in (
@@ -179,33 +177,46 @@ def _prime_power_order(
     executor: Executor | None,
     tally: Tally,
 ) -> Logarithm:
-    """The logarithm of h to the base g, whose order divides q^e: one digit to the base q a time."""
-    chain = [g]
-    while chain[-1] != 1 and len(chain) <= e:
-        chain.append(tally.power(chain[-1], q, n))
-    digits = len(chain) - 1
-    if tally.power(h, q**digits, n) != 1:
+    """The logarithm of h to the base g, both of order dividing q^e: its digits to the base q."""
+    chain = _powers_of_q(n, g, q, e, tally)
+    digits = len(chain)
+    if digits < e and tally.power(h, q**digits, n) != 1:
         raise tally.nothing("the element is not in the group of the base")
-    steps = _table(n, chain, q, tally)
+    steps = baby_steps(n, chain[-1], q, tally=tally) if chain and q <= LARGEST_BY_STEPS else None
     value = 0
     for index in range(digits):
-        lower = h * tally.power(g, -value, n) % n
-        digit = tally.power(lower, q ** (digits - 1 - index), n)
-        if steps:
-            found = giant_steps(steps, digit, q, tally=tally)
-        else:
-            found = prime_order_logarithm(
-                n, chain[digits - 1], digit, q, seed=seed, executor=executor, tally=tally
-            )
-        value += found.value * q**index
+        digit = h * tally.power(g, -value, n) % n if value else h
+        if index < digits - 1:
+            digit = tally.power(digit, q ** (digits - 1 - index), n)
+        value += _digit(n, chain[-1], digit, q, steps, seed, executor, tally) * q**index
     return Logarithm(value, q**digits, 0)
 
 
-def _table(n: mpz, chain: list[mpz], q: int, tally: Tally) -> Steps | None:
-    """Baby steps for the digits, made once; None where a digit is found without a table."""
-    if len(chain) < 2 or not SCANNED < q <= LARGEST_BY_STEPS:
-        return None
-    return baby_steps(n, chain[-2], q, tally=tally)
+def _powers_of_q(n: mpz, g: mpz, q: int, e: int, tally: Tally) -> list[mpz]:
+    """g, g^q, g^(q^2), ... as long as they are not 1; the last has order q, as g^(q^e) is 1."""
+    chain = [g] if g != 1 % n else []
+    while chain and len(chain) < e:
+        power = tally.power(chain[-1], q, n)
+        if power == 1:
+            break
+        chain.append(power)
+    return chain
+
+
+def _digit(
+    n: mpz,
+    base: mpz,
+    element: mpz,
+    q: int,
+    steps: Steps | None,
+    seed: int,
+    executor: Executor | None,
+    tally: Tally,
+) -> int:
+    """The logarithm in the group of prime order q, by the table where there is one."""
+    if steps is not None:
+        return steps.search(element, q, tally).value
+    return rho(n, base, element, q, seed=seed, executor=executor, tally=tally).value
 
 
 def combined(one: Logarithm, other: Logarithm) -> Logarithm:

@@ -9,7 +9,7 @@ import pytest
 import sympy
 import yaml
 from cypari import pari
-from gmpy2 import next_prime
+from gmpy2 import mpz, next_prime
 from hypothesis import assume, given
 from hypothesis import strategies as st
 from sympy.ntheory.residue_ntheory import discrete_log, n_order
@@ -88,6 +88,8 @@ def test_a_wrong_order_is_refused() -> None:
     """When g^T is not 1 there is nothing to solve."""
     with pytest.raises(ValueError, match="order of the base"):
         pohlig_hellman(10007, 5, 25, [(5003, 1)])
+    with pytest.raises(ValueError, match="order of the base"):
+        pohlig_hellman(10007, 5, 25, [(2, 1)], rest=5)
 
 
 def test_large_prime_factors_go_to_rho(monkeypatch: pytest.MonkeyPatch) -> None:
@@ -112,6 +114,18 @@ def test_short_exponent_as_listed() -> None:
     assert (found.value, found.modulus) == (x, 0)
     assert 2**width // case["z"] + 1 == case["remaining_interval"]
     assert found.operations < 4 * case["expected_jumps"]
+
+
+@pytest.mark.parametrize(("exponent", "operations"), [(0, 0), (1, 0), (2, 1), (1024, 10), (15, 6)])
+def test_an_exponentiation_is_counted_as_the_binary_method_makes_it(
+    exponent: int, operations: int
+) -> None:
+    """A squaring for each bit after the first, a multiplication for each further one bit."""
+    tally = Tally()
+
+    assert tally.power(3, exponent, mpz(10007)) == pow(3, exponent, 10007)
+    assert tally.power(3, -exponent, mpz(10007)) == pow(3, -exponent, 10007)
+    assert tally.operations == 2 * operations
 
 
 def test_the_count_goes_on_through_all_steps() -> None:
