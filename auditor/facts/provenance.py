@@ -40,12 +40,11 @@ def method(given: Given) -> str:
 
 
 def replayable(given: Given) -> str:
-    """The declared method, where it is one that works from seeds; undefined for the others."""
-    if given.declaration.provenance is None:
-        given.undeclared("provenance")
-    if given.declaration.provenance.method not in SEEDS:
+    """The declared method, where it is one that works from seeds; undefined otherwise."""
+    provenance = given.declaration.provenance
+    if provenance is None or provenance.method not in SEEDS:
         given.undefined()
-    return given.declaration.provenance.method
+    return provenance.method
 
 
 def declared(given: Given, *keys: str) -> tuple[int | str, ...]:
@@ -105,8 +104,14 @@ def outcome(given: Given) -> Outcome:
     return claim.outcome
 
 
-@fact("provenance.regenerated", "bool", "the declared seeds and counters lead to p and q")
+@fact(
+    "provenance.regenerated",
+    "bool",
+    "the declared seeds and counters lead to p and q, or the declared digits to the modulus",
+)
 def regenerated(given: Given) -> bool:
+    if declared_constant(given) is not None:
+        return bool(given.see(declared_formula_holds))
     end = given.see(outcome)
     if end is Outcome.SEED_CARRY:
         # The standard does not say how such a seed counts on: there is nothing to compare with.
@@ -121,14 +126,14 @@ def regenerated(given: Given) -> bool:
     (*(end.value for end in Outcome if end is not Outcome.REGENERATED), OTHER_DIGITS),
 )
 def disagreement(given: Given) -> str:
-    if declared_constant(given) is not None:
-        if given.see(declared_formula_holds):
+    if declared_constant(given) is None:
+        end = given.see(outcome)
+        if end is Outcome.REGENERATED:
             given.undefined()
-        return OTHER_DIGITS
-    end = given.see(outcome)
-    if end is Outcome.REGENERATED:
+        return end.value
+    if given.see(declared_formula_holds):
         given.undefined()
-    return end.value
+    return OTHER_DIGITS
 
 
 def declared_constant(given: Given) -> Constant | None:
@@ -201,8 +206,6 @@ def verified(given: Given) -> bool:
         return True
     if given.declaration.provenance is None:
         given.undeclared("provenance")
-    if declared_constant(given) is not None:
-        return False
-    if given.declaration.provenance.method not in SEEDS:
+    if given.declaration.provenance.method == "other":
         given.undeclared("provenance.seed")
     return bool(given.see(regenerated))
