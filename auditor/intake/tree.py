@@ -1,67 +1,66 @@
 """From paths to declarations: files as given, directories walked in sorted order.
 
-A file that is named must be readable; in a directory, YAML and JSON files that do not call
-themselves declaration documents are passed over and listed as skipped.
+A file that is named must hold something that is read. In a directory every file is looked at;
+those that hold nothing are passed over in silence unless their name promises more. What is not
+looked at is named: links that leave the tree, what git ignores and does not track, files that are
+too large. Depth and number of files are bounded; beyond the bounds the rest is an error, because
+nobody knows what it holds.
 """
 
 import os
-import re
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from pathlib import Path, PurePath
 from typing import BinaryIO
 
 from auditor.declaration import Declaration
-from auditor.intake.document import DocumentResult, errors_of, is_document, parse, read_parsed
+from auditor.intake.candidates import passed_over
+from auditor.intake.document import DocumentResult
+from auditor.intake.ignored import ignored_below
 from auditor.intake.inputs import (
     InputError,
     InputFile,
     TooLarge,
     Unreadable,
-    decode,
     input_file,
     read_path,
     read_stream,
     reason,
 )
-from auditor.strict_yaml import YamlError
+from auditor.intake.readers import Candidate, claimed, read_file
+from auditor.intake.reading import Notice, Number, Passed, Reading
+from auditor.intake.usage_file import UsageFile, apply
 
 STANDARD_INPUT = "-"
-SUFFIXES = (".yaml", ".yml", ".json")
 NOT_WALKED = (".git", ".hg", ".svn")
-
-# A key of that name somewhere, and one that is certainly a key of the whole document.
-_MENTIONED = re.compile(rb"\bauditor[\"']?[ \t]*:")
-_AT_TOP = re.compile(rb"^(?:\xef\xbb\xbf)?[\"']?auditor[\"']?[ \t]*:", re.MULTILINE)
-
-
-@dataclass(frozen=True, slots=True)
-class Candidate:
-    """A file to look at: its path as given, the tree it may refer to, and whether it was named."""
-
-    path: str
-    root: Path | None
-    named: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Passed:
-    """A link that leaves the tree, which is not followed."""
-
-    path: str
-
+MAX_DEPTH = 64
+MAX_FILES = 200_000
 
 Found = Candidate | Passed | InputError
 
 
 @dataclass(frozen=True, slots=True)
 class InputResult:
-    """All that was read in one run; ``skipped`` are paths in directories that declare nothing."""
+    """All that was read in one run.
+
+    ``passed`` is what was seen and not reviewed, ``notices`` what to know about what is.
+    """
 
     declarations: tuple[Declaration, ...]
     errors: tuple[InputError, ...]
     inputs: tuple[InputFile, ...]
-    skipped: tuple[str, ...]
+    passed: tuple[Passed, ...] = ()
+    notices: tuple[Notice, ...] = ()
+
+    @property
+    def skipped(self) -> tuple[str, ...]:
+        """The paths that were passed over as a whole."""
+        return tuple(dict.fromkeys(item.path for item in self.passed if item.line is None))
+
+    @property
+    def recognised(self) -> int:
+        """The number of files from which a set was read; candidates that wait are none."""
+        return len({declaration.place.path for declaration in self.declarations})
 
 
 def collect(paths: Iterable[str], root: Path | None = None) -> Iterator[Found]:
@@ -90,14 +89,15 @@ def read_inputs(
     """The declarations in all files below ``paths``, and every reason why one was not read.
 
     ``-`` stands for ``stdin``. Errors are sorted by place; a set whose path and name together are
-    not unique in the run is an error, the first one stays.
+    not unique in the run is an error, the first one stays. Usage files apply to what was found in
+    the same run, and not to declaration documents, which say it themselves.
     """
     run = _Run(stdin)
     for item in collect(paths, root):
         if isinstance(item, InputError):
             run.errors.append(item)
         elif isinstance(item, Passed):
-            run.skipped.append(item.path)
+            run.passed.append(item)
         else:
             run.take(item)
     return run.result()
@@ -108,30 +108,43 @@ class _Run:
     """What has been read so far."""
 
     stdin: BinaryIO | None
-    declarations: dict[str, Declaration] = field(default_factory=dict)
+    declarations: list[Declaration] = field(default_factory=list)
+    documents: set[str] = field(default_factory=set)
+    candidates: list[Number] = field(default_factory=list)
+    usages: list[UsageFile] = field(default_factory=list)
     errors: list[InputError] = field(default_factory=list)
     inputs: set[InputFile] = field(default_factory=set)
-    skipped: list[str] = field(default_factory=list)
+    passed: list[Passed] = field(default_factory=list)
+    notices: list[Notice] = field(default_factory=list)
 
     def take(self, candidate: Candidate) -> None:
-        """Read one file and keep what it declares, or why it does not."""
+        """Read one file and keep what it holds, or why it does not."""
         data = None
         try:
             data = self.bytes_of(candidate)
-            result = _read(candidate, data)
+            found = read_file(candidate, data)
+        except TooLarge as error:
+            found = _failure(candidate, error, claimed(candidate, error.start))
         except Unreadable as error:
-            unclaimed = isinstance(error, TooLarge) and not _claimed(candidate, error.start)
-            failure = InputError(candidate.path, 1, 1, str(error))
-            result = None if unclaimed else DocumentResult((), (failure,))
-        if result is None:
-            self.skipped.append(candidate.path)
-            return
-        if data is not None:
+            found = _failure(candidate, error, is_error=True)
+        self.errors += found.errors
+        if isinstance(found, UsageFile):
+            self.usages.append(found)
+        elif isinstance(found, DocumentResult):
+            self.documents.add(candidate.path)
+            self.declarations += found.declarations
+            self.inputs.update(found.files)
+        else:
+            self.add(found)
+        if data is not None and not _holds_nothing(found):
             self.inputs.add(input_file(candidate.path, data))
-        self.inputs.update(result.files)
-        self.errors += result.errors
-        for declaration in result.declarations:
-            self.keep(declaration)
+
+    def add(self, found: Reading) -> None:
+        """Keep what a file other than a document holds."""
+        self.declarations += found.declarations
+        self.candidates += found.candidates
+        self.passed += found.passed
+        self.notices += found.notices
 
     def bytes_of(self, candidate: Candidate) -> bytes:
         if candidate.path == STANDARD_INPUT:
@@ -142,36 +155,56 @@ class _Run:
             return read_path(Path(candidate.path))
         return read_path(Path(os.path.realpath(candidate.path)), regular=True)
 
-    def keep(self, declaration: Declaration) -> None:
-        if self.declarations.setdefault(declaration.identity, declaration) is not declaration:
-            place = declaration.place
-            message = f"another set is called {declaration.identity} already"
-            self.errors.append(InputError(place.path, place.line, place.column, message))
-
     def result(self) -> InputResult:
+        """The sets with their use in input order, those made of candidates last."""
+        stated = [item.place.path in self.documents for item in self.declarations]
+        found = [item for item, own in zip(self.declarations, stated, strict=True) if not own]
+        applied = apply(self.usages, found, self.candidates)
+        with_use = iter(applied.declarations)
+        in_order = [
+            item if own else next(with_use)
+            for item, own in zip(self.declarations, stated, strict=True)
+        ]
+        declarations = self.unique([*in_order, *with_use])
         return InputResult(
-            tuple(self.declarations.values()),
-            tuple(sorted(self.errors)),
+            declarations,
+            tuple(sorted([*self.errors, *applied.errors])),
             tuple(sorted(self.inputs)),
-            tuple(self.skipped),
+            (*self.passed, *self.waiting(declarations), *applied.passed),
+            (*self.notices, *applied.notices),
         )
 
+    def unique(self, declarations: Iterable[Declaration]) -> tuple[Declaration, ...]:
+        """The sets by identity; a second one of the same is an error."""
+        kept: dict[str, Declaration] = {}
+        for declaration in declarations:
+            if kept.setdefault(declaration.identity, declaration) is not declaration:
+                place = declaration.place
+                message = f"another set is called {declaration.identity} already"
+                self.errors.append(InputError(place.path, place.line, place.column, message))
+        return tuple(kept.values())
 
-def _read(candidate: Candidate, data: bytes) -> DocumentResult | None:
-    """The document in ``data``; None for a file of a directory that does not claim to be one."""
-    if not candidate.named and not _MENTIONED.search(data):
-        return None
-    claimed = _claimed(candidate, data)
-    text = decode(candidate.path, data)
-    if isinstance(text, InputError):
-        return DocumentResult((), (text,)) if claimed else None
-    try:
-        loaded = parse(text)
-    except YamlError as error:
-        return DocumentResult((), errors_of(candidate.path, error.problems)) if claimed else None
-    if is_document(loaded) or candidate.named:
-        return read_parsed(loaded, candidate.path, candidate.root)
-    return None
+    def waiting(self, declarations: Iterable[Declaration]) -> Iterator[Passed]:
+        """The candidates that no set of the same file is made of."""
+        known: dict[str, set[int]] = {}
+        for declaration in declarations:
+            known.setdefault(declaration.place.path, set()).add(declaration.modulus)
+        by_path: dict[str, list[Number]] = {}
+        for number in self.candidates:
+            by_path.setdefault(number.path, []).append(number)
+        for path, numbers in by_path.items():
+            yield from passed_over(numbers, known.get(path, set()))
+
+
+def _holds_nothing(found: Reading | DocumentResult | UsageFile) -> bool:
+    """Whether a file was passed over as a whole."""
+    return isinstance(found, Reading) and found.nothing
+
+
+def _failure(candidate: Candidate, error: Unreadable, is_error: bool) -> Reading:
+    if is_error:
+        return Reading(errors=(InputError(candidate.path, 1, 1, str(error)),))
+    return Reading(passed=(Passed(candidate.path, str(error)),))
 
 
 def _is_text(path: str) -> bool:
@@ -184,10 +217,6 @@ def _is_text(path: str) -> bool:
 
 def _identity(path: str) -> str:
     return path if path == STANDARD_INPUT else os.path.realpath(path)
-
-
-def _claimed(candidate: Candidate, data: bytes) -> bool:
-    return candidate.named or bool(_AT_TOP.search(data))
 
 
 def _below(path: str, root: Path | None) -> Iterator[Found]:
@@ -214,14 +243,40 @@ def _walk(top: str, root: Path) -> Iterator[Found]:
         path = PurePath(error.filename or top).as_posix()
         problems.append(InputError(path, 1, 1, f"the directory {reason(error)}"))
 
+    ignored: set[PurePath] = set()
+    files = 0
     for directory, inner, names in os.walk(top, onerror=note):
-        inner[:] = sorted(name for name in inner if name not in NOT_WALKED)
+        here = PurePath(directory)
+        if directory == top or ".git" in (*inner, *names):
+            ignored.update(here / path for path in ignored_below(directory))
         yield from problems
         problems.clear()
-        for name in sorted((*inner, *names)):
-            path = PurePath(directory, name)
-            if _leads_out(path, root):
-                yield Passed(path.as_posix())
-            elif name in names and path.suffix.lower() in SUFFIXES:
-                yield Candidate(path.as_posix(), root, named=False)
+        for name in sorted({*inner, *names} - {*NOT_WALKED}):
+            found = _entry(here / name, root, here / name in ignored, name in names)
+            files += isinstance(found, Candidate)
+            if files > MAX_FILES:
+                message = f"more than {MAX_FILES} files; those from {name!r} on were not looked at"
+                yield InputError(here.as_posix(), 1, 1, message)
+                return
+            if found is not None:
+                yield found
+        inner[:] = sorted(n for n in inner if n not in NOT_WALKED and here / n not in ignored)
+        if inner and len(here.parts) - len(PurePath(top).parts) >= MAX_DEPTH:
+            message = f"more than {MAX_DEPTH} levels deep; what is below was not looked at"
+            yield InputError(here.as_posix(), 1, 1, message)
+            inner.clear()
     yield from problems
+
+
+def _entry(path: PurePath, root: Path, ignored: bool, is_file: bool) -> Candidate | Passed | None:
+    """One name in a directory: a file to look at, or why not; None for a directory to walk."""
+    if _leads_out(path, root):
+        return Passed(path.as_posix())
+    if ignored:
+        return Passed(path.as_posix(), "untracked, and ignored by git")
+    if not is_file:
+        return None
+    candidate = Candidate(path.as_posix(), root, named=False)
+    if candidate.promising or os.path.isfile(path):
+        return candidate
+    return Passed(path.as_posix(), "not a regular file, or a link that leads nowhere")

@@ -1,0 +1,161 @@
+"""Big integers in programs and configuration that may belong to a group: candidates.
+
+Read are arrays of bytes as C and its relatives write them, and hexadecimal text in assignments,
+where the name says modulus, prime, generator or subgroup order. A name is no proof: the same words
+serve RSA, elliptic curves and test data, and a false alarm about those would cost more than a
+candidate that waits. So no candidate is reviewed until a usage file names it; until then each
+modulus is listed as passed over, with the names that such a file would use.
+"""
+
+import re
+from bisect import bisect_right
+from collections.abc import Container, Iterable, Iterator
+
+from auditor.intake.reading import Number, Passed, Reading, Role
+from auditor.intake.standard_groups import match
+from auditor.schema_check import quoted
+
+LEAST_BITS = 512
+MAX_BITS = 65_536
+MAX_CANDIDATES = 1_000
+
+_BYTE = r"0[xX][0-9a-fA-F]{1,2}"
+_NAME = r"(?<![\w.\-])(?P<name>[A-Za-z_][\w.\-]{0,80})"
+_ARRAY = re.compile(
+    rf"{_NAME}[ \t]*(?:\[[^\]\n]{{0,60}}\][ \t]*)?(?::[^=\n]{{1,60}})?:?=[^=;{{}}\n]{{0,60}}?"
+    rf"[{{\[]\s*(?P<digits>{_BYTE}(?:\s*,\s*{_BYTE})*)\s*,?\s*[}}\]]"
+)
+_MARKED = re.compile(
+    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[^=;\n0]{{0,40}}?0[xX](?P<digits>[0-9a-fA-F]+)"
+)
+_BARE = re.compile(rf"{_NAME}[ \t]*[:=][ \t]*(?P<digits>[0-9a-fA-F]{{128,}})(?![\w:])")
+_TEXT = re.compile(
+    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[ \t]*(?:[\w.]{{1,40}}\([ \t\r\n]*){{0,3}}"
+    r"(?:\([ \t\r\n]*)?(?P<digits>\"[0-9a-fA-F:\s]+\"(?:[\s+.\\]{1,80}\"[0-9a-fA-F:\s]+\")*)"
+)
+_COLONS = re.compile(
+    rf"{_NAME}[\"']?[ \t]*[:=][ \t]*(?:[|>][ \t]*)?\r?\n?[ \t]*"
+    r"(?P<digits>[0-9a-fA-F]{2}(?::\s{0,200}[0-9a-fA-F]{2})+)"
+)
+_LONG_DIGITS = (
+    re.compile(r"[0-9a-fA-F]{32}"),
+    re.compile(rf"(?:{_BYTE}\s*,\s*){{16}}"),
+    re.compile(r"(?:[0-9a-fA-F]{2}:\s*){16}"),
+)
+_WORDS = ("modul", "prime", "dh", "dsa", "modp", "elgamal", "schnorr", "hellman")
+_BLOCK_COMMENT, _LINE_COMMENT = re.compile(r"/\*.*?\*/", re.DOTALL), re.compile(r"//[^\n]*")
+_CAST = re.compile(r"\(\s*(?:unsigned\s+)?(?:byte|char|uint8_t|u8)\s*\)")
+
+_MODULUS = frozenset({"modulus", "prime", "modulo"})
+_GENERATOR = frozenset({"generator", "base"})
+_GROUP = re.compile(r"dh|dsa|modp|elgamal|group|schnorr|hellman", re.IGNORECASE)
+_LETTERS: dict[str, Role] = {"p": "modulus", "g": "generator", "q": "subgroup order"}
+
+
+def read_candidates(text: str, path: str) -> Reading:
+    """The candidates of ``text``, at most 1,000, in text order."""
+    if not _worth_a_look(text):
+        return Reading()
+    plain = _without_comments(text)
+    found: dict[int, Number] = {}
+    starts = [0, *(end.end() for end in re.finditer("\n", plain))]
+    for form, read in _FORMS:
+        for assignment in form.finditer(plain):
+            role = role_of(assignment["name"])
+            value = None if role is None else read(assignment["digits"])
+            if role is None or value is None:
+                continue
+            if role != "modulus" or value.bit_length() >= LEAST_BITS:
+                at = assignment.start()
+                line = bisect_right(starts, at)
+                column = at - starts[line - 1] + 1
+                number = Number(role, assignment["name"], value, path, line, column)
+                found.setdefault(at, number)
+    in_order = [number for _, number in sorted(found.items())]
+    return Reading(candidates=tuple(in_order[:MAX_CANDIDATES]))
+
+
+def _worth_a_look(text: str) -> bool:
+    """A quick look that spares most files the rest."""
+    lower = text.lower()
+    return any(word in lower for word in _WORDS) and any(
+        digits.search(text) for digits in _LONG_DIGITS
+    )
+
+
+def _without_comments(text: str) -> str:
+    """``text`` with blanks for comments and casts, every character at its place.
+
+    A comment that is never closed is none: other languages write /* for other things.
+    """
+    last = text.rfind("*/") + 2
+    closed = _BLOCK_COMMENT.sub(_blanks, text[:last]) if last > 1 else ""
+    return _CAST.sub(_blanks, _LINE_COMMENT.sub(_blanks, closed + text[len(closed) :]))
+
+
+def role_of(name: str) -> Role | None:
+    """What the name says that a number is; None where it says nothing of a group."""
+    words = re.sub(r"(?<=[a-z0-9])(?=[A-Z])|[^A-Za-z]+", " ", name).lower().split()
+    if "rsa" in words or any(word.startswith("rsa") for word in words):
+        return None
+    if _MODULUS & {*words}:
+        return "modulus"
+    if "generator" in words or (_GENERATOR & {*words} and _GROUP.search(name)):
+        return "generator"
+    if "order" in words and "subgroup" in words:
+        return "subgroup order"
+    return _LETTERS.get(words[-1]) if words and _GROUP.search(name) else None
+
+
+def passed_over(numbers: Iterable[Number], known: Container[int]) -> Iterator[Passed]:
+    """Each modulus among the candidates of one file that is not among the ``known`` ones."""
+    numbers = list(numbers)
+    generators = [number for number in numbers if number.role == "generator"]
+    for number in numbers:
+        if number.role != "modulus" or number.value in known:
+            continue
+        beside = next((g.name for g in generators if _stem(g.name) == _stem(number.name)), None)
+        generator = "an integer" if beside is None else beside
+        group = match(number.value, 2).name
+        equal = f", the modulus of {group}" if group != "none" else ""
+        yield Passed(
+            number.path,
+            f"candidate {quoted(number.name)}: {number.value.bit_length()} bits{equal}; not "
+            f"reviewed unless a usage file names it (modulus: {number.name}, "
+            f"generator: {generator})",
+            number.line,
+        )
+
+
+def _stem(name: str) -> str:
+    """The name without what tells modulus and generator apart."""
+    words = re.sub(r"(?<=[a-z0-9])(?=[A-Z])|[^A-Za-z0-9]+", " ", name).lower().split()
+    return " ".join(w for w in words if w not in {*_MODULUS, *_GENERATOR, "p", "g"})
+
+
+def _blanks(found: re.Match[str]) -> str:
+    """As many characters, and the same line ends."""
+    return re.sub(r"[^\n]", " ", found[0])
+
+
+def _bytes(text: str) -> int | None:
+    digits = "".join(byte[2:].zfill(2) for byte in re.findall(_BYTE, text))
+    return _bounded(digits)
+
+
+def _digits(text: str) -> int | None:
+    return _bounded(re.sub(r"[^0-9a-fA-F]", "", text))
+
+
+def _bounded(digits: str) -> int | None:
+    digits = digits.lstrip("0")
+    return int(digits or "0", 16) if 4 * len(digits) <= MAX_BITS else None
+
+
+_FORMS = (
+    (_ARRAY, _bytes),
+    (_MARKED, _digits),
+    (_BARE, _digits),
+    (_TEXT, _digits),
+    (_COLONS, _digits),
+)

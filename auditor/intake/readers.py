@@ -1,0 +1,145 @@
+"""Which reader a file is for: by what it holds, and by its name only where that is all there is."""
+
+import re
+from dataclasses import dataclass
+from pathlib import Path, PurePath
+
+from auditor.intake.candidates import read_candidates
+from auditor.intake.document import (
+    DocumentResult,
+    errors_of,
+    is_document,
+    parse,
+    read_parsed,
+)
+from auditor.intake.encoded import read_der, read_pem
+from auditor.intake.inputs import InputError, decode
+from auditor.intake.moduli import is_moduli, read_moduli
+from auditor.intake.names import read_names
+from auditor.intake.reading import Passed, Reading, joined
+from auditor.intake.usage_file import UsageFile, is_usage_file, read_usage
+from auditor.strict_yaml import YamlError
+
+DOCUMENT_SUFFIXES = (".yaml", ".yml", ".json")
+DER_SUFFIXES = (".der", ".cer", ".crt", ".p8", ".pk8", ".csr", ".p10")
+PROSE_SUFFIXES = (".md", ".rst", ".adoc", ".html", ".htm", ".tex", ".pod")
+"""Where a PEM block is a block, but a name or a number is an example."""
+
+NOTHING = (
+    "found nothing that is read; expected a declaration document, a usage file, parameters, keys "
+    "or certificates in PEM or DER, a moduli file, or configuration that names a group"
+)
+
+# A key of that name somewhere, and one that is certainly a key of the whole document.
+_MENTIONED = re.compile(rb"\bauditor(?:-usage)?[\"']?[ \t]*:")
+_AT_TOP = re.compile(rb"^(?:\xef\xbb\xbf)?[\"']?auditor(?:-usage)?[\"']?[ \t]*:", re.MULTILINE)
+_OF_OURS = re.compile(
+    rb"^(?:\{[ \t\r\n]*)?[\"']?(?:rulebook|report)[\"']?[ \t]*:[ \t]*1\b", re.MULTILINE
+)
+
+_Document = DocumentResult | UsageFile
+
+
+@dataclass(frozen=True, slots=True)
+class Candidate:
+    """A file to look at: its path as given, the tree it may refer to, and whether it was named."""
+
+    path: str
+    root: Path | None
+    named: bool
+
+    @property
+    def suffix(self) -> str:
+        """The suffix of its name, in lower case."""
+        return PurePath(self.path).suffix.lower()
+
+    @property
+    def promising(self) -> bool:
+        """Whether it is named, or called like a file that is read: then it has to be readable."""
+        return self.named or self.suffix in (*DOCUMENT_SUFFIXES, *DER_SUFFIXES, ".pem")
+
+    @property
+    def may_be_document(self) -> bool:
+        return self.named or self.suffix in DOCUMENT_SUFFIXES
+
+
+def claimed(candidate: Candidate, data: bytes) -> bool:
+    """Whether a file says that it is a document of ours: then what is wrong in it is an error."""
+    return candidate.named or (candidate.may_be_document and bool(_AT_TOP.search(data)))
+
+
+def read_file(candidate: Candidate, data: bytes) -> Reading | _Document:
+    """What the file holds; an empty reading for a file of a directory that holds nothing."""
+    if candidate.may_be_document and _MENTIONED.search(data):
+        document = _document(candidate, data, claims=bool(_AT_TOP.search(data)))
+        if document is not None:
+            return document
+    if candidate.suffix in DOCUMENT_SUFFIXES and not candidate.named and _OF_OURS.search(data):
+        return Reading(passed=(Passed(candidate.path, "a rulebook or a report"),))
+    reading = _encoded(candidate, data) or _text(candidate, data)
+    if not reading.empty:
+        return reading
+    if candidate.suffix in DOCUMENT_SUFFIXES:
+        passed = Reading(passed=(Passed(candidate.path, "not a declaration document"),))
+        return (_document(candidate, data, claims=True) or passed) if candidate.named else passed
+    if candidate.named:
+        return Reading(errors=(InputError(candidate.path, 1, 1, NOTHING),))
+    return reading
+
+
+def _document(candidate: Candidate, data: bytes, *, claims: bool) -> _Document | None:
+    """The declaration document or usage file in ``data``; None for another text without a claim."""
+    text = decode(candidate.path, data)
+    if isinstance(text, InputError):
+        return DocumentResult((), (text,)) if claims else None
+    try:
+        loaded = parse(text)
+    except YamlError as error:
+        return DocumentResult((), errors_of(candidate.path, error.problems)) if claims else None
+    if is_usage_file(loaded):
+        return read_usage(loaded, candidate.path)
+    if is_document(loaded) or claims:
+        return read_parsed(loaded, candidate.path, candidate.root)
+    return None
+
+
+def _encoded(candidate: Candidate, data: bytes) -> Reading | None:
+    """The DER structure that is the whole file; None where it is none and is not called one."""
+    binary = not _is_text(data)
+    named = candidate.named and candidate.suffix not in DOCUMENT_SUFFIXES
+    called_so = binary and (named or candidate.suffix in DER_SUFFIXES)
+    if candidate.suffix == ".der" and b"-----BEGIN" not in data:
+        called_so = True
+    return read_der(data, candidate.path) if called_so or _is_one_sequence(data) else None
+
+
+def _is_one_sequence(data: bytes) -> bool:
+    """Whether ``data`` is as long as the ASN.1 sequence of 128 bytes or more at its beginning.
+
+    X.690, 8.1.3.5. No text begins like this; shorter structures hold no group worth a look.
+    """
+    if len(data) < 4 or data[0] != 0x30 or not 0x81 <= data[1] <= 0x84:
+        return False
+    header = data[1] - 0x80 + 2
+    return header + int.from_bytes(data[2:header], "big") == len(data)
+
+
+def _is_text(data: bytes) -> bool:
+    return b"\0" not in data[:8192]
+
+
+def _text(candidate: Candidate, data: bytes) -> Reading:
+    """What the text holds, in whatever encoding that agrees with ASCII."""
+    if not _is_text(data):
+        return Reading()
+    path = candidate.path
+    try:
+        text = data.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        text = data.decode("latin-1")
+    if PurePath(path).name == "moduli" or is_moduli(text):
+        return read_moduli(text, path)
+    found = [read_pem(text, path)]
+    if candidate.named or candidate.suffix not in PROSE_SUFFIXES:
+        found += [read_names(text, path), read_candidates(text, path)]
+    return joined(found)

@@ -1,0 +1,77 @@
+"""What a reader makes of one file: parameter sets, what it passes over, what it could not read."""
+
+from collections.abc import Iterable
+from dataclasses import dataclass, fields
+from typing import Literal
+
+from auditor.declaration import Declaration
+from auditor.intake.inputs import InputError
+
+LEADS_OUT = "a link that leads out of the tree"
+
+Role = Literal["modulus", "generator", "subgroup order"]
+
+
+@dataclass(frozen=True, slots=True)
+class Passed:
+    """Something seen and not reviewed: a file, or with ``line`` a part of one, and why."""
+
+    path: str
+    reason: str = LEADS_OUT
+    line: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Notice:
+    """What the reader of a report must know about something that is reviewed nevertheless."""
+
+    path: str
+    line: int
+    message: str
+
+    def __str__(self) -> str:
+        return f"{self.path}:{self.line}: {self.message}"
+
+
+@dataclass(frozen=True, slots=True)
+class Number:
+    """A big integer whose name suggests a part of a group; whether it is one, the owner knows."""
+
+    role: Role
+    name: str
+    value: int
+    path: str
+    line: int
+    column: int
+
+
+@dataclass(frozen=True, slots=True)
+class Reading:
+    """All that one file holds, in text order; ``candidates`` are numbers nobody has named yet."""
+
+    declarations: tuple[Declaration, ...] = ()
+    errors: tuple[InputError, ...] = ()
+    passed: tuple[Passed, ...] = ()
+    notices: tuple[Notice, ...] = ()
+    candidates: tuple[Number, ...] = ()
+
+    @property
+    def empty(self) -> bool:
+        """Whether nothing at all was seen."""
+        return not any(getattr(self, item.name) for item in fields(self))
+
+    @property
+    def nothing(self) -> bool:
+        """Whether there is nothing but, at most, a word on the file as a whole."""
+        parts = any(item.line is not None for item in self.passed)
+        return not (self.declarations or self.errors or self.notices or self.candidates or parts)
+
+
+def joined(readings: Iterable[Reading]) -> Reading:
+    """Several readings of one file as one."""
+    found = list(readings)
+    merged = {
+        item.name: tuple(part for reading in found for part in getattr(reading, item.name))
+        for item in fields(Reading)
+    }
+    return Reading(**merged)
