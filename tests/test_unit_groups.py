@@ -45,7 +45,7 @@ def test_a_complete_answer_rests_on_checked_claims() -> None:
 def test_three_hundred_digits_whose_factors_are_found() -> None:
     """A 300-digit number of small and middling primes, and its order."""
     primes = [sympy.nextprime(10**k + 777 * j) for k in range(8, 14) for j in range(4)]
-    n = 2**100 * prod(primes)
+    n = 2**150 * prod(primes)
     assert 290 < len(str(n)) < 320
     found = structure(n, answers())
 

@@ -6,7 +6,7 @@ A kind that is not known here is written out member by member, so that no claim 
 from collections.abc import Callable, Mapping
 from typing import Any
 
-from auditor.report.words import listed, plain_value, power
+from auditor.report.words import listed, plain_value, plural, power
 
 Record = Mapping[str, Any]
 
@@ -101,6 +101,63 @@ def _form_searched(statement: Record, certificate: Record) -> str:
     )
 
 
+def _origin(statement: Record, certificate: Record) -> str:
+    recipe = statement["recipe"]
+    return (
+        f"The origin declared for {plain_value(statement['n'])}, by {recipe['method']} with "
+        f"{recipe['hash']}, was replayed: {statement['outcome']}"
+    )
+
+
+def _formula(statement: Record, certificate: Record) -> str:
+    number, constant = plain_value(statement["n"]), statement["constant"]
+    if statement["offset"] is None:
+        return f"{number} is not the number of the formula for {constant} with any offset to 2^32"
+    return f"{number} is the number of the formula for {constant} with offset {statement['offset']}"
+
+
+def _least_offset(statement: Record, certificate: Record) -> str:
+    number, constant = plain_value(statement["n"]), statement["constant"]
+    about = f"In the formula for {constant} that gives {number} with offset {statement['offset']}"
+    if statement["smaller"] is None:
+        return f"{about}, no smaller offset gives a safe prime"
+    return f"{about}, the smaller offset {statement['smaller']} gives a safe prime"
+
+
+def _canonical_generator(statement: Record, certificate: Record) -> str:
+    element, number = plain_value(statement["g"]), plain_value(statement["n"])
+    verb = "is" if statement["canonical"] else "is not"
+    return (
+        f"{element} {verb} what FIPS 186-4, A.2.3 makes of the seed with index "
+        f"{statement['index']} modulo {number}"
+    )
+
+
+def _shared_exponents(statement: Record, certificate: Record) -> str:
+    groups = [f"{len(group)} values" for group in statement["groups"]]
+    shared = f"these share an exponent: {listed(groups)}" if groups else "no two share an exponent"
+    return f"Of {_values(statement)}, {shared}"
+
+
+def _visible_exponents(statement: Record, certificate: Record) -> str:
+    return (
+        f"Of {_values(statement)}, {len(statement['visible'])} are plus or minus a power of "
+        f"{plain_value(statement['g'])} with an exponent of at most {statement['limit']}"
+    )
+
+
+def _values(statement: Record) -> str:
+    return (
+        f"{plural(len(statement['values']), 'public value')} modulo {plain_value(statement['n'])}"
+    )
+
+
+def _forgery_relations(statement: Record, certificate: Record) -> str:
+    found = plural(len(statement["relations"]), "relation")
+    base, number = plain_value(statement["alpha"]), plain_value(statement["n"])
+    return f"Among those looked for, {found} that could serve a forger: base {base} modulo {number}"
+
+
 def _run(run: Record) -> str:
     numbers = ", ".join(f"{key} {value}" for key, value in run.items() if key != "method")
     return f"{run['method']} ({numbers})" if numbers else str(run["method"])
@@ -136,4 +193,11 @@ _WRITERS: Mapping[str, Callable[[Record, Record], str]] = {
     "searched": _searched,
     "special-form": _special_form,
     "form-searched": _form_searched,
+    "origin": _origin,
+    "formula": _formula,
+    "least-offset": _least_offset,
+    "canonical-generator": _canonical_generator,
+    "shared-exponents": _shared_exponents,
+    "visible-exponents": _visible_exponents,
+    "forgery-relations": _forgery_relations,
 }
