@@ -20,7 +20,8 @@ from auditor.rulebook_types import Rulebook
 from auditor.run import settle
 from auditor.run_values import RunValues
 
-DEFAULT_BOOKS = ("group-structure", "strength")
+DEFAULT_BOOKS = ("group-structure", "strength", "tls", "ssh", "ikev2", "x942-cms")
+"""The two books that speak about every set, then those that speak about a declared protocol."""
 
 Progress = Callable[[Question], None]
 
