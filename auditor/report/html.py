@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 from auditor.data_files import data
 from auditor.report import words
 from auditor.report.claim_words import is_small_prime, sentence
+from auditor.report.moduli_view import moduli, moduli_picture
 from auditor.report.order_view import GroupOrders
 from auditor.report.pictures import PART_MEANING, routes_picture
 from auditor.report.text import read_integer
@@ -32,6 +33,7 @@ def render(record: Record | View) -> str:
     claims = report.record["claims"]
     orders = GroupOrders.read(claims)
     shown = report.sheets[:MOST_SHEETS]
+    distinct = moduli(report.sheets)
     keys = sorted(claims) if len(claims) <= MOST_ENTRIES else report.claims_behind(shown)
     return (
         _environment()
@@ -41,6 +43,8 @@ def render(record: Record | View) -> str:
             words=words,
             most_entries=MOST_ENTRIES,
             shown=shown,
+            moduli=distinct,
+            moduli_picture=moduli_picture(distinct),
             claims=[(key, claims[key]) for key in keys if not is_small_prime(claims[key])],
             small_primes=_small_primes({key: claims[key] for key in keys}),
             claims_left_out=len(claims) - len(keys),

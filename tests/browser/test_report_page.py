@@ -93,7 +93,7 @@ def test_no_text_in_a_picture_runs_out_of_it(browser: Browser, tmp_path: Path) -
     for width in (360, 1200):
         size = {"width": width, "height": 900}
         with opened(browser, render(fixture("harbour")), tmp_path, viewport=size) as seen:
-            assert seen.page.locator("svg.picture").count() == 10
+            assert seen.page.locator("svg.picture").count() == 11
             assert seen.page.evaluate(script) == []
 
 

@@ -91,7 +91,7 @@ def test_every_picture_says_what_it_shows() -> None:
     page = PLAIN["harbour"]
     pictures = [attrs for tag, attrs in page.elements if tag == "svg" and "role" in attrs]
 
-    assert len(pictures) == 10
+    assert len(pictures) == 11
     assert all(attrs["role"] == "img" and attrs["aria-labelledby"] for attrs in pictures)
     assert len([tag for tag, _ in page.elements if tag == "desc"]) == len(pictures)
 
