@@ -180,21 +180,35 @@ def ask(paths: tuple[str, ...], **options: Any) -> int:
 
 
 def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], list[Any]]:
-    from dataclasses import replace
-
     from auditor.ask import ask as ask_about
+
+    declarations, claims, run, errors = _investigated(paths, options)
+    books = _books(options)
+    return [ask_about(item, claims, run, books) for item in declarations], errors
+
+
+def _books(options: dict[str, Any]) -> Any:
     from auditor.facts import vocabulary
-    from auditor.intake.tree import read_inputs
-    from auditor.review import DEFAULT_BOOKS, census, investigate
+    from auditor.review import DEFAULT_BOOKS
     from auditor.rulebook import load_all
 
-    books = load_all(options["rulebook"] or DEFAULT_BOOKS, vocabulary())
+    return load_all(options.get("rulebook") or DEFAULT_BOOKS, vocabulary())
+
+
+def _investigated(
+    paths: tuple[str, ...], options: dict[str, Any]
+) -> tuple[Any, Any, Any, list[Any]]:
+    """The declarations at these paths, the claims about them, the run values, the errors."""
+    from dataclasses import replace
+
+    from auditor.intake.tree import read_inputs
+    from auditor.review import census, investigate
+
     read = read_inputs(paths, sys.stdin.buffer)
     run = replace(_run_values(options), census=census(read.declarations))
     with _surroundings(options) as surroundings:
-        claims, _ = investigate(read.declarations, run, books, surroundings)
-    asked = [ask_about(item, claims, run, books) for item in read.declarations]
-    return asked, list(read.errors)
+        claims, _ = investigate(read.declarations, run, _books(options), surroundings)
+    return read.declarations, claims, run, list(read.errors)
 
 
 @main.command()
@@ -223,6 +237,40 @@ def verify(report: str, against: tuple[str, ...], rulebook: tuple[str, ...]) -> 
     verdict = {0: "all holds", 1: "does not hold", 2: "cannot tell"}[result.status]
     click.echo(f"{verdict}: {result.claims} claims checked")
     return result.status
+
+
+@main.command()
+@click.argument("paths", nargs=-1, required=True)
+@click.option("--set", "name", help="Only the parameter set of that name.")
+@click.option("--seed", type=click.IntRange(0), help="Draw the same exponents again.")
+@click.option("--budget", type=click.IntRange(1, 40), default=26, show_default=True)
+@click.option("--effort", type=click.Choice(EFFORTS), default="quick", show_default=True)
+@click.option("--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search.")
+@click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
+@click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
+@click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+def demonstrate(paths: tuple[str, ...], **options: Any) -> int:
+    """Carry out a weak route on an exponent drawn here, within 2^BUDGET group operations.
+
+    Declared public values are never attacked.
+
+    \b
+    auditor demonstrate links.yaml --set 'dredger log'
+    auditor demonstrate links.yaml --budget 30 --seed 7
+    """
+    import secrets
+
+    from auditor.demonstrate import demonstrate as demonstrate_on
+
+    seed = options["seed"] if options["seed"] is not None else secrets.randbits(64)
+    declarations, claims, run, errors = _investigated(paths, {**options, "as_of": None})
+    chosen = [item for item in declarations if options["name"] in (None, item.name)]
+    click.echo(f"exponents drawn with seed {seed}")
+    for item in chosen:
+        click.echo(demonstrate_on(item, claims, run, seed, options["budget"]).text())
+    for error in errors:
+        click.echo(str(error), err=True)
+    return 2 if errors or not chosen else 0
 
 
 @main.command()
