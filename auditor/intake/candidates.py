@@ -11,6 +11,7 @@ import re
 from bisect import bisect_right
 from collections.abc import Container, Iterable, Iterator
 
+from auditor.intake.names_statements import words_of
 from auditor.intake.reading import Number, Passed, Reading, Role
 from auditor.intake.standard_groups import match
 from auditor.schema_check import quoted
@@ -30,7 +31,7 @@ _MARKED = re.compile(
 )
 _BARE = re.compile(rf"{_NAME}[ \t]*[:=][ \t]*(?P<digits>[0-9a-fA-F]{{128,}})(?![\w:])")
 _TEXT = re.compile(
-    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[ \t]*(?:[\w.]{{1,40}}\([ \t\r\n]*){{0,3}}"
+    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[ \t]*(?:new[ \t]+)?(?:[\w.]{{1,40}}\([ \t\r\n]*){{0,3}}"
     r"(?:\([ \t\r\n]*)?(?P<digits>\"[0-9a-fA-F:\s]+\"(?:[\s+.\\]{1,80}\"[0-9a-fA-F:\s]+\")*)"
 )
 _COLONS = re.compile(
@@ -95,8 +96,8 @@ def _without_comments(text: str) -> str:
 
 def role_of(name: str) -> Role | None:
     """What the name says that a number is; None where it says nothing of a group."""
-    words = re.sub(r"(?<=[a-z0-9])(?=[A-Z])|[^A-Za-z]+", " ", name).lower().split()
-    if "rsa" in words or any(word.startswith("rsa") for word in words):
+    words = words_of(name)
+    if any(word.startswith("rsa") for word in words):
         return None
     if _MODULUS & {*words}:
         return "modulus"
@@ -129,8 +130,7 @@ def passed_over(numbers: Iterable[Number], known: Container[int]) -> Iterator[Pa
 
 def _stem(name: str) -> str:
     """The name without what tells modulus and generator apart."""
-    words = re.sub(r"(?<=[a-z0-9])(?=[A-Z])|[^A-Za-z0-9]+", " ", name).lower().split()
-    return " ".join(w for w in words if w not in {*_MODULUS, *_GENERATOR, "p", "g"})
+    return " ".join(w for w in words_of(name) if w not in {*_MODULUS, *_GENERATOR, "p", "g"})
 
 
 def _blanks(found: re.Match[str]) -> str:

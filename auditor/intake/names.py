@@ -20,7 +20,7 @@ from auditor.intake.standard_groups import StandardGroup, find, standard_groups
 from auditor.schema_check import quoted
 
 _NAMES = ("diffie-hellman-g", "gss-g", "ffdhe", "modp", "crypto ikev", "crypto isakmp")
-_GROUP_KEY = re.compile(r"(?:dh|pfs|hellman)[\w\-. ]{0,12}gr(?:ou)?p")
+_GROUP_KEY = re.compile(r"(?:dh|pfs|hellman)[\w\-. ]{0,12}gr(?:ou)?p|\bdh[0-9]")
 _OPERATOR = re.compile(r"^[+\-!^?*]+")
 _METHOD = re.compile(r"[a-z0-9@.+/=_\-]*[\-0-9][a-z0-9@.+/=_\-]*|none|default", re.IGNORECASE)
 _SSH = re.compile(r"(?:diffie-hellman|gss)-(?:group(?P<number>\d+)|(?:group-exchange|gex))-sha\S+")
@@ -86,8 +86,7 @@ def read_names(text: str, path: str) -> Reading:
 def _worth_a_look(text: str) -> bool:
     """A quick look that spares most files the reading of their statements."""
     return any(name in text for name in _NAMES) or (
-        "gr" in text
-        and any(word in text for word in ("dh", "pfs", "hellman"))
+        any(word in text for word in ("dh", "pfs", "hellman"))
         and _GROUP_KEY.search(text) is not None
     )
 

@@ -24,6 +24,7 @@ _FORMS = (
     re.compile(r"^.*\s-o\s*[\"']?(?P<key>[A-Za-z]\w{0,80})(?:=|\s+)(?P<value>\S+)"),
 )
 _WORD = re.compile(r"[^\s,:;\"'\[\](){}=<>\\]+(?:==?(?=[\s,:;\"'\])}]|$))?")
+_BETWEEN_WORDS = re.compile(r"(?<=[a-z0-9])(?=[A-Z])|(?<=[A-Z])(?=[A-Z][a-z])|[^A-Za-z0-9]+")
 _OPENING, _CLOSING = re.compile(r"[\[({]"), re.compile(r"[\])}]")
 
 _LONGEST_LINE = 4_000
@@ -54,8 +55,12 @@ class Statement:
     @property
     def parts(self) -> frozenset[str]:
         """The words that the key is made of, in lower case."""
-        spaced = re.sub(r"(?<=[a-z0-9])(?=[A-Z])|[^A-Za-z0-9]+", " ", self.key)
-        return frozenset(spaced.lower().split())
+        return frozenset(words_of(self.key))
+
+
+def words_of(name: str) -> list[str]:
+    """The words that an identifier is made of, in lower case: by capitals and by punctuation."""
+    return _BETWEEN_WORDS.sub(" ", name).lower().split()
 
 
 def statements(text: str) -> Iterator[Statement]:

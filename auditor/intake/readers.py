@@ -110,18 +110,23 @@ def _encoded(candidate: Candidate, data: bytes) -> Reading | None:
     called_so = binary and (named or candidate.suffix in DER_SUFFIXES)
     if candidate.suffix == ".der" and b"-----BEGIN" not in data:
         called_so = True
-    return read_der(data, candidate.path) if called_so or _is_one_sequence(data) else None
+    if called_so or _is_one_sequence(data, short=candidate.named):
+        return read_der(data, candidate.path)
+    return None
 
 
-def _is_one_sequence(data: bytes) -> bool:
-    """Whether ``data`` is as long as the ASN.1 sequence of 128 bytes or more at its beginning.
+def _is_one_sequence(data: bytes, *, short: bool) -> bool:
+    """Whether ``data`` is as long as the ASN.1 sequence at its beginning (X.690, 8.1.3).
 
-    X.690, 8.1.3.5. No text begins like this; shorter structures hold no group worth a look.
+    Without ``short`` only sequences of 128 bytes or more count: no text begins like them, and
+    shorter ones hold no group worth a look.
     """
-    if len(data) < 4 or data[0] != 0x30 or not 0x81 <= data[1] <= 0x84:
+    if len(data) < 4 or data[0] != 0x30:
         return False
+    if data[1] < 0x80:
+        return short and data[1] + 2 == len(data)
     header = data[1] - 0x80 + 2
-    return header + int.from_bytes(data[2:header], "big") == len(data)
+    return 3 <= header <= 6 and header + int.from_bytes(data[2:header], "big") == len(data)
 
 
 def _is_text(data: bytes) -> bool:

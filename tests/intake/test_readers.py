@@ -1,0 +1,222 @@
+"""Which reader a file is for, in directories and by name, and the bounds of a walk."""
+
+import io
+import os
+from pathlib import Path
+
+import pytest
+
+from auditor.intake import inputs, tree
+from auditor.intake.readers import NOTHING
+from auditor.intake.reading import Passed
+from auditor.intake.tree import InputResult, read_inputs
+from tests.intake.der_writer import (
+    DSA,
+    RSA,
+    certificate,
+    element,
+    integers,
+    pem,
+    private_key,
+    public_key,
+)
+
+P = 2**1279 - 1
+PARAMETERS = integers(P, 5, 100)
+DH = pem("DH PARAMETERS", PARAMETERS)
+RSA_CERTIFICATE = certificate(public_key(RSA, element(5, b""), 5))
+MODULI = f"# primes\n20250102030405 2 6 100 1278 5 {P:X}\n"
+DOCUMENT = "auditor: 1\nparameter_sets:\n  - {name: x, modulus: 23, generator: 5}\n"
+
+
+@pytest.fixture(autouse=True)
+def _here(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+
+
+def _write(files: dict[str, str | bytes]) -> None:
+    for name, content in files.items():
+        path = Path(name)
+        path.parent.mkdir(parents=True, exist_ok=True)
+        path.write_bytes(content.encode() if isinstance(content, str) else content)
+
+
+def _names(result: InputResult) -> list[str]:
+    return [item.identity for item in result.declarations]
+
+
+def test_every_kind_in_one_tree() -> None:
+    """Content decides; suffixes matter only for documents."""
+    _write(
+        {
+            "t/a.yaml": DOCUMENT,
+            "t/b.conf": "Groups = ffdhe2048\n",
+            "t/c": DH,
+            "t/d.der": PARAMETERS,
+            "t/e.crt": certificate(public_key(DSA, integers(P, 23, 5), 5)),
+            "t/f.key": private_key(DSA, integers(P, 23, 5), 7),
+            "t/g.txt": MODULI,
+            "t/h.yaml": f"dh: |\n  {DH}".replace("\n", "\n  "),
+            "t/i.json": '{"dh_group": 14}',
+            "t/j.txt": "nothing here",
+            "t/k.bin": bytes(range(256)),
+            "t/l.md": f"An example: `Groups = ffdhe2048`.\n\nGroups = ffdhe2048\n\n{DH}",
+        }
+    )
+    result = read_inputs(["t"])
+    assert _names(result) == [
+        "t/a.yaml#x",
+        "t/b.conf#ffdhe2048",
+        "t/c#DH PARAMETERS 1",
+        "t/d.der#DH PARAMETERS",
+        "t/e.crt#CERTIFICATE",
+        "t/f.key#PRIVATE KEY",
+        "t/g.txt#moduli line 2 (1278)",
+        "t/h.yaml#DH PARAMETERS 1",
+        "t/i.json#dh_group 14",
+        "t/l.md#DH PARAMETERS 1",
+    ]
+    assert result.errors == result.passed == ()
+    assert result.recognised == 10
+    assert [item.path for item in result.inputs] == [name.split("#")[0] for name in _names(result)]
+
+
+@pytest.mark.parametrize("content", ["nothing", "", "\n\n", "key: value\n", b"\xff\xfe\x00\x01"])
+def test_named_files_have_to_hold_something(content: str | bytes) -> None:
+    """In a directory nothing is nothing; by name it is an error."""
+    _write({"t/notes.txt": content})
+    assert read_inputs(["t"]) == InputResult((), (), ())
+    (error,) = read_inputs(["t/notes.txt"]).errors
+    assert error.message == NOTHING or error.message.startswith("DER: ")
+    stream = io.BytesIO(content.encode() if isinstance(content, str) else content)
+    assert len(read_inputs(["-"], stream).errors) == 1
+
+
+def test_standard_input_may_hold_anything() -> None:
+    """Each form is known without a name."""
+    small = integers(2**607 - 1, 5)
+    assert len(small) < 128
+    for data in (DOCUMENT.encode(), DH.encode(), PARAMETERS, small, MODULI.encode()):
+        result = read_inputs(["-"], io.BytesIO(data))
+        assert result.recognised == 1
+        assert result.errors == ()
+
+
+def test_prose_is_read_when_named() -> None:
+    """Who names a manual means what it shows."""
+    _write({"a.md": "Groups = ffdhe2048\n"})
+    assert _names(read_inputs(["a.md"])) == ["a.md#ffdhe2048"]
+
+
+def test_broken_files_of_a_tree() -> None:
+    """What calls itself DER or a moduli file is read or an error."""
+    _write(
+        {
+            "t/a.der": PARAMETERS[:-1],
+            "t/b.crt": RSA_CERTIFICATE[:-1],
+            "t/moduli": "no records\n",
+            "t/c.der": b"",
+            "t/d.crt": "a text about certificates",
+        }
+    )
+    result = read_inputs(["t"])
+    assert [(error.path, error.line) for error in result.errors] == [
+        ("t/a.der", 1),
+        ("t/b.crt", 1),
+        ("t/c.der", 1),
+        ("t/moduli", 1),
+    ]
+    assert result.recognised == 0
+
+
+def test_other_kinds_are_not_recognised() -> None:
+    """A tree of other people's keys holds nothing to review, and says what it holds."""
+    _write({"t/a.crt": RSA_CERTIFICATE, "t/b.pem": pem("CERTIFICATE", RSA_CERTIFICATE)})
+    result = read_inputs(["t"])
+    assert result.recognised == 0
+    assert result.skipped == ()
+    assert {(item.path, item.line, item.reason) for item in result.passed} == {
+        ("t/a.crt", 1, "CERTIFICATE: a key of another kind (RSA)"),
+        ("t/b.pem", 1, "CERTIFICATE: a key of another kind (RSA)"),
+    }
+
+
+def test_own_rulebooks_and_reports_are_no_configuration() -> None:
+    """Names of groups in them are criteria and results."""
+    _write(
+        {
+            "t/a.yaml": "rulebook: 1\nname: a\ngroups: [ffdhe2048]\n",
+            "t/b.json": '{"report": 1,\n"groups": ["ffdhe2048"]}\n',
+        }
+    )
+    result = read_inputs(["t"])
+    assert result.declarations == ()
+    assert {item.reason for item in result.passed} == {"a rulebook or a report"}
+
+
+@pytest.mark.parametrize(
+    "data",
+    [
+        f"\ufeff{DH}".encode(),
+        f"# Fähre\n{DH}".encode("latin-1"),
+        DH.replace("\n", "\r\n").encode(),
+    ],
+)
+def test_encodings_of_text(data: bytes) -> None:
+    """Any encoding that agrees with ASCII will do."""
+    _write({"t/a.pem": data})
+    assert read_inputs(["t"]).recognised == 1
+
+
+def test_text_that_begins_like_der() -> None:
+    """A zero at the beginning of a text makes no structure of it."""
+    text = "0" + chr(100) + "x" * 100
+    _write({"t/a": text, "t/b": "0B" + "y" * 66})
+    assert read_inputs(["t"]) == InputResult((), (), ())
+
+
+def test_files_of_too_many_bytes() -> None:
+    """Passed over with the reason, which is not the same as holding nothing."""
+    _write({"t/a.pem": b"#" * (inputs.MAX_BYTES + 1)})
+    (passed,) = read_inputs(["t"]).passed
+    assert passed.reason == "the file has more than 16777216 bytes, the most that is read"
+
+
+def test_depth_and_number_are_bounded(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Beyond the bounds is an error: nobody knows what is there."""
+    monkeypatch.setattr(tree, "MAX_DEPTH", 2)
+    _write({"t/a/b/c.pem": DH, "t/a/b/c/d.pem": DH})
+    result = read_inputs(["t"])
+    assert _names(result) == ["t/a/b/c.pem#DH PARAMETERS 1"]
+    assert [str(error) for error in result.errors] == [
+        "t/a/b:1:1: more than 2 levels deep; what is below was not looked at"
+    ]
+    monkeypatch.setattr(tree, "MAX_FILES", 2)
+    _write({f"u/{name}": DH for name in "abcd"})
+    result = read_inputs(["u"])
+    assert len(result.declarations) == 2
+    assert [str(error) for error in result.errors] == [
+        "u:1:1: more than 2 files; those from 'c' on were not looked at"
+    ]
+
+
+def test_what_is_no_file() -> None:
+    """Pipes and links that lead nowhere are passed over unless their names promise something."""
+    os.mkdir("t")
+    os.mkfifo("t/pipe")
+    os.symlink("absent", "t/link")
+    os.symlink("absent", "t/link.pem")
+    result = read_inputs(["t"])
+    assert result.passed == tuple(
+        Passed(f"t/{name}", "not a regular file, or a link that leads nowhere")
+        for name in ("link", "pipe")
+    )
+    assert [error.path for error in result.errors] == ["t/link.pem"]
+
+
+def test_unnamed_candidates_wait() -> None:
+    """A candidate that is declared in the same file, in whatever form, does not wait."""
+    _write({"t/a.pem": f"    prime:\n        00:{'ff:' * 64}01\n    base: 5 (0x5)\n{DH}"})
+    assert len(read_inputs(["t"]).passed) == 1
+    _write({"t/a.pem": f"prime = 0x{P:X}\n{DH}"})
+    assert read_inputs(["t"]).passed == ()
