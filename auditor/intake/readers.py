@@ -25,6 +25,9 @@ DER_SUFFIXES = (".der", ".cer", ".crt", ".p8", ".pk8", ".csr", ".p10")
 PROSE_SUFFIXES = (".md", ".rst", ".adoc", ".html", ".htm", ".tex", ".pod")
 """Where a PEM block is a block, but a name or a number is an example."""
 
+MODULI = "moduli"
+"""The name that makes a file one of primes for SSH, whatever it holds."""
+
 NOTHING = (
     "found nothing that is read; expected a declaration document, a usage file, parameters, keys "
     "or certificates in PEM or DER, a moduli file, or configuration that names a group"
@@ -76,14 +79,17 @@ def read_file(candidate: Candidate, data: bytes) -> Reading | _Document:
             return document
     if candidate.suffix in DOCUMENT_SUFFIXES and not candidate.named and _OF_OURS.search(data):
         return Reading(passed=(Passed(candidate.path, "a rulebook or a report"),))
-    reading = _encoded(candidate, data) or _text(candidate, data)
+    reading = _content(candidate, data)
     if not reading.empty:
         return reading
-    if candidate.suffix in DOCUMENT_SUFFIXES:
-        passed = Reading(passed=(Passed(candidate.path, "not a declaration document"),))
-        return (_document(candidate, data, claims=True) or passed) if candidate.named else passed
     if candidate.named:
+        if candidate.suffix in DOCUMENT_SUFFIXES:
+            return _document(candidate, data, claims=True) or reading
         return Reading(errors=(InputError(candidate.path, 1, 1, NOTHING),))
+    if candidate.suffix in DOCUMENT_SUFFIXES:
+        return Reading(passed=(Passed(candidate.path, "not a declaration document"),))
+    if _is_der(candidate, data):
+        return Reading(passed=(Passed(candidate.path, "DER of a kind that is not read"),))
     return reading
 
 
@@ -103,16 +109,29 @@ def _document(candidate: Candidate, data: bytes, *, claims: bool) -> _Document |
     return None
 
 
-def _encoded(candidate: Candidate, data: bytes) -> Reading | None:
-    """The DER structure that is the whole file; None where it is none and is not called one."""
-    binary = not _is_text(data)
-    named = candidate.named and candidate.suffix not in DOCUMENT_SUFFIXES
-    called_so = binary and (named or candidate.suffix in DER_SUFFIXES)
+def _content(candidate: Candidate, data: bytes) -> Reading:
+    """What the file holds, unless that is a document."""
+    path = candidate.path
+    text = _text_of(data)
+    if PurePath(path).name == MODULI or is_moduli(text):
+        return read_moduli(text, path)
+    if _is_der(candidate, data):
+        return read_der(data, path)
+    if not _is_text(data):
+        return Reading()
+    found = [read_pem(text, path)]
+    if candidate.named or candidate.suffix not in PROSE_SUFFIXES:
+        found += [read_names(text, path), read_candidates(text, path)]
+    return joined(found)
+
+
+def _is_der(candidate: Candidate, data: bytes) -> bool:
+    """Whether the file is one DER structure, or is called one and is no text."""
     if candidate.suffix == ".der" and b"-----BEGIN" not in data:
-        called_so = True
-    if called_so or _is_one_sequence(data, short=candidate.named):
-        return read_der(data, candidate.path)
-    return None
+        return True
+    named = candidate.named and candidate.suffix not in DOCUMENT_SUFFIXES
+    called_so = named or candidate.suffix in DER_SUFFIXES
+    return (called_so and not _is_text(data)) or _is_one_sequence(data, short=candidate.named)
 
 
 def _is_one_sequence(data: bytes, *, short: bool) -> bool:
@@ -133,18 +152,9 @@ def _is_text(data: bytes) -> bool:
     return b"\0" not in data[:8192]
 
 
-def _text(candidate: Candidate, data: bytes) -> Reading:
-    """What the text holds, in whatever encoding that agrees with ASCII."""
-    if not _is_text(data):
-        return Reading()
-    path = candidate.path
+def _text_of(data: bytes) -> str:
+    """The text in whatever encoding that agrees with ASCII."""
     try:
-        text = data.decode("utf-8-sig")
+        return data.decode("utf-8-sig")
     except UnicodeDecodeError:
-        text = data.decode("latin-1")
-    if PurePath(path).name == "moduli" or is_moduli(text):
-        return read_moduli(text, path)
-    found = [read_pem(text, path)]
-    if candidate.named or candidate.suffix not in PROSE_SUFFIXES:
-        found += [read_names(text, path), read_candidates(text, path)]
-    return joined(found)
+        return data.decode("latin-1")

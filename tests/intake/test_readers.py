@@ -141,6 +141,16 @@ def test_other_kinds_are_not_recognised() -> None:
     }
 
 
+def test_der_of_other_kinds() -> None:
+    """Passed over in a tree, an error by name."""
+    _write({"t/a.der": element(0x31, b"\0" * 200), "t/b": element(0x30, b"\0" * 200)})
+    assert [(item.path, item.reason) for item in read_inputs(["t"]).passed] == [
+        ("t/a.der", "DER of a kind that is not read"),
+        ("t/b", "DER of a kind that is not read"),
+    ]
+    assert [error.message for error in read_inputs(["t/a.der", "t/b"]).errors] == [NOTHING] * 2
+
+
 def test_own_rulebooks_and_reports_are_no_configuration() -> None:
     """Names of groups in them are criteria and results."""
     _write(
