@@ -21,7 +21,8 @@ def bulky(sets: int) -> dict[str, Any]:
     record = fixture("harbour")
     crane = next(s for s in record["parameter_sets"] if s["name"] == "crane telemetry")
     record["parameter_sets"] = [
-        crane | {"digest": f"{number:064x}", "name": f"set {number} 🏗", "id": f"x#{number}"}
+        crane
+        | {"digest": f"{number:064x}", "name": f"set {number} {40 * '🏗'}", "id": f"x#{number}"}
         for number in range(sets)
     ]
     record["errors"] *= sets

@@ -35,6 +35,18 @@ def test_a_modulus_is_judged_by_its_worst_set() -> None:
     ]
 
 
+def test_one_bad_use_marks_the_modulus() -> None:
+    """A modulus on hold in one set is on hold, however well it does in another."""
+    record = fixture("harbour")
+    crane = next(s for s in record["parameter_sets"] if s["name"] == "crane telemetry")
+    better = crane | {"digest": "0" * 64, "position": "no objection", "routes": []}
+    record["parameter_sets"] = [better, crane]
+    (modulus,) = moduli(view(record).sheets)
+
+    assert [sheet.position for sheet in modulus.sheets] == ["hold", "no objection"]
+    assert (modulus.position, modulus.bits) == ("hold", 35.93)
+
+
 def test_dots_do_not_cover_each_other_and_stay_inside() -> None:
     """Also where thirty moduli have the same length and strength."""
     record = fixture("harbour")
