@@ -23,11 +23,11 @@ LINE = (
     ("condition_syntax", "condition_types", "conditions"),
     ("rulebook_types", "example_values", "rulebook_reading", "rulebook"),
     ("findings", "rule_examples", "vocabulary_table", "run"),
-    ("ask", "compare"),
+    ("ask", "compare", "exposure", "remedies"),
     ("report",),
     ("rule_pages", "review", "progress", "pool", "outputs"),
     ("verify", "demonstrate"),
-    ("cli",),
+    ("cli", "api"),
 )
 """From left to right; what stands together may import each other."""
 

@@ -1,0 +1,32 @@
+"""The public surface for programs: two functions, and the types that they take and return.
+
+Everything else may change between versions without notice; the report record has a version of its
+own (``report.schema.json``).
+"""
+
+from auditor.answers import Answers, Cores
+from auditor.claims.collection import Claims
+from auditor.review import Surroundings, review
+from auditor.run_values import RunValues
+from auditor.structure import PartlyFactoredGroup, UnitGroup, UnsplitGroup
+from auditor.unit_groups import ElementOrder, Structure, isomorphic, order_of, structure
+from auditor.verify import Verification, verify
+
+__all__ = [
+    "Answers",
+    "Claims",
+    "Cores",
+    "ElementOrder",
+    "PartlyFactoredGroup",
+    "RunValues",
+    "Structure",
+    "Surroundings",
+    "UnitGroup",
+    "UnsplitGroup",
+    "Verification",
+    "isomorphic",
+    "order_of",
+    "review",
+    "structure",
+    "verify",
+]
