@@ -6,7 +6,8 @@ largest prime of ord(g), and kangaroos at the declared width; every other route 
 work.
 """
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
+from types import MappingProxyType
 
 from auditor.facts import generator, parts, usage, work
 from auditor.facts.base import Absent, Reason
@@ -82,6 +83,11 @@ def _least(given: Given, attacker: Attacker) -> Work:
     return min(found, key=lambda route: (route.bits, route.route, route.attacker))
 
 
+def least_for_listener(given: Given) -> Work:
+    """The least work over the routes open to somebody who only sees public values."""
+    return _least(given, "passive")
+
+
 def least_for_peer(given: Given) -> Work:
     """The least work over the routes open to a passive attacker or a peer."""
     return _least(given, "peer")
@@ -90,6 +96,12 @@ def least_for_peer(given: Given) -> Work:
 def least_for_designer(given: Given) -> Work:
     """The same for whoever chose the parameters."""
     return _least(given, "designer")
+
+
+LEAST: Mapping[Attacker, work.RoutePart] = MappingProxyType(
+    {"passive": least_for_listener, "peer": least_for_peer, "designer": least_for_designer}
+)
+"""The least work by attacker."""
 
 
 @fact(

@@ -6,13 +6,14 @@ A pure function of what was read, the claims, the run values and the rulebooks, 
 
 import hashlib
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from typing import Any
 
 from auditor import __version__
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration
 from auditor.encoding import plain
+from auditor.exposure import Exposures
 from auditor.facts import Established, establish, vocabulary
 from auditor.facts.base import Absent, Fact
 from auditor.findings import Finding, Judgement, facts_in_use, judge
@@ -61,8 +62,10 @@ def build(
     """The record; equal arguments, equal record."""
     known = [establish(declaration, claims, run) for declaration in reading.declarations]
     places = _places(reading.declarations)
-    sets = [_parameter_set(item, books, places) for item in known]
+    exposures = Exposures(claims, run)
+    sets = [_parameter_set(item, books, places, exposures) for item in known]
     consulted = {claim_id for item in known for claim_id in item.consulted}
+    consulted |= {id_ for item in reading.declarations for id_ in exposures.consulted(item)}
     return {
         "report": FORMAT,
         "tool": {"name": TOOL, "version": __version__},
@@ -133,7 +136,10 @@ def _place(declaration: Declaration) -> dict[str, Any]:
 
 
 def _parameter_set(
-    known: Established, books: Sequence[Rulebook], places: Mapping[str, list[dict[str, Any]]]
+    known: Established,
+    books: Sequence[Rulebook],
+    places: Mapping[str, list[dict[str, Any]]],
+    exposures: Exposures,
 ) -> dict[str, Any]:
     declaration = known.declaration
     judgement = judge(books, known.facts, known.absent, vocabulary())
@@ -148,7 +154,7 @@ def _parameter_set(
         "facts": {name: _fact(fact) for name, fact in known.facts.items()},
         "absent": {name: _absence(absent) for name, absent in known.absent.items()},
         "routes": [_route(work, declaration) for work in known.routes],
-        "exposure": [],
+        "exposure": [asdict(row) for row in exposures.of(declaration)],
         "properties": [],
         "position": judgement.position,
         "decided_by": judgement.decided_by.rule if judgement.decided_by else None,
