@@ -99,10 +99,11 @@ class Answers:
             case Asks.LEAST_OFFSET if self._run.effort != "thorough":
                 pass
             case _:
-                self._take(self._made(question))
+                self.claims.add([self._made(question)])
 
     def _made(self, question: Question) -> Claim:
-        """A claim whose check is the very computation that makes it; that is not done twice."""
+        """A claim whose check is the very computation that makes it: that is not done twice, and
+        nothing is gained by keeping the claim, since what is recalled is checked again."""
         n, *others = question.integers
         match question.asks:
             case Asks.ORIGIN:
@@ -237,9 +238,6 @@ class Answers:
     def _accept(self, claim: Kind) -> Kind:
         used = {claim_id: self.claims[claim_id] for claim_id in claim.uses}
         claim.check(used, self._draw)
-        return self._take(claim)
-
-    def _take(self, claim: Kind) -> Kind:
         self.claims.add([claim])
         self._keep([claim])
         return claim

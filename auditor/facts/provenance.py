@@ -36,7 +36,8 @@ def method(given: Given) -> str:
     if given.declaration.provenance is None:
         given.undeclared("provenance")
     given.rest_on("provenance")
-    return given.declaration.provenance.method
+    declared_method = given.declaration.provenance.method
+    return declared_method if declared_method in METHODS else "other"
 
 
 def replayable(given: Given) -> str:
@@ -206,6 +207,6 @@ def verified(given: Given) -> bool:
         return True
     if given.declaration.provenance is None:
         given.undeclared("provenance")
-    if given.declaration.provenance.method == "other":
+    if given.declaration.provenance.method not in (*SEEDS, *FORMULAS):
         given.undeclared("provenance.seed")
     return bool(given.see(regenerated))
