@@ -274,6 +274,29 @@ def demonstrate(paths: tuple[str, ...], **options: Any) -> int:
 
 
 @main.command()
+@click.argument("old", type=click.Path(dir_okay=False))
+@click.argument("new", type=click.Path(dir_okay=False))
+def compare(old: str, new: str) -> int:
+    """Show what a new JSON report adds, settles and changes; status 1 if anything got worse.
+
+    \b
+    auditor compare before.json after.json
+    """
+    from auditor.compare import compare as compare_reports
+    from auditor.outputs import read_report
+    from auditor.report.comparing import render
+    from auditor.report.json_report import problems
+
+    records = [read_report(old), read_report(new)]
+    for path, record in zip((old, new), records, strict=True):
+        if malformed := problems(record):
+            raise click.ClickException(f"{path}: not a report of this format: {malformed[0]}")
+    found = compare_reports(*records)
+    click.echo(render(found), nl=False)
+    return int(found.worse)
+
+
+@main.command()
 @click.argument("numbers", nargs=-1, required=True)
 @click.option("--of", "elements", multiple=True, help="An element whose order is wanted.")
 @click.option("--json", "as_json", is_flag=True, help="A record for programs.")
