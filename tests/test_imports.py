@@ -23,10 +23,10 @@ LINE = (
     ("condition_syntax", "condition_types", "conditions"),
     ("rulebook_types", "example_values", "rulebook_reading", "rulebook"),
     ("findings", "rule_examples", "vocabulary_table", "run"),
-    ("ask", "compare", "exposure", "remedies"),
+    ("ask", "compare", "concessions", "exposure", "remedies"),
     ("report",),
-    ("rule_pages", "review", "progress", "pool", "outputs"),
-    ("verify", "demonstrate"),
+    ("rule_pages", "review", "progress", "pool", "cluster", "outputs"),
+    ("verify", "demonstrate", "declare"),
     ("cli", "api"),
 )
 """From left to right; what stands together may import each other."""
