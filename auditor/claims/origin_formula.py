@@ -18,7 +18,7 @@ from auditor.claims.standing import Standing
 
 Constant = Literal["pi", "e"]
 CONSTANTS: tuple[Constant, ...] = ("pi", "e")
-SHORTEST = 256
+SHORTEST, LONGEST = 256, 2**16
 LARGEST_OFFSET = 2**32
 """Offsets up to here leave a maker some ten thousand primes to choose from, far too few for a form
 that helps a sieve; the published offsets are below 2^24."""
@@ -26,8 +26,8 @@ that helps a sieve; the published offsets are below 2^24."""
 
 def has_shape(n: int) -> bool:
     """Whether the highest and the lowest 64 bits are all ones, as in every such number."""
-    ones = (1 << 64) - 1
-    return n.bit_length() >= SHORTEST and n & ones == ones and n >> (n.bit_length() - 64) == ones
+    ones, bits = (1 << 64) - 1, n.bit_length()
+    return SHORTEST <= bits <= LONGEST and n & ones == ones and n >> (bits - 64) == ones
 
 
 @cache

@@ -94,6 +94,7 @@ def test_the_shape_is_all_ones_at_both_ends() -> None:
     assert has_shape(n)
     assert not any(has_shape(n ^ (1 << i)) for i in (0, 1, 63, 704, 766))
     assert not has_shape(2**255 - 1)
+    assert not has_shape(2**65537 - 1)
 
 
 # The least offset
