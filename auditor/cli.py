@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 
 FAIL_ON = ("hold", "open", "conditions", "never")
 EFFORTS = ("quick", "standard", "thorough")
+POLICY_HELP = "Take rulebook files, concessions and usage files from there alone."
 MOST_DIGITS = 20_000
 """Decimal digits that Python may read and write: enough for integers of 65,536 bits."""
 
@@ -51,6 +52,8 @@ def main() -> None:
 @click.option("--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search.")
 @click.option("--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today.")
 @click.option("--fail-on", type=click.Choice(FAIL_ON), default="conditions", show_default=True)
+@click.option("--concessions", type=click.Path(dir_okay=False), help="Findings conceded.")
+@click.option("--policy-from", type=click.Path(exists=True, file_okay=False), help=POLICY_HELP)
 @click.option("--allow-empty", is_flag=True, help="Nothing recognised is no error.")
 @click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
 @click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
@@ -89,15 +92,42 @@ def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]
     from auditor.review import DEFAULT_BOOKS
     from auditor.review import review as review_inputs
 
+    policy = _policy(options)
     with _surroundings(options) as surroundings:
         return review_inputs(
             paths,
             _run_values(options),
             surroundings,
-            books=options["rulebook"] or DEFAULT_BOOKS,
+            books=policy.pop("books") or DEFAULT_BOOKS,
             fail_on=options["fail_on"],
             stdin=sys.stdin.buffer,
+            **policy,
         )
+
+
+def _policy(options: dict[str, Any]) -> dict[str, Any]:
+    """Books, concessions and the directory of policy; files that cannot be used end the run."""
+    from auditor.concessions import ConcessionsError, load
+    from auditor.facts import vocabulary
+    from auditor.intake.policy import NoSuchPolicy, concessions_file, named
+
+    folder, file, books = options["policy_from"], options["concessions"], options["rulebook"]
+    try:
+        if folder:
+            files = (".yaml", ".yml")
+            books = [named(folder, book) if book.endswith(files) else book for book in books]
+            file = named(folder, file) if file else concessions_file(folder)
+        granted = load(file, vocabulary()) if file else None
+    except NoSuchPolicy as error:
+        raise click.ClickException(str(error)) from error
+    except ConcessionsError as error:
+        click.echo(str(error), err=True)
+        raise click.exceptions.Exit(2) from error
+    return {
+        "books": books,
+        "concessions": granted,
+        "policy": Path(folder) if folder else None,
+    }
 
 
 @contextmanager
@@ -148,10 +178,9 @@ def _ledger_path(options: dict[str, Any]) -> Path | None:
 def _status(record: dict[str, Any], fail_on: str) -> int:
     if record["errors"]:
         return 2
-    if fail_on == "never":
-        return 0
-    failing = FAIL_ON[: FAIL_ON.index(fail_on) + 1]
-    return int(any(item["position"] in failing for item in record["parameter_sets"]))
+    from auditor.concessions import fails
+
+    return int(any(fails(item, fail_on) for item in record["parameter_sets"]))
 
 
 @main.command()
@@ -215,7 +244,9 @@ def _investigated(
 @click.argument("report", type=click.Path(dir_okay=False))
 @click.option("--against", multiple=True, help="Check the inputs at this path too.")
 @click.option("--rulebook", multiple=True, help="A book of the report that is not shipped.")
-def verify(report: str, against: tuple[str, ...], rulebook: tuple[str, ...]) -> int:
+@click.option("--concessions", type=click.Path(dir_okay=False), help="Check what is conceded too.")
+@click.option("--policy-from", type=click.Path(exists=True, file_okay=False), help=POLICY_HELP)
+def verify(report: str, against: tuple[str, ...], **options: Any) -> int:
     """Check every claim in a JSON report, and draw its conclusions again.
 
     Exit status: 0 all holds, 1 something does not, 2 cannot tell.
@@ -226,12 +257,15 @@ def verify(report: str, against: tuple[str, ...], rulebook: tuple[str, ...]) -> 
     """
     import secrets
 
-    from auditor.intake.tree import read_inputs
     from auditor.outputs import read_report
+    from auditor.review import read_under
     from auditor.verify import verify as verify_report
 
-    inputs = read_inputs(against, sys.stdin.buffer) if against else None
-    result = verify_report(read_report(report), secrets.randbelow, rulebook, inputs)
+    policy = _policy(options)
+    inputs = read_under(policy["policy"], against, sys.stdin.buffer).result if against else None
+    result = verify_report(
+        read_report(report), secrets.randbelow, policy["books"], inputs, policy["concessions"]
+    )
     for line in (*result.failures, *result.unclear):
         click.echo(line)
     verdict = {0: "all holds", 1: "does not hold", 2: "cannot tell"}[result.status]

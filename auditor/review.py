@@ -10,8 +10,11 @@ from auditor.answers import ALONE, Answers, Cores
 from auditor.claims.base import Claim, Draw
 from auditor.claims.collection import Claims
 from auditor.claims.ledger import Ledger
+from auditor.concessions import Concessions, conceded
+from auditor.concessions import notices as notices_of
 from auditor.declaration import Declaration
 from auditor.facts import vocabulary
+from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
 from auditor.questions import Question
 from auditor.report.record import Reading, build, in_use
@@ -45,17 +48,46 @@ def review(
     books: Sequence[str | Path] = DEFAULT_BOOKS,
     fail_on: str = "conditions",
     stdin: BinaryIO | None = None,
+    concessions: Concessions | None = None,
+    policy: Path | None = None,
 ) -> dict[str, Any]:
     """Read what is at ``paths``, settle what is worth settling, judge it by the rulebooks.
 
-    Returns the record that every document is a rendering of. Raises RulebookError for books that
-    cannot be used; inputs that cannot be read are errors in the record.
+    Usage files are those in the directory ``policy`` where there is one. Returns the record that
+    every document is a rendering of. Raises RulebookError for books that cannot be used; inputs
+    that cannot be read are errors in the record.
     """
     rulebooks = load_all(books, vocabulary())
-    read = read_inputs(paths, stdin)
+    governed = read_under(policy, paths, stdin)
+    read = governed.result
     run = replace(run, census=census(read.declarations))
     claims, notices = investigate(read.declarations, run, rulebooks, surroundings)
-    return build(_reading(read, notices), claims, run, rulebooks, fail_on)
+    reading = _reading(read, (*governed.notices, *notices))
+    record = build(reading, claims, run, rulebooks, fail_on)
+    return _with_policy(record, governed, concessions)
+
+
+def read_under(
+    policy: Path | None, paths: Iterable[str], stdin: BinaryIO | None = None
+) -> Governed:
+    """What is at ``paths``, its use as said in the directory ``policy`` where there is one."""
+    if policy is None:
+        return Governed(read_inputs(paths, stdin), (), ())
+    return read_governed(tuple(paths), policy, stdin)
+
+
+def _with_policy(
+    record: dict[str, Any], governed: Governed, concessions: Concessions | None
+) -> dict[str, Any]:
+    """The record with the files of policy among its inputs, and what is conceded."""
+    files = [("usage", file) for file in governed.usage_files]
+    if concessions is not None:
+        record = conceded(record, concessions.granted)
+        told = notices_of(record, concessions.granted)
+        record = {**record, "notices": [*record["notices"], *told]}
+        files.append(("concessions", concessions.file))
+    named = [{"path": file.path, "sha256": file.sha256, "role": role} for role, file in files]
+    return {**record, "inputs": [*record["inputs"], *named]}
 
 
 def census(declarations: Iterable[Declaration]) -> MappingProxyType[int, int]:

@@ -12,6 +12,7 @@ from typing import Any
 from auditor import __version__
 from auditor.claims.base import Draw
 from auditor.claims.collection import Claims, check_all, read_claim
+from auditor.concessions import ROLE, Concessions, conceded, recorded
 from auditor.declaration import Declaration, Place
 from auditor.encoding import shorten
 from auditor.facts import vocabulary
@@ -44,10 +45,13 @@ def verify(
     draw: Draw,
     books: Iterable[str] = (),
     against: InputResult | None = None,
+    concessions: Concessions | None = None,
 ) -> Verification:
     """Check a report that was read from JSON.
 
     ``books`` are files of rulebooks that are not shipped; ``against`` is what is in the inputs now.
+    Without ``concessions`` those in the report are the word of whoever granted them: each must
+    cover its finding and say rightly whether it has run out.
     """
     if report.get("report") != FORMAT:
         return Verification((), (f"the report has format {shorten(report.get('report'))}",))
@@ -58,6 +62,7 @@ def verify(
     failures += [f"claims.{claim_id}: {reason}" for claim_id, reason in failed.items()]
     if against is not None:
         failures += _differences_of_inputs(report, against)
+    failures += _differences_of_concessions(report, concessions)
     if failures:
         return Verification(tuple(failures), claims=len(claims))
     if report["tool"]["version"] != __version__:
@@ -66,7 +71,8 @@ def verify(
             (), (f"written by version {version}, this is {__version__}",), len(claims)
         )
     try:
-        again = _again(report, claims, books)
+        granted = recorded(report) if concessions is None else concessions.granted
+        again = conceded(_again(report, claims, books), granted)
     except RulebookError as error:
         return Verification((), (f"the rulebooks cannot be loaded: {error}",), len(claims))
     except (ValueError, KeyError) as error:
@@ -128,7 +134,7 @@ def _other_books(report: Mapping[str, Any], again: Mapping[str, Any]) -> list[st
 
 
 def _differences_of_inputs(report: Mapping[str, Any], against: InputResult) -> list[str]:
-    then = {item["path"]: item["sha256"] for item in report["inputs"]}
+    then = {item["path"]: item["sha256"] for item in report["inputs"] if "role" not in item}
     now = {item.path: item.sha256 for item in against.inputs}
     failures = [
         f"inputs: {path} is another file now" if path in now else f"inputs: {path} is not there"
@@ -146,6 +152,17 @@ def _differences_of_inputs(report: Mapping[str, Any], against: InputResult) -> l
         if declared.get(identity) != reviewed.get(identity)
     ]
     return failures
+
+
+def _differences_of_concessions(
+    report: Mapping[str, Any], concessions: Concessions | None
+) -> list[str]:
+    files = [item["sha256"] for item in report["inputs"] if item.get("role") == ROLE]
+    if not files and recorded(report):
+        return ["inputs: findings are conceded, and no file of concessions was read"]
+    if concessions is not None and files != [concessions.file.sha256]:
+        return [f"inputs: {concessions.file.path} is not the file of concessions that was read"]
+    return []
 
 
 def differences(expected: Any, found: Any, path: str = "") -> list[str]:
