@@ -153,7 +153,7 @@ def _parameter_set(
         "declaration": declaration.document(),
         "facts": {name: _fact(fact) for name, fact in known.facts.items()},
         "absent": {name: _absence(absent) for name, absent in known.absent.items()},
-        "routes": [_route(work, declaration) for work in known.routes],
+        "routes": [_route(work, known) for work in known.routes],
         "exposure": [asdict(row) for row in exposures.of(declaration)],
         "properties": [],
         "position": judgement.position,
@@ -183,7 +183,7 @@ def _absence(absent: Absent) -> dict[str, Any]:
     return {"reason": absent.reason, "keys": sorted(absent.keys), "questions": questions}
 
 
-def _route(work: Work, declaration: Declaration) -> dict[str, Any]:
+def _route(work: Work, known: Established) -> dict[str, Any]:
     return {
         "name": work.route,
         "attacker": work.attacker,
@@ -195,7 +195,7 @@ def _route(work: Work, declaration: Declaration) -> dict[str, Any]:
         "source": work.source,
         "explanation": work.explanation,
         "counted": True,
-        "table": _table(work, declaration),
+        "table": _table(work, known),
         "details": [{"label": label, "value": plain(value)} for label, value in work.details],
     }
 
@@ -203,16 +203,15 @@ def _route(work: Work, declaration: Declaration) -> dict[str, Any]:
 TABLES = "NIST SP 800-57 Part 1 Rev. 5, Table 2; SP 800-56A Rev. 3, Appendix D"
 
 
-def _table(work: Work, declaration: Declaration) -> dict[str, Any] | None:
+def _table(work: Work, known: Established) -> dict[str, Any] | None:
     """What the published tables give for the same thing as this route."""
-    details = dict(work.details)
     match work.route:
         case "number_field_sieve":
-            bits = modulus_strength(declaration.modulus.bit_length())
-        case "square_root" if work.bound == "exact":
-            bits = int(details["largest prime length"]) // 2
+            bits = modulus_strength(known.declaration.modulus.bit_length())
+        case "square_root" | "pohlig_hellman" if work.bound == "exact":
+            bits = int(known.facts["generator.largest_prime_length"].value) // 2
         case "short_exponent":
-            bits = int(details["exponent width"]) // 2
+            bits = int(known.facts["usage.exponent_width"].value) // 2
         case _:
             return None
     return {"bits": bits, "source": TABLES}
