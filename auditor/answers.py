@@ -26,6 +26,7 @@ from auditor.claims.prime import Prime
 from auditor.claims.public_values import shared_exponents, visible_exponents
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
+from auditor.claims.subgroup_generator import subgroup_generator
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
 from auditor.search import primality
@@ -95,6 +96,9 @@ class Answers:
 
             case Asks.SPECIAL_FORM:
                 self._special_form(*question.integers)
+
+            case Asks.SUBGROUP_GENERATOR:
+                self._subgroup_generator(*question.integers)
 
             case Asks.LEAST_OFFSET if self._run.effort != "thorough":
                 pass
@@ -209,6 +213,12 @@ class Answers:
             self._accept(FormSearched(n, tiers))
         else:
             self._accept(SpecialForm(n, found.coefficients, found.g1, found.g0, found.cofactor))
+
+    def _subgroup_generator(self, n: int, q: int) -> None:
+        uses = tuple(sorted(self.settle_primality(number).id for number in {n, q}))
+        claim = subgroup_generator(n, q, uses)
+        if claim is not None:
+            self._accept(claim)
 
     def _order(self, n: int, element: int, multiple: int) -> None:
         """The order of an element whose ``multiple``-th power is 1, by stripping primes from it

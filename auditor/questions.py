@@ -33,6 +33,8 @@ class Asks(StrEnum):
     """n, q, and a recipe spelled in integers: does it lead to n and q?"""
     CANONICAL_GENERATOR = "canonical-generator"
     """n, q, g, hash, seed, index: does FIPS 186-4, A.2.3 make g?"""
+    SUBGROUP_GENERATOR = "subgroup-generator"
+    """n, q: which element has the prime order q modulo the prime n?"""
     FORMULA = "formula"
     """n, and 0 for pi or 1 for e: is n made from those digits?"""
     LEAST_OFFSET = "least-offset"
@@ -53,6 +55,7 @@ CHEAP = frozenset(
         Asks.MEMBERSHIP,
         Asks.ORIGIN,
         Asks.CANONICAL_GENERATOR,
+        Asks.SUBGROUP_GENERATOR,
         Asks.FORMULA,
         Asks.SHARED_EXPONENTS,
         Asks.VISIBLE_EXPONENTS,
@@ -96,6 +99,8 @@ class Question:
                 return f"Do the declared seed and counter lead to {first} and {others[0]}?"
             case Asks.CANONICAL_GENERATOR:
                 return f"Do the declared seed and index lead to the generator {others[1]}?"
+            case Asks.SUBGROUP_GENERATOR:
+                return f"Which element has the order {others[0]} modulo {first}?"
             case Asks.FORMULA:
                 digits = "e" if self.integers[1] else "pi"
                 return f"Is {first} made from the digits of {digits}?"

@@ -16,6 +16,7 @@ from auditor.claims.public_values import SharedExponents, VisibleExponents
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.claims.standing import Standing, weakest
+from auditor.claims.subgroup_generator import SubgroupGenerator
 
 Kind = TypeVar("Kind", bound=Claim)
 
@@ -35,6 +36,7 @@ KINDS: Mapping[str, type[Claim]] = {
         Formula,
         LeastOffset,
         CanonicalGenerator,
+        SubgroupGenerator,
         SharedExponents,
         VisibleExponents,
         ForgeryRelations,

@@ -2,9 +2,12 @@
 
 from math import log2
 
+from auditor.claims.subgroup_generator import SubgroupGenerator
 from auditor.facts import parts
+from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
+from auditor.questions import Asks, Question
 from auditor.routes.base import floor_bits
 
 
@@ -49,3 +52,53 @@ def cofactor_bits(given: Given) -> float:
 def small_factors(given: Given) -> list[list[int]]:
     known = given.see(parts.order_factors)
     return [[prime, exponent] for prime, exponent in known.factors if prime.bit_length() <= 80]
+
+
+@fact(
+    "subgroup.prime_generator_seen",
+    "exhibit",
+    "[q, g]: a prime order of at least twice the required strength and an element that has it, "
+    "where the order of the generator is no such prime",
+)
+def prime_generator(given: Given) -> tuple[int, int]:
+    """q is the declared order where that serves, otherwise the largest prime known to divide the
+    group order; g is made from the least base."""
+    n = given.declaration.modulus
+    if given.see(parts.nature) != "prime" or given.see(serves):
+        given.undefined()
+    q = given.see(prime_order)
+    claim = given.claims.about(SubgroupGenerator, n, q=q)
+    if claim is None:
+        given.unsettled(Question(Asks.SUBGROUP_GENERATOR, (n, q)))
+    given.cite(claim)
+    return q, claim.g
+
+
+def serves(given: Given) -> bool:
+    """Whether ord(g) is a prime of at least twice the required strength; no element serves that is
+    no unit."""
+    if isinstance(absent := given.peek(parts.element), Absent) and absent.reason == "undefined":
+        return False
+    order = given.see(parts.generator_order)
+    known = sum(exponent for _, exponent in order.factors)
+    if order.rest > 1 and known == 0:
+        given.unsettled(*given.trace(parts.generator_order).questions)
+    given.settle()
+    return order.rest == 1 and known == 1 and is_long(given, order.factors[0][0])
+
+
+def is_long(given: Given, q: int) -> bool:
+    """Whether a logarithm in a group of the prime order q costs the required strength."""
+    return q.bit_length() >= 2 * given.declaration.required_bits
+
+
+def prime_order(given: Given) -> int:
+    """The prime order to move to; absent where no prime that is known is long enough."""
+    known = given.see(parts.order_factors)
+    fit = [prime for prime, _ in known.factors if is_long(given, prime)]
+    if not fit and known.rest > 1:
+        given.unsettled(*given.trace(parts.order_factors).questions)
+    if not fit:
+        given.undefined()
+    declared = given.declaration.subgroup_order
+    return declared if declared in fit else max(fit)

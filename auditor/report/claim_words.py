@@ -68,6 +68,15 @@ def _order(statement: Record, certificate: Record) -> str:
     return f"The order of {element} modulo {modulus} is {order}"
 
 
+def _subgroup_generator(statement: Record, certificate: Record) -> str:
+    element, modulus = plain_value(statement["g"]), plain_value(statement["n"])
+    order, base = plain_value(statement["q"]), statement["base"]
+    return (
+        f"{element} has the prime order {order} modulo {modulus}: it is the power of {base} with "
+        f"exponent (n - 1)/q"
+    )
+
+
 def _membership(statement: Record, certificate: Record) -> str:
     element, exponent = plain_value(statement["element"]), plain_value(statement["exponent"])
     sign = "=" if statement["member"] else "is not"
@@ -190,6 +199,7 @@ _WRITERS: Mapping[str, Callable[[Record, Record], str]] = {
     "factorization": _factorization,
     "order": _order,
     "membership": _membership,
+    "subgroup-generator": _subgroup_generator,
     "searched": _searched,
     "special-form": _special_form,
     "form-searched": _form_searched,

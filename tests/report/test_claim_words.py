@@ -17,6 +17,7 @@ from auditor.claims.prime import Prime
 from auditor.claims.public_values import SharedExponents, VisibleExponents
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
+from auditor.claims.subgroup_generator import SubgroupGenerator
 from auditor.report.claim_words import _WRITERS, sentence
 
 SENTENCES: list[tuple[Claim, str]] = [
@@ -44,6 +45,10 @@ SENTENCES: list[tuple[Claim, str]] = [
         "The order of 5 modulo 23 is 2 times a divisor, above 1, of 11",
     ),
     (Membership(23, 4, 11, True), "4 to the power 11 = 1 modulo 23"),
+    (
+        SubgroupGenerator(23, 11, 2, 4, ()),
+        "4 has the prime order 11 modulo 23: it is the power of 2 with exponent (n - 1)/q",
+    ),
     (Membership(23, 5, 11, False), "5 to the power 11 is not 1 modulo 23"),
     (
         Searched(391, "built-in", (("ecm", (("b1", 2000), ("curves", 25))),)),
