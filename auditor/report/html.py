@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 from auditor.data_files import data
 from auditor.report import words
 from auditor.report.claim_words import is_small_prime, sentence
+from auditor.report.exposure_view import exposure_table
 from auditor.report.moduli_view import moduli, moduli_picture
 from auditor.report.order_view import GroupOrders
 from auditor.report.pictures import PART_MEANING, routes_picture
@@ -50,6 +51,7 @@ def render(record: Record | View) -> str:
             claims_left_out=len(claims) - len(keys),
             sentence=sentence,
             part_meaning=PART_MEANING,
+            exposure_table=lambda sheet: exposure_table(sheet.record["exposure"]),
             strip=lambda sheet: orders.strip(sheet.record["declaration"]),
             routes_picture=lambda sheet: routes_picture(
                 sheet.record["routes"], sheet.strength.required

@@ -7,7 +7,7 @@ from functools import cached_property
 from typing import Any
 
 from auditor.report import words
-from auditor.report.findings_view import MergedFinding, Remedy, merge
+from auditor.report.findings_view import Concession, MergedFinding, Remedy, merge
 from auditor.report.strength_view import Strength, strength
 from auditor.report.text import Number
 
@@ -82,6 +82,11 @@ class Sheet:
     def remedy(self) -> Remedy | None:
         """The remedy of the deciding finding."""
         return next(iter(self.deciding.remedies), None) if self.deciding else None
+
+    @property
+    def concessions(self) -> tuple[Concession, ...]:
+        """The concessions for the deciding finding; they permit a release, they change nothing."""
+        return self.deciding.concessions if self.deciding else ()
 
     def remedies(self, number: int) -> tuple[tuple[Remedy, int], ...]:
         """The remedies of the finding of that number, each with the number that first names it."""

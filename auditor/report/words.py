@@ -57,14 +57,14 @@ CONFIDENCE_MEANING: Mapping[str, str] = {
     "memory": "from memory, to be confirmed in the document",
 }
 
-_CHECKS: Mapping[str, str] = {
+CHECKS: Mapping[str, str] = {
     "range": "range",
     "membership": "subgroup membership",
     "cofactor": "multiplied by the cofactor",
     "certified": "certified values only",
 }
 
-_USES: Mapping[str, str] = {
+USES: Mapping[str, str] = {
     "single": "used once",
     "reused": "reused",
     "static": "static",
@@ -109,11 +109,11 @@ def _party(record: Mapping[str, Any]) -> str:
     exponent = record.get("exponent", {})
     width = exponent.get("bits")
     bits = "exponent of no stated width" if width is None else f"{width}-bit exponent"
-    use = _USES[exponent["use"]] if "use" in exponent else "use not declared"
+    use = USES[exponent["use"]] if "use" in exponent else "use not declared"
     if "peer_check" not in record:
         checks = "no word on what is done to received values"
     elif record["peer_check"]:
-        checks = "received values checked: " + ", ".join(_CHECKS[c] for c in record["peer_check"])
+        checks = "received values checked: " + ", ".join(CHECKS[c] for c in record["peer_check"])
     else:
         checks = "received values not checked"
     return f"{bits}, {use}; {checks}"

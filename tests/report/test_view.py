@@ -79,6 +79,16 @@ def test_the_deciding_finding_is_the_reason() -> None:
     assert [finding.grade for finding in sheet.findings] == ["major"] * 3 + ["minor", "observation"]
 
 
+def test_a_concession_stands_beside_the_reason_and_moves_no_position() -> None:
+    """The decision sheet shows it; the position stays what the findings make it."""
+    sheet = sheet_named("tide gauge log")
+
+    assert sheet.position == "conditions"
+    assert [concession.in_force for concession in sheet.concessions] == [True]
+    assert "harbour security board" in sheet.concessions[0].text
+    assert sheet_named("quay-link handshake").concessions == ()
+
+
 def test_without_objection_the_reason_counts_what_was_met() -> None:
     """No claim of safety, a count of requirements."""
     sheet = sheet_named("quay-link handshake")
