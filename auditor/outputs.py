@@ -7,9 +7,12 @@ import tempfile
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import click
+
+if TYPE_CHECKING:
+    from auditor.report.view import View
 
 STANDARD_OUTPUT = "-"
 PIPED = (80, 200)
@@ -40,29 +43,31 @@ class Outputs:
 
     def write(self, record: Mapping[str, Any]) -> None:
         """Write each format; a summary to standard output where no format goes there."""
-        from auditor.report import html, json_report, markdown, sarif
+        from auditor.report import html, markdown, sarif
+        from auditor.report.view import view
 
+        shown = view(record)
         renderers: list[tuple[str | None, Callable[[], str]]] = [
-            (self.html, lambda: html.render(record)),
-            (self.markdown, lambda: markdown.render(record, limit=self.markdown_limit)),
-            (self.json, lambda: json_report.dumps(record)),
-            (self.sarif, lambda: sarif.render(record)),
+            (self.html, lambda: html.render(shown)),
+            (self.markdown, lambda: markdown.render(shown, limit=self.markdown_limit)),
+            (self.json, lambda: shown.json),
+            (self.sarif, lambda: sarif.render(shown)),
         ]
         for path, render in renderers:
             if path:
                 write_text(path, render())
         if STANDARD_OUTPUT not in (self.html, self.markdown, self.json, self.sarif):
-            _summary(record)
+            _summary(shown)
 
 
-def _summary(record: Mapping[str, Any]) -> None:
+def _summary(shown: "View") -> None:
     from auditor.report import terminal
 
     live = sys.stdout.isatty()
     size = os.get_terminal_size() if live else os.terminal_size(PIPED)
     colour = live and not os.environ.get("NO_COLOR") and os.environ.get("TERM") != "dumb"
     width, height = max(60, size.columns), max(20, size.lines)
-    click.echo(terminal.render(record, width=width, height=height, colour=colour), nl=False)
+    click.echo(terminal.render(shown, width=width, height=height, colour=colour), nl=False)
 
 
 def write_text(path: str, text: str) -> None:
