@@ -87,8 +87,7 @@ class Question:
             case Asks.SMALL_FACTORS:
                 return f"Which small prime factors has {first}?"
             case Asks.FACTORIZATION | Asks.MODULUS_FACTORS:
-                size = self.integers[1].bit_length()
-                return f"Which prime factors has the {size}-bit composite {others[0]}?"
+                return f"Which prime factors has the composite {others[0]}?"
             case Asks.ORDER:
                 return f"What is the order of {others[0]} modulo {first}?"
             case Asks.MEMBERSHIP:

@@ -84,7 +84,7 @@ def test_an_order_that_cannot_be_settled_is_said_to_be_open(record: dict[str, An
     (open_question,) = absent["questions"]
 
     assert absent["reason"] == "unsettled"
-    assert "Which prime factors has the" in questions[open_question]["about"]
+    assert "Which prime factors has the composite" in questions[open_question]["about"]
     assert questions[open_question]["cost"] > 0
     assert "strength.sufficient" in questions[open_question]["settles"]
 
