@@ -154,6 +154,16 @@ def test_strange_values_are_false_with_a_reason(
     assert value(facts, "provenance.disagreement") == end.value
 
 
+def test_a_seed_that_the_standard_does_not_cover_decides_nothing() -> None:
+    """Past its last value a seed counts on in no way that is written down: no verdict, a reason."""
+    case = case_of(PROVABLE, Outcome.REGENERATED)
+    full = "ff" * len(case.recipe.seeds[0])
+    facts = reviewed(declared(case, first_seed=full), QUICK)
+
+    assert facts.absent["provenance.verified"].reason == "undefined"
+    assert value(facts, "provenance.disagreement") == Outcome.SEED_CARRY.value
+
+
 texts = st.sampled_from(["", "00", "ff" * 20, "zz", "sha1", "sha256", "md5", "é", "a" * 41])
 numbers = st.sampled_from([-1, 0, 1, 255, 256, 4095, 4096, 2**32, 2**70])
 KEYS = (
