@@ -18,6 +18,7 @@ from auditor.facts import Established, establish, vocabulary
 from auditor.facts.base import Absent, Fact
 from auditor.findings import Finding, Judgement, facts_in_use, judge
 from auditor.questions import Asks, Question
+from auditor.remedies import Remedies, Remedy
 from auditor.routes.base import Work, floor_bits
 from auditor.routes.standard_tables import modulus_strength
 from auditor.rulebook_types import Criterion, Rule, Rulebook
@@ -62,8 +63,8 @@ def build(
     """The record; equal arguments, equal record."""
     known = [establish(declaration, claims, run) for declaration in reading.declarations]
     places = _places(reading.declarations)
-    exposures = Exposures(claims, run)
-    sets = [_parameter_set(item, books, places, exposures) for item in known]
+    exposures, remedies = Exposures(claims, run), Remedies(claims, run, books)
+    sets = [_parameter_set(item, books, places, exposures, remedies) for item in known]
     consulted = {claim_id for item in known for claim_id in item.consulted}
     consulted |= {id_ for item in reading.declarations for id_ in exposures.consulted(item)}
     return {
@@ -140,9 +141,11 @@ def _parameter_set(
     books: Sequence[Rulebook],
     places: Mapping[str, list[dict[str, Any]]],
     exposures: Exposures,
+    remedies: Remedies,
 ) -> dict[str, Any]:
     declaration = known.declaration
     judgement = judge(books, known.facts, known.absent, vocabulary())
+    remedy = remedies.of(known, judgement)
     digest = declaration.digest()
     return {
         "id": declaration.identity,
@@ -163,7 +166,7 @@ def _parameter_set(
             {"name": left.name, "why": left.why, "missing": sorted(left.missing)}
             for left in judgement.books_left_out
         ],
-        "findings": [_finding(finding) for finding in judgement.findings],
+        "findings": [_finding(finding, remedy[finding.rule]) for finding in judgement.findings],
         "questions": _questions(known, judgement, books),
     }
 
@@ -227,7 +230,7 @@ def _criterion(criterion: Criterion) -> dict[str, Any]:
     }
 
 
-def _finding(finding: Finding) -> dict[str, Any]:
+def _finding(finding: Finding, remedy: Remedy) -> dict[str, Any]:
     return {
         "rule": finding.rule,
         "title": finding.title,
@@ -238,7 +241,7 @@ def _finding(finding: Finding) -> dict[str, Any]:
         "values": {name: plain(fact.value) for name, fact in finding.values.items()},
         "missing": sorted(finding.missing),
         "criterion": _criterion(finding.criterion),
-        "remedy": {"text": finding.remedy, "breaks": [], "patch": None},
+        "remedy": remedy.record(),
         "cautions": list(finding.cautions),
         "concession": None,
     }

@@ -1,0 +1,284 @@
+"""What would remove a finding, computed from what is established and checked before it is offered.
+
+Changes of the declaration are combined, least disruptive first, and the right half is run on each
+combination as if it were declared. The first with which the rule that was not met is met, or no
+longer applies, and no other major finding appears, is the remedy. Nothing is searched for: what is
+known of the same modulus is taken from the claims of the set, what is known of a standard group
+from the registry that prints it.
+"""
+
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+from functools import cache
+from itertools import product
+from types import MappingProxyType
+from typing import Any
+
+from auditor import changes
+from auditor.changes import Change, Draft
+from auditor.claims.base import Claim
+from auditor.claims.collection import Claims
+from auditor.claims.factorization import Factorization
+from auditor.claims.order import Membership, Order
+from auditor.claims.origin_formula import Formula
+from auditor.claims.prime import Prime
+from auditor.declaration import Declaration, Place
+from auditor.encoding import plain
+from auditor.facts import Established, establish, subgroup, vocabulary
+from auditor.facts import parts as group_parts
+from auditor.facts.base import Absent
+from auditor.facts.given import Given
+from auditor.findings import Finding, Judgement, Position, judge
+from auditor.intake.standard_groups import StandardGroup, standard_groups
+from auditor.rulebook_types import Rulebook
+from auditor.run_values import RunValues
+
+MOST_CHANGES = 3
+"""Changes put together in one remedy."""
+
+MOST_GROUPS = 2
+"""Standard groups tried: the smallest that reaches the requirement, and the next for rules that ask
+for more."""
+
+NOWHERE = Place("", 1)
+HELD = ("conforming", "not applicable")
+
+
+@dataclass(frozen=True, slots=True)
+class Remedy:
+    """What to do, what that breaks, and the declared keys with their new values, None for a key
+    to take out; no patch where the remedy is the rule's own text."""
+
+    text: str
+    breaks: tuple[str, ...] = ()
+    patch: Mapping[str, Any] | None = None
+
+    def record(self) -> dict[str, Any]:
+        """The remedy as it stands in reports."""
+        patch = None if self.patch is None else plain(dict(self.patch))
+        return {"text": self.text, "breaks": list(self.breaks), "patch": patch}
+
+
+@dataclass(frozen=True, slots=True)
+class _Effect:
+    """What the books say of a declaration that was changed."""
+
+    outcomes: Mapping[str, str]
+    majors: frozenset[str]
+    position: Position
+
+
+class Remedies:
+    """Chooses remedies for the findings of sets, from claims, run values and rulebooks."""
+
+    def __init__(self, claims: Claims, run: RunValues, books: Sequence[Rulebook]) -> None:
+        self._claims = claims
+        self._run = run
+        self._books = books
+        self._moved: dict[Declaration, _Effect] = {}
+        self._found: dict[Declaration, Mapping[str, Remedy]] = {}
+
+    def of(self, known: Established, judgement: Judgement) -> Mapping[str, Remedy]:
+        """A remedy for each finding, by rule: the least disruptive that was found to remove it, or
+        what its rule advises."""
+        same = _nameless(known.declaration)
+        if same not in self._found:
+            here, majors = _Here(self, known), _majors(judgement)
+            self._found[same] = {
+                finding.rule: here.remedy(finding, majors, judgement.position)
+                for finding in judgement.findings
+            }
+        return self._found[same]
+
+    def effect(self, draft: Draft, support: Sequence[Claim]) -> _Effect:
+        """What the books say of a draft, given the claims that support the set as it is."""
+        declaration = _nameless(draft.declaration)
+        if draft.group is None:
+            return self._judged(declaration, Claims([*support, *_orders(draft, support)]))
+        if declaration not in self._moved:
+            self._moved[declaration] = self._judged(declaration, registry_claims(draft.group.name))
+        return self._moved[declaration]
+
+    def support(self, known: Established) -> list[Claim]:
+        """The claims that a set was judged by."""
+        return self._claims.support(sorted(known.consulted))
+
+    def given(self, declaration: Declaration, claims: Claims) -> Given:
+        """The declaration with these claims."""
+        return Given(declaration, claims, self._run)
+
+    def _judged(self, declaration: Declaration, claims: Claims) -> _Effect:
+        known = establish(declaration, claims, self._run)
+        judgement = judge(self._books, known.facts, known.absent, vocabulary())
+        return _Effect(judgement.outcomes, _majors(judgement), judgement.position)
+
+
+def _nameless(declaration: Declaration) -> Declaration:
+    """What equal sets have in common, wherever they are declared."""
+    return replace(declaration, name="", place=NOWHERE)
+
+
+def _majors(judgement: Judgement) -> frozenset[str]:
+    return frozenset(finding.rule for finding in judgement.findings if finding.grade == "major")
+
+
+class _Here:
+    """One set: its drafts in order of disruption, each judged once and only when it is reached."""
+
+    def __init__(self, remedies: Remedies, known: Established) -> None:
+        self._remedies = remedies
+        self._document = known.declaration.document()
+        self._support = remedies.support(known)
+        start = _start(remedies.given(known.declaration, Claims(self._support)))
+        self._drafts = _drafts(start)
+        self._judged: list[tuple[Draft, _Effect]] = []
+
+    def remedy(self, finding: Finding, majors: frozenset[str], position: Position) -> Remedy:
+        """The first draft that removes the finding; otherwise the rule's own words."""
+        if finding.outcome == "nonconforming":
+            for draft, effect in self._effects():
+                met = effect.outcomes.get(finding.rule) in HELD
+                if met and effect.majors <= majors - {finding.rule}:
+                    return self._written(draft, effect.position, position)
+        return Remedy(finding.remedy)
+
+    def _effects(self) -> Iterator[tuple[Draft, _Effect]]:
+        yield from self._judged
+        for draft in self._drafts:
+            item = draft, self._remedies.effect(draft, self._support)
+            self._judged.append(item)
+            yield item
+
+    def _written(self, draft: Draft, after: Position, before: Position) -> Remedy:
+        texts = draft.texts
+        if after != before:
+            texts = (*texts, f"With this alone the position becomes '{after}'.")
+        changed = _patch(self._document, draft)
+        return Remedy(" ".join(texts), draft.breaks, MappingProxyType(changed))
+
+
+def _orders(draft: Draft, support: Sequence[Claim]) -> Iterator[Claim]:
+    """What a draft takes from a claim or from the registry about the order of its generator."""
+    n, g, q = draft.declaration.modulus, draft.declaration.generator, draft.order
+    if q is None:
+        return
+    yield Membership(n, g % n, q, True)
+    if draft.moved:
+        primes = [c for c in support if isinstance(c, Prime) and c.n == q] or [assumed_prime(q)]
+        yield from primes
+        yield Order(n, g, ((q, 1),), 1, (primes[0].id,))
+
+
+def _start(given: Given) -> Draft:
+    """The declaration as it is, with what is known of its group."""
+    order = given.peek(group_parts.generator_order_value)
+    factors = given.peek(group_parts.complete_generator_order)
+    replacement = given.peek(subgroup.prime_generator)
+    is_prime = not isinstance(factors, Absent) and [power for _, power in factors] == [1]
+    value = None if isinstance(order, Absent) else order
+    return Draft(
+        given.declaration,
+        order=value if is_prime else None,
+        length=None if value is None else value.bit_length(),
+        replacement=None if isinstance(replacement, Absent) else replacement,
+    )
+
+
+def _drafts(start: Draft) -> Iterator[Draft]:
+    """All combinations of a few changes that change something, least disruptive first.
+
+    The rank of a combination is that of its most disruptive change. Of each family at most one
+    change is made: first the numbers, then how they are used, last the widths, which depend on
+    both and follow every move to another group.
+    """
+    found: dict[Declaration, tuple[int, int, Draft]] = {}
+    for combination in product(*_families(start.declaration)):
+        chosen = [(rank, change) for rank, change in combination if change is not None]
+        draft = _applied(start, [change for _, change in chosen])
+        if draft is None or not 0 < len(chosen) <= MOST_CHANGES:
+            continue
+        weight = max(rank for rank, _ in chosen), len(chosen)
+        if draft.declaration not in found or weight < found[draft.declaration][:2]:
+            found[draft.declaration] = *weight, draft
+    ordered = sorted(found.values(), key=lambda item: item[:2])
+    yield from (draft for _, _, draft in ordered)
+
+
+Ranked = tuple[int, Change | None]
+
+
+def _families(declaration: Declaration) -> tuple[tuple[Ranked, ...], ...]:
+    """The changes with their ranks by disruption: the owner alone, the peers' code, keys, data."""
+    groups = changes.groups_for(declaration)[:MOST_GROUPS]
+    none: Ranked = (0, None)
+    numbers: list[Ranked] = [none, (1, changes.true_order), (7, changes.prime_order_generator)]
+    numbers += [(8 + i, changes.move_to(group)) for i, group in enumerate(groups)]
+    return (
+        tuple(numbers),
+        (none, (6, changes.hashed_message)),
+        (none, (5, changes.fresh_exponents)),
+        (
+            none,
+            (2, changes.range_check),
+            (3, changes.membership_where_reused),
+            (4, changes.membership_everywhere),
+        ),
+        (none, (1, changes.fit_widths)),
+    )
+
+
+def _applied(start: Draft, chosen: Sequence[Change]) -> Draft | None:
+    """The draft with these changes; None where one of them does not apply."""
+    draft = start
+    for change in chosen:
+        changed = change(draft)
+        if changed is None:
+            return None
+        draft = changed
+    if draft.group is not None:
+        draft = changes.fit_widths(draft) or draft
+    return draft
+
+
+def _patch(document: Mapping[str, Any], draft: Draft) -> dict[str, Any]:
+    """The keys of the declaration document that differ, None for one to take out."""
+    after = draft.declaration.document()
+    if draft.group is not None:
+        after["modulus"] = {"group": draft.group.name}
+        del after["generator"], after["subgroup_order"]
+    return {
+        key: after.get(key)
+        for key in sorted(document.keys() | after.keys())
+        if document.get(key) != after.get(key)
+    }
+
+
+def patched(document: Mapping[str, Any], patch: Mapping[str, Any]) -> dict[str, Any]:
+    """A set of a declaration document with a patch put in."""
+    merged = {**document, **patch}
+    return {key: value for key, value in merged.items() if value is not None}
+
+
+def assumed_prime(n: int) -> Prime:
+    """What the registry is believed to say of a number; never part of a report."""
+    return Prime(n, "baillie-psw", rounds=64)
+
+
+@cache
+def registry_claims(name: str) -> Claims:
+    """What a standard safe-prime group is, as its document prints it: assumed, as an answer of the
+    owner would be; a review of the changed declaration establishes it anew."""
+    (group,) = (group for group in standard_groups() if group.name == name)
+    return Claims(_printed(group))
+
+
+def _printed(group: StandardGroup) -> Iterator[Claim]:
+    n, q = group.modulus, group.subgroup_order
+    primes = [Prime(2, "below-2^64"), assumed_prime(q), assumed_prime(n)]
+    yield from primes
+    two, half, _ = (prime.id for prime in primes)
+    yield Factorization(n - 1, ((2, 1), (q, 1)), 1, tuple(sorted((two, half))))
+    yield Order(n, group.generator, ((q, 1),), 1, (half,))
+    yield Membership(n, group.generator, q, True)
+    if group.formula is not None:
+        yield Formula(n, group.formula.constant, group.formula.offset)
