@@ -53,8 +53,7 @@ def fermat(n: int, steps: int) -> int:
     square = a * a - n
     for _ in range(steps):
         if gmpy2.is_square(square):
-            divisor = int(a - gmpy2.isqrt(square))
-            return divisor if divisor > 1 else 1
+            return int(a - gmpy2.isqrt(square))
         square += 2 * a + 1
         a += 1
     return 1

@@ -22,7 +22,7 @@ def main() -> int:
         if index == behaviour.get("stop_at"):
             break
         if index == behaviour.get("die_at"):
-            os.kill(os.getpid(), signal.SIGKILL)
+            os.kill(os.getpid(), behaviour.get("by", signal.SIGKILL))
         if index == behaviour.get("sleep_at"):
             with open(behaviour["pid_file"], "w") as file:
                 file.write(str(os.getpid()))

@@ -1,5 +1,6 @@
 """The factor search: laws, other libraries, and numbers made to be awkward."""
 
+from dataclasses import replace
 from math import prod
 
 import flint
@@ -106,6 +107,20 @@ def test_a_trapdoor_at_full_size() -> None:
     assert found == {p: "p-1", q: "p-1"}
 
 
+def test_factors_that_p_minus_1_finds_together_are_told_apart() -> None:
+    """Both appear in the same batch of primes, beside a cofactor that does not."""
+    p, q = (
+        next(n for k in range(2, 1000, 2) if sympy.isprime(n := k * smooth + 1))
+        for smooth in (prod(sympy.primerange(5, 90)), prod(sympy.primerange(7, 100)))
+    )
+    cofactor = composite(3, 512)
+
+    result = search(p * q * cofactor, Plan(1000, 20, p_minus_1=(1000, 0)))
+
+    assert {factor.prime for factor in result.factors} == {p, q}
+    assert result.composites == ((cofactor, 1),)
+
+
 def test_close_factors_are_found_by_fermat() -> None:
     """Two consecutive primes of 1024 bits."""
     p = prime("close", 1024)
@@ -143,6 +158,23 @@ def test_the_search_in_a_hard_composite_ends_with_nothing() -> None:
     assert [done.count for done in result.work.curves] == [
         level.curves for level in STANDARD.levels
     ]
+
+
+def test_nothing_is_done_twice(monkeypatch: pytest.MonkeyPatch) -> None:
+    """With the work of an equal search at hand, no method runs again."""
+    n = composite(2, 256)
+    plan = Plan(1000, 20, rho_iterations=100, p_minus_1=(50, 900), fermat_steps=5)
+    plan = replace(plan, p_plus_1=(50, 900), p_plus_1_starts=2)
+    first = search(n, plan)
+
+    def again(*_: object, **__: object) -> None:
+        raise AssertionError("done before")
+
+    for name in ("lucas.p_minus_1", "lucas.p_plus_1", "rho", "fermat"):
+        monkeypatch.setattr(f"auditor.search.factoring.{name}", again)
+    assert search(n, plan, done=first.work) == first
+    with pytest.raises(AssertionError):
+        search(n, replace(plan, p_plus_1=(50, 901)), done=first.work)
 
 
 def test_very_long_numbers_get_less_work_and_the_record_says_so() -> None:

@@ -52,6 +52,7 @@ def test_a_find_ends_the_unit(tmp_path: Path) -> None:
     [
         ({"stop_at": 3}, "3 of 4"),
         ({"die_at": 1}, "-9"),
+        ({"die_at": 3, "by": signal.SIGUSR1}, "-10"),
         ({"status": 1}, "ended with 1"),
         ({"find_at": 0, "factor": P + 2}, "does not divide"),
         ({"find_at": 0, "factor": 1}, "does not divide"),

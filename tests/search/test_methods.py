@@ -92,6 +92,14 @@ def test_rho_finds_a_factor_of_twenty_bits(p: int, q: int) -> None:
     assert p * q % divisor == 0
 
 
+def test_rho_tells_factors_apart_that_one_batch_swallows() -> None:
+    """Factors so small that all appear among the first 128 differences; only equal cycles fail."""
+    pairs = [(p, q) for p in sympy.primerange(50, 150) for q in sympy.primerange(150, 250)]
+    proper = [rho(p * q, 1 << 10) in (p, q) for p, q in pairs]
+
+    assert proper.count(True) > 0.8 * len(pairs)
+
+
 def test_rho_stops_in_time() -> None:
     """Nothing is found, and nothing claimed, within too few steps."""
     assert rho((2**89 - 1) * (2**107 - 1), 1000) == 1

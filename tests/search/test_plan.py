@@ -38,6 +38,15 @@ def test_p_plus_1_survives_its_record() -> None:
     assert Work.from_runs(work.runs()) == work
 
 
+def test_curves_are_counted_by_both_bounds() -> None:
+    """A new count replaces the old one of the same bounds, and no other."""
+    work = Work().with_curves(5, 7, 1, "b").with_curves(5, 6, 2, "a").with_curves(5, 7, 3, "a")
+
+    assert work.curves == (Curves(5, 6, 2), Curves(5, 7, 3))
+    assert (work.count(5, 6), work.count(5, 7), work.count(6, 7)) == (2, 3, 0)
+    assert work.engines == ("a", "b")
+
+
 @pytest.mark.parametrize(
     "run", [("divination", ()), ("rho", ()), ("elliptic curves", (("b1", 5), ("b2", 6)))]
 )

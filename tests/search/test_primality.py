@@ -11,7 +11,13 @@ import yaml
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.search.primality import candidate, least_witness, n_minus_1_proof, perfect_power
+from auditor.search.primality import (
+    candidate,
+    least_witness,
+    n_minus_1_proof,
+    perfect_power,
+    suffices,
+)
 
 DATA = yaml.safe_load(
     (Path(__file__).parents[1] / "data" / "primality.yaml").read_text(encoding="utf-8")
@@ -110,6 +116,26 @@ def test_proofs_prove(start: int) -> None:
     for prime, base in proof.witnesses:
         assert pow(base, n - 1, n) == 1
         assert gmpy2.gcd(pow(base, (n - 1) // prime, n) - 1, n) == 1
+
+
+@given(st.integers(1, 2**40), st.integers(1, 200), st.integers(1, 200))
+def test_a_part_that_divides_every_factor_less_one_proves_nothing(
+    half: int, a: int, b: int
+) -> None:
+    """n = (aF + 1)(bF + 1) may well pass for every prime of F, so F must not suffice."""
+    part = sympy.factorint(2 * half)
+    n = (a * 2 * half + 1) * (b * 2 * half + 1)
+    exact = [(p, int(gmpy2.remove(n - 1, p)[1])) for p in part]
+
+    if prod(p**e for p, e in exact) == 2 * half:
+        assert not suffices(n, exact)
+
+
+def test_no_small_composite_is_proved() -> None:
+    """All odd composites below 10,000, from all primes of n - 1."""
+    for n in range(9, 10_000, 2):
+        if not sympy.isprime(n):
+            assert n_minus_1_proof(n, sympy.primefactors(n - 1)) is None
 
 
 @given(st.integers(2, 2**30), st.integers(2, 2**30))
