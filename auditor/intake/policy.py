@@ -71,8 +71,8 @@ def read_governed(
 ) -> Governed:
     """Like :func:`auditor.intake.tree.read_inputs`, with the usage files of ``policy`` alone.
 
-    The directory stands for the current one where it has the reviewed path too, otherwise for the
-    path itself: with ``configs/`` reviewed, either its own ``configs/`` is the counterpart or it.
+    Where ``policy`` is a git checkout it stands for the checkout that a path lies in; otherwise for
+    the current directory where it has that path too, and else for the path itself.
     """
     run = _Run(stdin)
     for item in collect(paths):
@@ -89,13 +89,17 @@ def read_governed(
     run.usages = [_at(file, path) for path, file in moved.items()]
     result = run.result()
     origin = {path: file.path for path, file in moved.items()}
+    idle = [item for item in result.passed if item.path in origin]
     result = replace(
         result,
         errors=tuple(sorted([*_told_once(result.errors, origin, len(tops)), *_errors(files)])),
-        passed=tuple(_told_once(result.passed, origin, len(tops))),
+        passed=tuple(item for item in result.passed if item.path not in origin),
         notices=tuple(_told_once(result.notices, origin, 1)),
     )
-    return Governed(result, tuple(sorted(read for _, read in files)), unused)
+    unmatched = tuple(
+        f"{item.path}:{item.line}: {item.reason}." for item in _told_once(idle, origin, len(tops))
+    )
+    return Governed(result, tuple(sorted(read for _, read in files)), (*unused, *unmatched))
 
 
 def _errors(files: Iterable[tuple[UsageFile, InputFile]]) -> list[InputError]:
@@ -144,10 +148,18 @@ def _counterpart(path: str, policy: str | Path) -> str:
     """The directory under review that ``policy`` stands for, seen from one reviewed path."""
     if path == STANDARD_INPUT:
         return "."
+    if (Path(policy) / ".git").exists() and (checkout := _checkout(path)):
+        return checkout
     inside = not os.path.isabs(path) and ".." not in Path(path).parts
     if inside and (Path(policy) / path).exists():
         return "."
     return path if os.path.isdir(path) else os.path.dirname(path) or "."
+
+
+def _checkout(path: str) -> str | None:
+    """The top of the git checkout that ``path`` lies in."""
+    here = Path(os.path.abspath(path))
+    return next((str(top) for top in (here, *here.parents) if (top / ".git").exists()), None)
 
 
 def _moved(path: str, policy: str | Path, top: str) -> str:
