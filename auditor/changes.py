@@ -230,14 +230,11 @@ def _membership(draft: Draft, wanted: Callable[[Party], bool]) -> Draft | None:
         for party in draft.parties
     )
     text = (
-        f"Refuse a received y unless 2 <= y <= n-2 and y^q = 1 modulo n{_who(draft, parties)}; q "
-        f"is the prime order of the generator, of {order.bit_length()} bits."
+        f"Refuse a received y unless 2 <= y <= n-2 and y^q = 1 modulo n{_who(draft, parties)}, "
+        f"where q is the prime order of the generator, of {order.bit_length()} bits. That costs "
+        "one more exponentiation for each received value and refuses no correct peer."
     )
-    breaks = (
-        "No correct peer is refused; the check costs one more exponentiation with q for each "
-        "received value."
-    )
-    return _unless_signing(draft, parties, text, breaks, subgroup_order=order)
+    return _unless_signing(draft, parties, text, subgroup_order=order)
 
 
 def _who(draft: Draft, parties: tuple[Party, ...]) -> str:
@@ -250,12 +247,11 @@ def _unless_signing(
     draft: Draft,
     parties: tuple[Party, ...],
     text: str,
-    *breaks: str,
     subgroup_order: int | None = None,
 ) -> Draft | None:
     if draft.declaration.purpose == "signature":
         return None
-    changed = _with_parties(draft, parties, text, *breaks)
+    changed = _with_parties(draft, parties, text)
     if changed is None or subgroup_order is None:
         return changed
     declaration = replace(changed.declaration, subgroup_order=subgroup_order)
