@@ -274,6 +274,39 @@ def verify(report: str, against: tuple[str, ...], **options: Any) -> int:
 
 
 @main.command()
+@click.argument("source", metavar="PATH|GROUP")
+def declare(source: str) -> int:
+    """Write a declaration to start from: of a standard group, or of what a file holds.
+
+    \b
+    auditor declare ffdhe2048 > links.yaml
+    auditor declare server.pem > server.yaml
+    """
+    from auditor.declare import of_group, of_sets
+    from auditor.intake.standard_groups import find, suggest
+    from auditor.intake.tree import read_inputs
+
+    if source != "-" and not Path(source).exists():
+        group = find(source)
+        if group is None:
+            advice = " or ".join(suggest(source))
+            message = f"{source[:60]!r} is no file and names no standard group"
+            raise click.UsageError(f"{message}; did you mean {advice}?" if advice else message)
+        click.echo(of_group(group), nl=False)
+        return 0
+    read = read_inputs([source], sys.stdin.buffer)
+    for error in read.errors:
+        click.echo(str(error), err=True)
+    for notice in read.notices:
+        click.echo(str(notice), err=True)
+    if read.declarations:
+        click.echo(of_sets(read.declarations), nl=False)
+    elif not read.errors:
+        click.echo("nothing was recognised as parameters", err=True)
+    return 2 if read.errors or not read.declarations else 0
+
+
+@main.command()
 @click.argument("paths", nargs=-1, required=True)
 @click.option("--set", "name", help="Only the parameter set of that name.")
 @click.option("--seed", type=click.IntRange(0), help="Draw the same exponents again.")
