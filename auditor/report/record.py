@@ -158,7 +158,10 @@ def _parameter_set(
         "absent": {name: _absence(absent) for name, absent in known.absent.items()},
         "routes": [_route(work, known) for work in known.routes],
         "exposure": [asdict(row) for row in exposures.of(declaration)],
-        "properties": [],
+        "properties": [
+            {"name": item.name, "statement": item.statement, "source": item.source}
+            for item in known.properties
+        ],
         "position": judgement.position,
         "decided_by": judgement.decided_by.rule if judgement.decided_by else None,
         "outcomes": dict(judgement.outcomes),
@@ -307,6 +310,8 @@ def _cost(question: Question) -> tuple[float | None, str]:
         case Asks.FACTORIZATION | Asks.MODULUS_FACTORS:
             level = LEVELS[2]
             return level.curves, f"elliptic curves for factors of {level.digits} digits"
+        case Asks.LEAST_OFFSET:
+            return question.integers[-1], "offsets to exclude"
         case Asks.SPECIAL_FORM:
             return 1, "search for a special form"
         case _:
