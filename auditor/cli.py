@@ -440,19 +440,30 @@ def list_books() -> int:
 
 
 @rulebook.command("show")
-@click.argument("name")
-def show_rule(name: str) -> int:
+@click.argument("names", nargs=-1)
+@click.option("--html", type=click.Path(dir_okay=False), help="Write whole books as one page.")
+def show_rule(names: tuple[str, ...], html: str | None) -> int:
     """Show a rule or a whole book, by its id or name.
+
+    With --html the page holds the books named, shipped ones or files; without a name, all shipped.
 
     \b
     auditor rulebook show generator-trivial
     auditor rulebook show strength
+    auditor rulebook show --html rules.html
     """
-    from auditor.rule_pages import NoSuchRule, page
+    from auditor.outputs import write_text
+    from auditor.rule_pages import NoSuchRule, page, reference
+    from auditor.rulebook_types import RulebookError
 
+    if not names and not html:
+        raise click.UsageError("name a rule or a book, or write the whole reference with --html")
     try:
-        click.echo(page(name), nl=False)
-    except NoSuchRule as error:
+        if html:
+            write_text(html, reference(names))
+        else:
+            click.echo("\n".join(map(page, names)), nl=False)
+    except (NoSuchRule, RulebookError) as error:
         raise click.ClickException(str(error)) from error
     return 0
 

@@ -1,13 +1,20 @@
-"""Rulebooks for a person: a listing, the page of a rule or a book, and the result of its tests."""
+"""Rulebooks for a person: a listing, the page of a rule or a book, the reference of all rules as
+one HTML page, and the result of their tests."""
 
 import textwrap
 from collections.abc import Iterable, Iterator, Sequence
 from difflib import get_close_matches
+from pathlib import Path
+from typing import Any
 
+from auditor.data_files import data
+from auditor.encoding import shorten
 from auditor.facts import vocabulary
+from auditor.report.text import visible
+from auditor.report.words import plural
 from auditor.rule_examples import failures
-from auditor.rulebook import available, load
-from auditor.rulebook_types import Criterion, Rule, Rulebook, RulebookError
+from auditor.rulebook import available, load, load_all
+from auditor.rulebook_types import Criterion, Example, Outcome, Rule, Rulebook, RulebookError
 
 WIDTH = 88
 
@@ -38,6 +45,71 @@ def page(name: str) -> str:
         hint = f"; did you mean {' or '.join(close)}?" if close else ""
         raise NoSuchRule(f"no rule or book is called {name}{hint}")
     return "\n".join(_rule(*rules[name])) + "\n"
+
+
+def reference(sources: Sequence[str | Path] = ()) -> str:
+    """The books of these names or files, all shipped ones for none, as one HTML page.
+
+    It needs no other file: no script, no request; a place ``#rule-ID`` for every rule. Raises
+    RulebookError for books that cannot be used together.
+    """
+    from jinja2 import Environment, FunctionLoader, StrictUndefined
+    from markupsafe import Markup
+
+    folder = data("reports")
+    environment = Environment(
+        loader=FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+        keep_trailing_newline=True,
+        finalize=_shown,
+    )
+    books = load_all(sources or available(), vocabulary())
+    rules = [rule for book in books for rule in book.rules]
+    return environment.get_template("rules.html.j2").render(
+        style=Markup((folder / "report.css").read_text(encoding="utf-8")),
+        books=books,
+        rules=rules,
+        doubtful=sum(rule.criterion.confidence != "confirmed" for rule in rules),
+        count=plural,
+        oneline=_oneline,
+        criterion=_criterion,
+        examples=_examples,
+    )
+
+
+def _shown(value: Any) -> Any:
+    """Text of a book, which anybody may have written, with nothing hidden in it."""
+    return visible(value) if type(value) is str else value
+
+
+def _oneline(text: str) -> str:
+    return " ".join(visible(text).split())
+
+
+def _examples(rule: Rule) -> Iterator[tuple[str, list[list[str]]]]:
+    """The examples of a rule by outcome, in the order of the outcomes' first example."""
+    groups: dict[Outcome, list[list[str]]] = {}
+    for example in rule.examples:
+        groups.setdefault(example.outcome, []).append(list(_example(example)))
+    yield from groups.items()
+
+
+def _example(example: Example) -> Iterator[str]:
+    """What an example states, a fact each: its value, its bound, or why it is absent."""
+    for name, fact in example.facts.items():
+        loose = "" if fact.tight else " (may still move)"
+        yield f"{name} = {_value(fact.value)}{loose}"
+    for name, absent in example.absent.items():
+        yield f"{name} {absent.reason}"
+
+
+def _value(value: Any) -> str:
+    if isinstance(value, bool):
+        return "true" if value else "false"
+    return repr(value) if isinstance(value, str) else shorten(value)
 
 
 def tested(names: Sequence[str]) -> tuple[list[str], str]:
