@@ -54,6 +54,7 @@ parameter_sets:
 """
 DAY, LAST_DAY, TOO_LATE = "2026-12-01", "2027-01-31", "2027-02-01"
 RULE = "strength-insufficient"
+MANUAL = Path(__file__).parents[1] / "reports" / "README.md"
 
 
 @cache
@@ -389,6 +390,15 @@ granted:
 
         assert found or len(granted) == len(value["granted"])
         assert all(1 <= problem.line <= text.count("\n") + 1 for problem in found)
+
+    def test_the_file_in_the_manual_is_one(self) -> None:
+        """It is read, and covers the finding about the weak set."""
+        (text,) = re.findall(r"```yaml\n(.*?)```", MANUAL.read_text("utf-8"), re.DOTALL)
+        (shown,) = parse(text.encode(), "c.yaml", vocabulary()).granted
+
+        assert (shown.rule, shown.outcome) == (entry().rule, entry().outcome)
+        assert shown.set_digest == entry().set_digest
+        assert worsened(shown.values, finding(reviewed())["values"]) == ()
 
     def test_integers_beyond_json_are_compared_as_the_report_writes_them(self) -> None:
         """Hex digits with and without quotes are the same value."""
