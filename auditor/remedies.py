@@ -192,7 +192,7 @@ def _drafts(start: Draft) -> Iterator[Draft]:
     both and follow every move to another group.
     """
     found: dict[Declaration, tuple[int, int, Draft]] = {}
-    for combination in product(*_families(start.declaration)):
+    for combination in product(*_families(start)):
         chosen = [(rank, change) for rank, change in combination if change is not None]
         draft = _applied(start, [change for _, change in chosen])
         if draft is None or not 0 < len(chosen) <= MOST_CHANGES:
@@ -205,26 +205,36 @@ def _drafts(start: Draft) -> Iterator[Draft]:
 
 
 Ranked = tuple[int, Change | None]
+NO_CHANGE: Ranked = (0, None)
 
 
-def _families(declaration: Declaration) -> tuple[tuple[Ranked, ...], ...]:
-    """The changes with their ranks by disruption: the owner alone, the peers' code, keys, data."""
-    groups = changes.groups_for(declaration)[:MOST_GROUPS]
-    none: Ranked = (0, None)
-    numbers: list[Ranked] = [none, (1, changes.true_order), (7, changes.prime_order_generator)]
-    numbers += [(8 + i, changes.move_to(group)) for i, group in enumerate(groups)]
-    return (
-        tuple(numbers),
-        (none, (6, changes.hashed_message)),
-        (none, (5, changes.fresh_exponents)),
-        (
-            none,
+def _families(start: Draft) -> list[list[Ranked]]:
+    """The changes with their ranks by disruption: the owner alone, the peers' code, keys, data.
+
+    Those that could not apply are left out, so that few combinations remain: where the order of
+    the generator is open, a change that needs it may still follow a move to a known group.
+    """
+    groups = changes.groups_for(start.declaration)[:MOST_GROUPS]
+    families: list[list[tuple[int, Change]]] = [
+        [
+            (1, changes.true_order),
+            (7, changes.prime_order_generator),
+            *((8 + i, changes.move_to(group)) for i, group in enumerate(groups)),
+        ],
+        [(6, changes.hashed_message)],
+        [(5, changes.fresh_exponents)],
+        [
             (2, changes.range_check),
             (3, changes.membership_where_reused),
             (4, changes.membership_everywhere),
-        ),
-        (none, (1, changes.fit_widths)),
-    )
+        ],
+    ]
+    hopeful = start if start.order else replace(start, order=start.declaration.modulus)
+    possible: list[list[Ranked]] = [
+        [NO_CHANGE, *(item for item in family if item[1](hopeful) is not None)]
+        for family in families
+    ]
+    return [*possible, [NO_CHANGE, (1, changes.fit_widths)]]
 
 
 def _applied(start: Draft, chosen: Sequence[Change]) -> Draft | None:
