@@ -15,15 +15,26 @@ from auditor.claims.base import Claim, Draw, Factors, Refuted, product
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite, PerfectPower
 from auditor.claims.factorization import Factorization
-from auditor.claims.forgery import forgery_relations
+from auditor.claims.forgery import ForgeryRelations, forgery_relations
 from auditor.claims.order import Membership, Order
-from auditor.claims.origin import regenerate
-from auditor.claims.origin_formula import CONSTANTS, formula_of, least_offset
-from auditor.claims.origin_generator import generator_from_integers
+from auditor.claims.origin import Origin, regenerate
+from auditor.claims.origin_formula import (
+    CONSTANTS,
+    Formula,
+    LeastOffset,
+    formula_of,
+    least_offset,
+)
+from auditor.claims.origin_generator import CanonicalGenerator, generator_from_integers
 from auditor.claims.origin_recipe import Recipe
-from auditor.claims.primality_tests import DETERMINISTIC_BELOW
+from auditor.claims.primality_tests import DETERMINISTIC_BELOW, passes_strong_test
 from auditor.claims.prime import Prime
-from auditor.claims.public_values import shared_exponents, visible_exponents
+from auditor.claims.public_values import (
+    SharedExponents,
+    VisibleExponents,
+    shared_exponents,
+    visible_exponents,
+)
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.claims.subgroup_generator import subgroup_generator
@@ -33,6 +44,8 @@ from auditor.search import primality
 from auditor.search.curves import Engine, Executor
 from auditor.search.factoring import SearchInterrupted, SearchResult, search
 from auditor.search.plan import QUICK, Plan, plan_for
+from auditor.search.plan_steps import next_part
+from auditor.search.primes import primes_up_to
 from auditor.search.work import Work
 
 Kind = TypeVar("Kind", bound=Claim)
@@ -52,6 +65,23 @@ class Cores:
 
 ALONE = Cores()
 
+MADE_BY_CHECKING = (
+    Membership,
+    Origin,
+    Formula,
+    LeastOffset,
+    CanonicalGenerator,
+    SharedExponents,
+    VisibleExponents,
+    ForgeryRelations,
+)
+
+
+def worth_keeping(claim: Claim) -> bool:
+    """Whether recalling a claim is cheaper than making it again; not where the check, which it
+    undergoes when it is recalled, is the very computation that makes it."""
+    return not isinstance(claim, MADE_BY_CHECKING)
+
 
 class Answers:
     """Answers questions about integers and adds what it establishes to ``claims``."""
@@ -60,15 +90,15 @@ class Answers:
         self, claims: Claims, run: RunValues, draw: Draw, keep: Keep, cores: Cores = ALONE
     ) -> None:
         self.claims = claims
-        self._run = run
-        self._draw = draw
-        self._keep = keep
-        self._cores = cores
+        self.run = run
+        self.draw = draw
+        self.keep = keep
+        self.cores = cores
 
     @property
     def deep(self) -> bool:
         """Whether the effort goes beyond what costs next to nothing."""
-        return self._run.effort != "quick" or self._run.factor_digits is not None
+        return self.run.effort != "quick" or self.run.factor_digits is not None
 
     def answer(self, question: Question) -> None:
         """Make the claims that the question calls for.
@@ -76,49 +106,53 @@ class Answers:
         Raises :class:`Refuted` when search proposes what its check refuses; the question then
         stays open.
         """
+        while not self.step(question):
+            pass
+
+    def step(self, question: Question) -> bool:
+        """Answer the question, or go on with it for a bounded amount of work; whether that was
+        all. What a step found is in ``claims`` and the next one goes on from there.
+
+        Raises :class:`Refuted`.
+        """
         match question.asks:
             case Asks.PRIMALITY:
                 self.settle_primality(*question.integers)
             case Asks.SMALL_FACTORS:
                 number, *hints = question.integers
-                self._factor(number, tuple(hints), QUICK)
+                return self._factor(number, tuple(hints), QUICK)
             case Asks.FACTORIZATION:
-                self._factor(question.integers[0], (), self._plan())
+                return self._factor(question.integers[0], (), self._plan())
             case Asks.MODULUS_FACTORS:
-                self._factor(question.integers[0], (), self._plan().for_modulus())
+                return self._factor(question.integers[0], (), self._plan().for_modulus())
             case Asks.ORDER:
                 n, element, multiple, _ = question.integers
                 self._order(n, element, multiple)
-            case Asks.MEMBERSHIP:
-                n, element, exponent = question.integers
-                member = gmpy2.powmod(element, exponent, n) == 1
-                self._accept(Membership(n, element, exponent, bool(member)))
-
             case Asks.SPECIAL_FORM:
                 self._special_form(*question.integers)
-
             case Asks.SUBGROUP_GENERATOR:
                 self._subgroup_generator(*question.integers)
-
-            case Asks.LEAST_OFFSET if self._run.effort != "thorough":
+            case Asks.LEAST_OFFSET if self.run.effort != "thorough":
                 pass
             case _:
-                self.claims.add([self._made(question)])
+                self._take(self._made(question))
+        return True
 
     def _made(self, question: Question) -> Claim:
-        """A claim whose check is the very computation that makes it: that is not done twice, and
-        nothing is gained by keeping the claim, since what is recalled is checked again."""
+        """A claim whose check is the very computation that makes it; that is not done twice."""
         n, *others = question.integers
         match question.asks:
+            case Asks.MEMBERSHIP:
+                return _membership(*question.integers)
             case Asks.ORIGIN:
                 recipe = Recipe.from_integers(tuple(others[1:]))
-                return regenerate(n, others[0], recipe, self.settle_primality, self._draw)
+                return regenerate(n, others[0], recipe, self.settle_primality, self.draw)
             case Asks.CANONICAL_GENERATOR:
                 return generator_from_integers(*question.integers)
             case Asks.FORMULA:
                 return formula_of(n, CONSTANTS[others[0]])
             case Asks.LEAST_OFFSET:
-                return least_offset(n, CONSTANTS[others[0]], others[1], self._draw)
+                return least_offset(n, CONSTANTS[others[0]], others[1], self.draw)
             case Asks.SHARED_EXPONENTS:
                 return shared_exponents(n, others[0], others[1:])
             case Asks.VISIBLE_EXPONENTS:
@@ -132,11 +166,12 @@ class Answers:
         known = self.claims.prime(n)
         if known is not None and (self.claims.perfect_power(n) or not gmpy2.is_power(n)):
             return known
-        candidate = primality.candidate(n)
-        if not candidate.prime:
-            return self._composite(candidate)
-        if n < DETERMINISTIC_BELOW:
-            return self._accept(Prime(n, "below-2^64"))
+        if n < DETERMINISTIC_BELOW or not _looks_prime(n):
+            candidate = primality.candidate(n)
+            if not candidate.prime:
+                return self._composite(candidate)
+            if n < DETERMINISTIC_BELOW:
+                return self._accept(Prime(n, "below-2^64"))
         return self._proved_from_half(n) or self._probable(n)
 
     def _composite(self, candidate: primality.Candidate) -> Composite:
@@ -150,64 +185,89 @@ class Answers:
         return self._accept(Composite(candidate.n, witness=candidate.witness))
 
     def _proved_from_half(self, n: int) -> Prime | None:
-        """A proof of n = 2q + 1 from q, where q is a prime itself: it costs one witness."""
+        """A proof of n = 2q + 1 from q, where q is a prime itself: it costs one exponentiation.
+        The base 2 serves whenever n is prime, since its square less 1 is 3."""
         half = (n - 1) // 2
-        if not primality.is_likely_prime(half):
+        if not _looks_prime(half):
             return None
         support = self.settle_primality(half)
-        proof = primality.n_minus_1_proof(n, [half])
-        if proof is None or not isinstance(support, Prime):
+        if not isinstance(support, Prime):
             return None
-        return self._accept(
-            Prime(n, "n-1", factored=proof.factored, witnesses=proof.witnesses, uses=(support.id,))
-        )
+        proof = Prime(n, "n-1", factored=((half, 1),), witnesses=((half, 2),), uses=(support.id,))
+        try:
+            return self._accept(proof)
+        except Refuted:
+            return None
 
     def _probable(self, n: int) -> Prime | Composite:
         try:
-            return self._accept(Prime(n, "baillie-psw", rounds=self._run.rounds))
+            return self._accept(Prime(n, "baillie-psw", rounds=self.run.rounds))
         except Refuted:
             # No quick test found it, an unpredictable base did.
             return self._accept(Composite(n, witness=primality.least_witness(n)))
 
     def _plan(self) -> Plan:
-        return plan_for(self._run.effort, self._run.factor_digits)
+        return plan_for(self.run.effort, self.run.factor_digits)
 
-    def _factor(self, number: int, hints: tuple[int, ...], plan: Plan) -> None:
-        """Search on from what is known about ``number``; an interruption keeps what was found."""
+    def _factor(self, number: int, hints: tuple[int, ...], plan: Plan) -> bool:
+        """Search on from what is known about ``number``, up to a bounded number of curves;
+        whether the plan is carried out. An interruption keeps what was found."""
         known = self.claims.factorization(number)
-        primes = tuple(prime for prime, _ in known.factors) if known else ()
+        primes = (*hints, *(prime for prime, _ in known.factors)) if known else hints
+        if pairs := self._divided(number, primes):
+            self._keep_factors(number, pairs, 1)
+            return True
+        done = self._work_done(known)
+        part = next_part(plan, done or Work(), number.bit_length())
         try:
             result = search(
                 number,
-                plan,
-                known=(*hints, *primes),
-                executor=self._cores.executor,
-                jobs=self._cores.jobs,
-                engine=self._cores.engine,
-                done=self._work_done(known),
+                part,
+                known=primes,
+                executor=self.cores.executor,
+                jobs=self.cores.jobs,
+                engine=self.cores.engine,
+                done=done,
             )
         except SearchInterrupted as interrupted:
             self._keep_factorization(number, interrupted.result)
             raise
         self._keep_factorization(number, result)
+        return result.rest == 1 or part.levels == plan.levels
+
+    def _divided(self, number: int, known: Iterable[int]) -> Factors | None:
+        """All of ``number`` in primes, where those that are claimed already are all there are."""
+        proof = self.claims.prime(number + 1)
+        proven = {prime for prime, _ in proof.factored} if isinstance(proof, Prime) else set()
+        rest, pairs = gmpy2.mpz(number), []
+        for prime in sorted({2, *known, *proven}):
+            if prime > 2 and not isinstance(self.claims.prime(prime), Prime):
+                continue
+            rest, exponent = gmpy2.remove(rest, prime)
+            if exponent:
+                pairs.append((prime, int(exponent)))
+        return tuple(pairs) if rest == 1 else None
 
     def _work_done(self, known: Factorization | None) -> Work | None:
         record = furthest(self.claims, known.rest) if known else None
         return record[1] if record else None
 
     def _keep_factorization(self, number: int, result: SearchResult) -> None:
-        claims = [self.settle_primality(prime) for prime, _ in result.pairs]
-        if result.rest > 1:
-            claims.append(self.settle_primality(result.rest))
-        uses = tuple(sorted(claim.id for claim in claims))
-        self._accept(Factorization(number, result.pairs, result.rest, uses))
+        self._keep_factors(number, result.pairs, result.rest)
         if result.rest > 1:
             self._accept(Searched(result.rest, result.engine or "built-in", result.work.runs()))
+
+    def _keep_factors(self, number: int, pairs: Factors, rest: int) -> None:
+        claims = [self.settle_primality(prime) for prime, _ in pairs]
+        if rest > 1:
+            claims.append(self.settle_primality(rest))
+        uses = tuple(sorted(claim.id for claim in claims))
+        self._accept(Factorization(number, pairs, rest, uses))
 
     def _special_form(self, n: int) -> None:
         from auditor.search import special_form
 
-        tiers = (1, 2, 3) if self._run.effort == "thorough" else (1, 2)
+        tiers = (1, 2, 3) if self.run.effort == "thorough" else (1, 2)
         found = special_form.search(n, tiers)
         if found is None:
             self._accept(FormSearched(n, tiers))
@@ -230,10 +290,12 @@ class Answers:
             others = product(factors) // prime**exponent
             power, steps = gmpy2.powmod(whole, others, n), 0
             while power != 1 and steps < exponent:
-                power, steps = gmpy2.powmod(power, prime, n), steps + 1
+                # The last power is 1 if the multiple is one: the check would notice.
+                power = gmpy2.powmod(power, prime, n) if steps + 1 < exponent else 1
+                steps += 1
             if steps:
                 known.append((prime, steps))
-        complete = gmpy2.powmod(element, product(tuple(known)), n) == 1
+        complete = rest == 1 or gmpy2.powmod(element, product(tuple(known)), n) == 1
         uses = tuple(sorted(self.settle_primality(prime).id for prime, _ in known))
         self._accept(Order(n, element, tuple(known), 1 if complete else rest, uses))
 
@@ -247,7 +309,25 @@ class Answers:
 
     def _accept(self, claim: Kind) -> Kind:
         used = {claim_id: self.claims[claim_id] for claim_id in claim.uses}
-        claim.check(used, self._draw)
+        claim.check(used, self.draw)
+        return self._take(claim)
+
+    def _take(self, claim: Kind) -> Kind:
         self.claims.add([claim])
-        self._keep([claim])
+        if worth_keeping(claim):
+            self.keep([claim])
         return claim
+
+
+def _looks_prime(n: int) -> bool:
+    """Whether ``n`` has no small factor and passes the strong test to the base 2: what it costs to
+    find out that all the rounds are worth running."""
+    if any(n % prime == 0 for prime in primes_up_to(primality.TRIAL_BOUND)):
+        return False
+    return n > 1 and passes_strong_test(n, 2)
+
+
+def _membership(n: int, element: int, exponent: int) -> Membership:
+    if n < 2 or not 0 <= element < n:
+        raise Refuted("the element is not reduced modulo the modulus")
+    return Membership(n, element, exponent, bool(gmpy2.powmod(element, exponent, n) == 1))

@@ -18,6 +18,8 @@ import click
 from auditor import __version__
 
 if TYPE_CHECKING:
+    from auditor.cluster import Cluster
+    from auditor.pool import LocalPool
     from auditor.review import Surroundings
     from auditor.run_values import Effort, RunValues
 
@@ -26,6 +28,10 @@ EFFORTS = ("quick", "standard", "thorough")
 POLICY_HELP = "Take rulebook files, concessions and usage files from there alone."
 MOST_DIGITS = 20_000
 """Decimal digits that Python may read and write: enough for integers of 65,536 bits."""
+
+
+class Interrupted(Exception):
+    """A review was interrupted; the text says why, and what is kept of it."""
 
 
 @click.group(context_settings={"help_option_names": ["-h", "--help"]})
@@ -45,6 +51,7 @@ def main() -> None:
 @click.option("--html", type=click.Path(dir_okay=False), help="Write the report as HTML.")
 @click.option("--markdown", type=click.Path(dir_okay=False), help="Write it as Markdown.")
 @click.option("--json", "json_", type=click.Path(dir_okay=False), help="Write the full record.")
+@click.option("--json-lines", type=click.Path(dir_okay=False), help="Write it a set a line.")
 @click.option("--sarif", type=click.Path(dir_okay=False), help="Write it as SARIF 2.1.0.")
 @click.option("--markdown-limit", default=32_767, show_default=True, help="Most characters.")
 @click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
@@ -58,6 +65,7 @@ def main() -> None:
 @click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
 @click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
 @click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+@click.option("--cluster", metavar="ADDRESS", help="A dask scheduler, in place of --jobs.")
 def review(paths: tuple[str, ...], **options: Any) -> int:
     """Review parameter declarations in files and directories; '-' is standard input.
 
@@ -72,6 +80,7 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
         html=options["html"],
         markdown=options["markdown"],
         json=options["json_"],
+        json_lines=options["json_lines"],
         sarif=options["sarif"],
         markdown_limit=options["markdown_limit"],
     )
@@ -137,24 +146,48 @@ def _surroundings(options: dict[str, Any]) -> "Iterator[Surroundings]":
     import secrets
 
     from auditor.answers import Cores
-    from auditor.pool import LocalPool
+    from auditor.dispatch import ExecutorLost
     from auditor.progress import Progress, is_live
     from auditor.review import Surroundings
     from auditor.rulebook_types import RulebookError
 
     progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
-    with LocalPool(options["jobs"]) as pool:
+    with _workers(options) as pool:
         try:
             yield Surroundings(
                 draw=secrets.randbelow,
                 progress=progress,
                 ledger=_ledger_path(options),
-                cores=Cores(pool if pool.jobs > 1 else None, pool.jobs),
+                cores=Cores(pool if pool.started or pool.jobs > 1 else None, pool.jobs),
             )
         except RulebookError as error:
             raise click.ClickException(str(error)) from error
+        except KeyboardInterrupt:
+            raise Interrupted(f"; {_kept(options)}") from None
+        except ExecutorLost as error:
+            raise Interrupted(f": {error}; {_kept(options)}") from error
         finally:
             progress.done()
+
+
+def _kept(options: dict[str, Any]) -> str:
+    ledger = _ledger_path(options)
+    if ledger is None:
+        return "nothing is kept, since there is no ledger"
+    return f"what was found is kept in {ledger.name}, and the next run goes on from there"
+
+
+def _workers(options: dict[str, Any]) -> "LocalPool | Cluster":
+    """The workers of the cluster where one is named, otherwise those of this machine."""
+    from auditor.cluster import Cluster, NoCluster
+    from auditor.pool import LocalPool
+
+    if not options.get("cluster"):
+        return LocalPool(options["jobs"])
+    try:
+        return Cluster(options["cluster"])
+    except NoCluster as error:
+        raise click.ClickException(str(error)) from error
 
 
 def _run_values(options: dict[str, Any]) -> "RunValues":
@@ -192,6 +225,7 @@ def _status(record: dict[str, Any], fail_on: str) -> int:
 @click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
 @click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
 @click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+@click.option("--cluster", metavar="ADDRESS", help="A dask scheduler, in place of --jobs.")
 def ask(paths: tuple[str, ...], **options: Any) -> int:
     """Show which answers, the owner's or of more search, would change a position, and how.
 
@@ -316,6 +350,7 @@ def declare(source: str) -> int:
 @click.option("--ledger", type=click.Path(dir_okay=False), help="Where claims are kept.")
 @click.option("--no-ledger", is_flag=True, help="Keep no claims between runs.")
 @click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+@click.option("--cluster", metavar="ADDRESS", help="A dask scheduler, in place of --jobs.")
 def demonstrate(paths: tuple[str, ...], **options: Any) -> int:
     """Carry out a weak route on an exponent drawn here, within 2^BUDGET group operations.
 
@@ -495,8 +530,8 @@ def run() -> int:
     except click.ClickException as error:
         error.show()
         status = 2
-    except (click.Abort, KeyboardInterrupt):
-        click.echo("interrupted; what was found is kept in the ledger", err=True)
+    except (click.Abort, KeyboardInterrupt, Interrupted) as reason:
+        click.echo(f"interrupted{reason}", err=True)
         status = 130
     except (BrokenPipeError, SystemExit):
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())

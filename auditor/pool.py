@@ -1,31 +1,46 @@
-"""The cores of this machine, taken when the first unit of a deep search is handed in."""
+"""The cores of this machine, taken when the first piece of work is handed in."""
 
 import multiprocessing
 import os
+import sys
 from collections.abc import Callable
 from concurrent.futures import Future
 from types import TracebackType
 from typing import Any
 
+from auditor.work_units import MOST_DIGITS
+
 
 class LocalPool:
     """``jobs`` worker processes with the submit method of an executor; none until one is needed.
 
-    Workers die with this process; one that is lost costs only the unit it had (pebble).
+    Workers end with this process; one that is lost costs only what it was at (pebble).
     """
+
+    lost = False
+    """A machine that runs this has its cores."""
 
     def __init__(self, jobs: int | None = None) -> None:
         self.jobs = jobs or os.cpu_count() or 1
         self._pool: Any = None
 
+    @property
+    def started(self) -> bool:
+        """Whether the workers run."""
+        return self._pool is not None
+
     def submit(self, fn: Callable[..., Any], /, *args: Any) -> "Future[Any]":
         """Runs fn(*args) in a worker."""
         if self._pool is None:
-            # Loaded here: most reviews never search deep enough to need it.
+            # Loaded here: most reviews never have enough to do for it.
             from pebble import ProcessPool
 
-            context = multiprocessing.get_context("spawn")
-            self._pool = ProcessPool(max_workers=self.jobs, context=context)
+            self._pool = ProcessPool(
+                max_workers=self.jobs,
+                context=multiprocessing.get_context("spawn"),
+                initializer=sys.set_int_max_str_digits,
+                initargs=(MOST_DIGITS,),
+            )
         future: Future[Any] = self._pool.schedule(fn, args=args)
         return future
 
@@ -41,3 +56,4 @@ class LocalPool:
         if self._pool is not None:
             self._pool.stop()
             self._pool.join()
+            self._pool = None

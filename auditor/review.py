@@ -1,6 +1,6 @@
 """The whole way through the house, as one short function: bytes in, the record of a review out."""
 
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from types import MappingProxyType
@@ -16,17 +16,24 @@ from auditor.declaration import Declaration
 from auditor.facts import vocabulary
 from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
-from auditor.questions import Question
+from auditor.question_round import Progress
 from auditor.report.record import Reading, build, in_use
 from auditor.rulebook import load_all
 from auditor.rulebook_types import Rulebook
 from auditor.run import settle
 from auditor.run_values import RunValues
 
-DEFAULT_BOOKS = ("group-structure", "strength", "tls", "ssh", "ikev2", "x942-cms")
-"""The two books that speak about every set, then those that speak about a declared protocol."""
-
-Progress = Callable[[Question], None]
+DEFAULT_BOOKS = (
+    "group-structure",
+    "strength",
+    "provenance",
+    "schemes",
+    "tls",
+    "ssh",
+    "ikev2",
+    "x942-cms",
+)
+"""The books that speak about every set, then those that speak about a declared protocol."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,7 +42,7 @@ class Surroundings:
     store of claims, and somebody to tell of progress and trouble."""
 
     draw: Draw
-    progress: Progress = lambda question: None
+    progress: Progress = lambda status: None
     ledger: Path | None = None
     cores: Cores = ALONE
 
@@ -109,14 +116,22 @@ def investigate(
     ledger = _ledger(surroundings, notices)
     claims = Claims()
 
-    def keep(made: Iterable[Claim]) -> None:
-        if ledger is not None:
-            ledger.keep(made)
+    held, recalled = Claims(), set[int]()
 
-    def recall(question: Question) -> list[Claim]:
-        if ledger is None:
-            return []
-        return [c for n in sorted(set(question.integers)) for c in ledger.recall(n, run.rounds)]
+    def keep(made: Iterable[Claim]) -> None:
+        batch = list(made)
+        held.add(batch)
+        if ledger is not None:
+            ledger.keep(batch)
+
+    def recall(numbers: Iterable[int]) -> list[Claim]:
+        found: list[Claim] = []
+        if ledger is not None:
+            for n in sorted(set(numbers) - recalled):
+                found += ledger.recall(n, run.rounds, held)
+                held.add(found)
+                recalled.add(n)
+        return found
 
     answers = Answers(claims, run, surroundings.draw, keep, surroundings.cores)
     try:

@@ -3,26 +3,28 @@ is worth asking is open.
 
 A question is worth asking when its answer could change a fact in use: one that a rule in force
 waits for or shows, or a work factor. Cheap questions are asked about every fact, since a reader
-expects to see them. The order of asking is fixed, each question is asked once, and cheap ones are
-exhausted before a deep one is asked, so the same declarations lead to the same claims.
+expects to see them. Questions of all sets are put together in rounds, each question once; what is
+asked, and from which claims it is answered, depends on no order of arrival, so the same
+declarations lead to the same claims on any number of processes.
 """
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import replace
 
 from auditor.answers import Answers
-from auditor.claims.base import Claim, Refuted
-from auditor.claims.collection import Claims
+from auditor.claims.base import Claim
+from auditor.claims.ledger import subjects
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
 from auditor.facts.base import Absent, Fact
+from auditor.question_round import Progress, answer_round
 from auditor.questions import CHEAP, Question
 from auditor.run_values import RunValues
 
 InUse = Callable[[Mapping[str, Fact], Mapping[str, Absent]], Iterable[str]]
 """Names of the facts in use, given what is established so far."""
-Progress = Callable[[Question], None]
-Recall = Callable[[Question], Iterable[Claim]]
-"""Claims kept from earlier runs about the integers of a question."""
+Recall = Callable[[Iterable[int]], Iterable[Claim]]
+"""Claims kept from earlier runs about these integers."""
 
 
 def open_questions(known: Established, names: Iterable[str]) -> list[Question]:
@@ -45,41 +47,117 @@ def settle(
 ) -> list[str]:
     """Ask and answer until nothing worth asking is open; the claims grow in ``answers``.
 
+    Sets that differ in nothing but their names are looked at once, and one set of each group with
+    the same numbers goes first: the others then find nearly everything answered.
     Returns a notice for each question whose proposed answer did not pass its check.
     """
-    asked: set[Question] = set()
-    refused: list[str] = []
-    for declaration in declarations:
-        while todo := _worth_asking(declaration, answers.claims, run, in_use, asked):
-            asked.update(todo)
-            if _recalled(todo, answers.claims, recall):
-                asked.difference_update(todo)
-                continue
-            for question in todo:
-                progress(question)
-                try:
-                    answers.answer(question)
-                except Refuted as reason:
-                    refused.append(f"{question.about} An answer was found and refused: {reason}.")
-    return refused
+    distinct = list(dict.fromkeys(replace(item, name="") for item in declarations))
+    first_of: dict[tuple[object, ...], Declaration] = {}
+    for item in distinct:
+        first_of.setdefault(_numbers(item), item)
+    firsts = list(first_of.values())
+    inquiry = _Inquiry(answers, run, in_use, progress, recall)
+    inquiry.pursue(firsts)
+    if len(firsts) < len(distinct):
+        inquiry.pursue(distinct)
+    return inquiry.refused
 
 
-def _recalled(questions: Iterable[Question], claims: Claims, recall: Recall) -> bool:
-    """Whether earlier runs knew something new about these; then it is time to look again."""
-    before = len(claims)
-    for question in questions:
-        claims.add(recall(question))
-    return len(claims) > before
+def _numbers(item: Declaration) -> tuple[object, ...]:
+    return (
+        item.modulus,
+        item.generator,
+        item.subgroup_order,
+        item.known_factors,
+        item.provenance,
+        item.public_values,
+    )
 
 
-def _worth_asking(
-    declaration: Declaration, claims: Claims, run: RunValues, in_use: InUse, asked: set[Question]
-) -> list[Question]:
-    known = establish(declaration, claims, run)
-    everything = open_questions(known, [*known.facts, *known.absent])
-    if cheap := [q for q in everything if q.asks in CHEAP and q not in asked]:
-        return cheap
-    if run.effort == "quick":
-        return []
-    deep = open_questions(known, in_use(known.facts, known.absent))
-    return [q for q in deep if q not in asked and q.asks not in CHEAP]
+class _Inquiry:
+    """What was asked so far, and what is open about each set by its place in the list pursued."""
+
+    def __init__(
+        self,
+        answers: Answers,
+        run: RunValues,
+        in_use: InUse,
+        progress: Progress,
+        recall: Recall,
+    ) -> None:
+        self.refused: list[str] = []
+        self._answers = answers
+        self._run = run
+        self._in_use = in_use
+        self._progress = progress
+        self._recall = recall
+        self._asked: set[Question] = set()
+
+    def pursue(self, declarations: Sequence[Declaration]) -> None:
+        """Rounds of questions about these sets, the cheap ones exhausted before a deep one is
+        asked. A set is looked at again when a claim about one of its integers came, or an answer
+        to one of its questions."""
+        self._remember(n for item in declarations for n in _first_integers(item))
+        watching: dict[int, set[int]] = {}
+        open_: dict[int, tuple[Question, ...]] = {}
+        dirty = set(range(len(declarations)))
+        while True:
+            for place in sorted(dirty):
+                open_[place] = self._open(declarations[place])
+                for n in _watched(declarations[place], open_[place]):
+                    watching.setdefault(n, set()).add(place)
+            todo = self._next(open_)
+            if not todo:
+                return
+            new = self._remember(n for question in todo for n in question.integers)
+            if not new:
+                new = self._ask(todo)
+            dirty = {
+                place for claim in new for n in subjects(claim) for place in watching.get(n, ())
+            }
+            dirty |= {place for place, questions in open_.items() if todo & set(questions)}
+
+    def _next(self, open_: Mapping[int, tuple[Question, ...]]) -> set[Question]:
+        """The questions of the next round."""
+        todo = {question for questions in open_.values() for question in questions} - self._asked
+        return {question for question in todo if question.asks in CHEAP} or todo
+
+    def _open(self, declaration: Declaration) -> tuple[Question, ...]:
+        """What is worth asking about a set: whatever is cheap and, with effort, what is in use."""
+        known = establish(declaration, self._answers.claims, self._run)
+        everything = open_questions(known, [*known.facts, *known.absent])
+        cheap = [question for question in everything if question.asks in CHEAP]
+        if self._run.effort == "quick" or len(cheap) == len(everything):
+            return tuple(cheap)
+        deep = open_questions(known, self._in_use(known.facts, known.absent))
+        return (*cheap, *(question for question in deep if question.asks not in CHEAP))
+
+    def _remember(self, numbers: Iterable[int]) -> list[Claim]:
+        """What earlier runs knew about these and is news; then it is time to look again."""
+        claims = self._answers.claims
+        new = [claim for claim in self._recall(set(numbers)) if claim.id not in claims]
+        claims.add(new)
+        return new
+
+    def _ask(self, questions: set[Question]) -> list[Claim]:
+        """The claims that one round brings."""
+        self._asked |= questions
+        before = len(self._answers.claims)
+        refused = answer_round(questions, self._answers, self._progress)
+        self.refused += [
+            f"{question.about} An answer was found and refused: {reason}."
+            for question, reason in refused
+        ]
+        return list(self._answers.claims)[before:]
+
+
+def _first_integers(declaration: Declaration) -> set[int]:
+    """The integers that the first questions about a set are about."""
+    n, q = declaration.modulus, declaration.subgroup_order
+    return {number for number in (n, n - 1, q) if number is not None and number > 1}
+
+
+def _watched(declaration: Declaration, questions: Iterable[Question]) -> set[int]:
+    """The integers that a claim must be about to move a fact of the set: its modulus, and the
+    first two of every open question, which name what is asked about."""
+    return {declaration.modulus, *(n for question in questions for n in question.integers[:2])}

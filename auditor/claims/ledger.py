@@ -9,7 +9,7 @@ import json
 import os
 import sqlite3
 import time
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Mapping
 from contextlib import closing
 from pathlib import Path
 
@@ -63,29 +63,34 @@ class Ledger:
         except sqlite3.Error as error:
             self._give_up(error)
 
-    def recall(self, number: int, rounds: int) -> list[Claim]:
-        """The claims about ``number`` with all that they rest on, as far as they still hold.
+    def recall(self, number: int, rounds: int, held: Claims | None = None) -> list[Claim]:
+        """The claims about ``number`` with all that they rest on, as far as they still hold, but
+        for those that are ``held`` already: they were checked, and nothing is checked twice.
 
         Probable primes with fewer than ``rounds`` rounds, and what rests on them, are left out.
         """
+        held = Claims() if held is None else held
         if self._connection is None:
             return []
         try:
             rows = self._connection.execute(
                 "SELECT claim FROM about WHERE number = ? ORDER BY claim", (hex(number),)
             ).fetchall()
-            found = Claims(self._read([claim_id for (claim_id,) in rows]))
+            found = self._read([claim_id for (claim_id,) in rows], held)
         except sqlite3.Error as error:
             self._give_up(error)
             return []
-        return [claim for claim in self._holding(found) if _thorough(found, claim, rounds)]
+        holding = self._holding(found, held)
+        leant_on = {used for claim in found for used in claim.uses if used in held}
+        together = Claims([*held.support(leant_on), *found])
+        return [claim for claim in holding if _thorough(together, claim, rounds)]
 
-    def _read(self, wanted: list[str]) -> list[Claim]:
+    def _read(self, wanted: list[str], held: Claims) -> list[Claim]:
         assert self._connection is not None
         claims: dict[str, Claim] = {}
         while wanted:
             claim_id = wanted.pop()
-            if claim_id in claims:
+            if claim_id in claims or claim_id in held:
                 continue
             row = self._connection.execute(
                 "SELECT body FROM claim WHERE id = ?", (claim_id,)
@@ -101,27 +106,32 @@ class Ledger:
             wanted.extend(claim.uses)
         return [claims[claim_id] for claim_id in sorted(claims)]
 
-    def _holding(self, found: Claims) -> list[Claim]:
+    def _holding(self, found: list[Claim], held: Claims) -> list[Claim]:
         """Claims in an order in which each comes after those it uses, failed ones left out."""
         holding: dict[str, Claim] = {}
         waiting = sorted(found, key=lambda claim: claim.id)
         while waiting:
-            ready = [claim for claim in waiting if all(used in holding for used in claim.uses)]
+            ready = [
+                claim
+                for claim in waiting
+                if all(used in holding or used in held for used in claim.uses)
+            ]
             if not ready:
                 break
             for claim in ready:
                 waiting.remove(claim)
-                if self._still_holds(claim, found):
+                used = {id_: holding.get(id_) or held[id_] for id_ in claim.uses}
+                if self._still_holds(claim, used):
                     holding[claim.id] = claim
         return list(holding.values())
 
-    def _still_holds(self, claim: Claim, found: Claims) -> bool:
+    def _still_holds(self, claim: Claim, used: Mapping[str, Claim]) -> bool:
         try:
             if isinstance(claim, Prime) and claim.method == "baillie-psw":
                 if passes_strong_test(claim.n, 2 + self._draw(claim.n - 3)):
                     return True
                 raise Refuted("composite")
-            claim.check({used: found[used] for used in claim.uses}, self._draw)
+            claim.check(used, self._draw)
         except Refuted as refuted:
             self._notify(f"The ledger's entry {claim.id} does not hold ({refuted}); left out.")
             return False
