@@ -26,12 +26,13 @@ class Outputs:
     html: str | None = None
     markdown: str | None = None
     json: str | None = None
+    json_lines: str | None = None
     sarif: str | None = None
     markdown_limit: int = 32_767
 
     def check(self) -> None:
         """Refuse, before any work is done, what cannot be written in the end."""
-        paths = [path for path in (self.html, self.markdown, self.json, self.sarif) if path]
+        paths = [path for path in self._paths() if path]
         if paths.count(STANDARD_OUTPUT) > 1:
             raise click.UsageError("only one format can go to standard output")
         files = [os.path.realpath(path) for path in paths if path != STANDARD_OUTPUT]
@@ -43,7 +44,7 @@ class Outputs:
 
     def write(self, record: Mapping[str, Any]) -> None:
         """Write each format; a summary to standard output where no format goes there."""
-        from auditor.report import html, markdown, sarif
+        from auditor.report import html, json_report, markdown, sarif
         from auditor.report.view import view
 
         shown = view(record)
@@ -51,13 +52,17 @@ class Outputs:
             (self.html, lambda: html.render(shown)),
             (self.markdown, lambda: markdown.render(shown, limit=self.markdown_limit)),
             (self.json, lambda: shown.json),
+            (self.json_lines, lambda: json_report.lines(record)),
             (self.sarif, lambda: sarif.render(shown)),
         ]
         for path, render in renderers:
             if path:
                 write_text(path, render())
-        if STANDARD_OUTPUT not in (self.html, self.markdown, self.json, self.sarif):
+        if STANDARD_OUTPUT not in self._paths():
             _summary(shown)
+
+    def _paths(self) -> tuple[str | None, ...]:
+        return self.html, self.markdown, self.json, self.json_lines, self.sarif
 
 
 def _summary(shown: "View") -> None:

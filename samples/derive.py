@@ -76,6 +76,45 @@ def smooth_prime(label: str, bits: int, largest: int) -> tuple[int, list[int]]:
         index += 1
 
 
+def fips_primes(label: str, bits: int, order_bits: int) -> tuple[int, int, bytes, int]:
+    """p, q, the seed and the counter of FIPS 186-4, A.1.1.2, with SHA-256, from a label's seeds."""
+    blocks = -(-bits // 256) - 1
+    top = bits - 1 - 256 * blocks
+    attempt = 0
+    while True:
+        seed = hashlib.sha256(f"{label}/seed {attempt}".encode()).digest()
+        attempt += 1
+        u = _hashed(seed, 0) % 2 ** (order_bits - 1)
+        q = 2 ** (order_bits - 1) + u + 1 - u % 2
+        if not gmpy2.is_prime(q, 30):
+            continue
+        for counter in range(4 * bits):
+            first = 1 + counter * (blocks + 1)
+            w = sum(_hashed(seed, first + j) << 256 * j for j in range(blocks))
+            w += (_hashed(seed, first + blocks) % 2**top) << 256 * blocks
+            x = w + 2 ** (bits - 1)
+            p = x - (x % (2 * q) - 1)
+            if p.bit_length() == bits and gmpy2.is_prime(p, 30):
+                return p, q, seed, counter
+
+
+def _hashed(seed: bytes, offset: int) -> int:
+    value = (int.from_bytes(seed, "big") + offset) % 2 ** (8 * len(seed))
+    return int.from_bytes(hashlib.sha256(value.to_bytes(len(seed), "big")).digest(), "big")
+
+
+def canonical_generator(p: int, q: int, seed: bytes, index: int) -> int:
+    """The generator of FIPS 186-4, A.2.3, with SHA-256."""
+    count = 1
+    while True:
+        text = seed + b"ggen" + bytes([index]) + count.to_bytes(2, "big")
+        w = int.from_bytes(hashlib.sha256(text).digest(), "big")
+        g = int(gmpy2.powmod(w, (p - 1) // q, p))
+        if g > 1:
+            return g
+        count += 1
+
+
 if __name__ == "__main__":
     crane_q = prime("crane enrolment q", 256)
     crane_p = with_subgroup("crane enrolment p", 2048, crane_q)
@@ -85,6 +124,8 @@ if __name__ == "__main__":
     tide_n = prime("tide gauge first", 1024) * prime("tide gauge second", 1024)
     dredge_p, dredge_factors = smooth_prime("dredger log p", 2048, 40)
     ferry_p = prime("ferry timetable p", 2048)
+    lamp_p, lamp_q, lamp_seed, lamp_counter = fips_primes("signal lamp", 2048, 256)
+    print(f"signal lamp seed: {lamp_seed.hex()}, counter: {lamp_counter}")
     for name, value in sorted(
         {
             "crane enrolment q": crane_q,
@@ -97,6 +138,9 @@ if __name__ == "__main__":
             "tide gauge n": tide_n,
             "dredger log p": dredge_p,
             "ferry timetable p": ferry_p,
+            "signal lamp p": lamp_p,
+            "signal lamp q": lamp_q,
+            "signal lamp g": canonical_generator(lamp_p, lamp_q, lamp_seed, 1),
         }.items()
     ):
         print(f"{name}: {value:#x}")

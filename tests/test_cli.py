@@ -94,6 +94,17 @@ def test_a_second_run_gives_the_same_bytes(auditor: Any) -> None:
     assert (Path("cache") / "group-parameter-auditor" / "ledger.sqlite").exists()
 
 
+def test_json_lines(auditor: Any) -> None:
+    """A line for each set in input order, then the rest of the record: nothing is lost."""
+    two = SOUND + WEAK.split("parameter_sets:\n")[1]
+    auditor(*quick("-"), "--json", "r.json", "--json-lines", "r.jsonl", stdin=two)
+    *sets, last = [json.loads(line) for line in Path("r.jsonl").read_text().splitlines()]
+    record = json.loads(Path("r.json").read_text())
+
+    assert [item["parameter_set"]["name"] for item in sets] == ["sound", "short"]
+    assert {"parameter_sets": [s["parameter_set"] for s in sets], **last["summary"]} == record
+
+
 def test_standard_input_and_output(auditor: Any) -> None:
     """'-' stands for both, and then nothing but the report is written to standard output."""
     result = auditor(*quick("-"), "--json", "-", stdin=SOUND)

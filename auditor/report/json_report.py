@@ -82,3 +82,13 @@ def _pointer(path: list[str | int]) -> str:
 
 def _brief(message: str, limit: int = 200) -> str:
     return message if len(message) <= limit else f"{message[: limit // 2]} … {message[-40:]}"
+
+
+def lines(record: Mapping[str, Any]) -> str:
+    """JSON Lines: each parameter set on a line, in input order, then a summary on the last line.
+
+    The summary is the record without its sets: run, inputs, rulebooks, overview, claims, errors.
+    """
+    summary = {key: value for key, value in record.items() if key != "parameter_sets"}
+    rows = [{"parameter_set": item} for item in record["parameter_sets"]]
+    return "".join(f"{_compact(row)}\n" for row in [*rows, {"summary": summary}])
