@@ -15,7 +15,8 @@ from flint import fmpz_poly
 
 from auditor.claims.base import require
 
-LARGEST_DEGREE = 8
+LEAST_DEGREE, LARGEST_DEGREE = 4, 8
+"""Near the optimum of the sieve; what is known of its work is not about smaller degrees."""
 CHANCE_BITS = -40
 """A pair counts when an ordinary modulus has one of its size with probability at most 2^-40."""
 SMALL_BASES = (2, 3, 5, 6, 7, 10)
@@ -40,13 +41,13 @@ def check(n: int, f: Sequence[int], g1: int, g0: int, k: int | None = None) -> P
     """The sizes of the pair (f, g1·x - g0), if it shows a special form of ``n``.
 
     ``f`` lists the coefficients, that of x^0 first. Shown is that f is irreducible over the
-    integers, of degree 2 to 8 and without content; g0 and g1 are positive and coprime; the value
+    integers, of degree 4 to 8 and without content; g0 and g1 are positive and coprime; the value
     g1^d f(g0/g1) is a non-zero multiple of n (k·n, where k is given); and the pair is smaller than
     any that an ordinary modulus of this length has. Raises :class:`auditor.claims.base.Refuted`.
     """
     degree = len(f) - 1
     require(n > 1, "the modulus is below 2")
-    require(2 <= degree <= LARGEST_DEGREE, "the degree is not 2 to 8")
+    require(LEAST_DEGREE <= degree <= LARGEST_DEGREE, "the degree is not 4 to 8")
     require(f[-1] != 0, "the leading coefficient is 0")
     require(gcd(*f) == 1, "the coefficients have a common factor")
     require(g0 > 0 and g1 > 0 and gcd(g0, g1) == 1, "g0 and g1 are not positive and coprime")

@@ -57,8 +57,8 @@ def batch_gcd(moduli: Sequence[int], executor: Executor | None = None) -> list[i
     """For each modulus its greatest common divisor with the product of all others.
 
     1: it shares nothing. The modulus itself: all its prime factors occur in others, or it occurs
-    twice. Two multiplications of the size of the whole collection dominate the memory: about
-    20 times its size in all. The result does not depend on the executor, whose processes take
+    twice. The products of all levels are kept: with what is computed from them about 35 times the
+    size of the collection. The result does not depend on the executor, whose processes take
     subtrees. Raises ValueError for a modulus below 1.
     """
     if any(n < 1 for n in moduli):

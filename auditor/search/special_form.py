@@ -17,8 +17,9 @@ from auditor.search import special_form_hidden as hidden
 from auditor.search import special_form_known_root as known_root
 from auditor.search.special_form_pair import RawPair, SpecialForm, special_form
 
-LEAST_LENGTH = 128
-"""Below this length, in bits, no form is looked for: any logarithm is practical there."""
+LEAST_LENGTH = 384
+"""Below this length, in bits, no form is looked for: any logarithm is practical there. From it on a
+pair that helps the sieve is always too small to be an accident."""
 LARGEST_HIDDEN = 8192
 """Above this length, in bits, no hidden root is looked for: it would take hours."""
 
@@ -34,12 +35,12 @@ class Tier(NamedTuple):
 
 TIERS: Mapping[int, Tier] = {
     1: Tier(
-        f"degree 2 to 8 with a root b^j, b one of {', '.join(map(str, known_root.BASES))}",
+        f"degree 4 to 8 with a root b^j, b one of {', '.join(map(str, known_root.BASES))}",
         known_root.tests,
         known_root.pairs,
     ),
     2: Tier(
-        f"degree 2 to 8 with any root, leading coefficient and cofactor up to {any_root.LARGEST}",
+        f"degree 4 to 8 with any root, leading coefficient and cofactor up to {any_root.LARGEST}",
         lambda p: any_root.tests(),
         any_root.pairs,
     ),
@@ -69,10 +70,10 @@ def looked_for(p: int, tiers: Sequence[int] = (1, 2)) -> tuple[LookedFor, ...]:
 
 
 def search(p: int, tiers: Sequence[int] = (1, 2)) -> SpecialForm | None:
-    """The most special form of the prime p among those that these tiers look for.
+    """The most special form of the prime p that helps the sieve, among those that these tiers look
+    for; equally special ones are ordered by value.
 
-    Forms of degree 4 or more come first, as they help the sieve; equally special ones are ordered
-    by value. Raises ValueError for an even p, one below 3, or a tier that does not exist.
+    Raises ValueError for an even p, one below 3, or a tier that does not exist.
     """
     if p < 3 or p % 2 == 0:
         raise ValueError("a special form is looked for in an odd number above 2")
@@ -80,7 +81,7 @@ def search(p: int, tiers: Sequence[int] = (1, 2)) -> SpecialForm | None:
         form
         for tier in _applied(p, tiers)
         for raw in TIERS[tier].pairs(p)
-        if (form := special_form(p, tier, raw)) is not None
+        if (form := special_form(p, tier, raw)) is not None and form.helps_the_sieve
     ]
     return min(forms, key=SpecialForm.rank, default=None)
 

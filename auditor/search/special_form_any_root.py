@@ -9,7 +9,8 @@ from math import floor, gcd, log2
 
 import gmpy2
 
-from auditor.search.special_form_pair import CHANCE_BITS, DEGREES, RawPair, expansion
+from auditor.search.special_form_pair import CHANCE_BITS, RawPair, expansion
+from auditor.search.special_form_work import DEGREES
 
 LARGEST = 24
 """Of the cofactors k and of the leading coefficients a; only coprime ones are tried."""

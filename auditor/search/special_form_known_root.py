@@ -11,7 +11,8 @@ from math import floor, log2
 
 from flint import fmpz_mat
 
-from auditor.search.special_form_pair import CHANCE_BITS, DEGREES, RawPair, expansion
+from auditor.search.special_form_pair import CHANCE_BITS, RawPair, expansion
+from auditor.search.special_form_work import DEGREES
 
 BASES = (2, 3, 5, 6, 7, 10)
 WIDTH = 16

@@ -8,13 +8,13 @@ from math import log2
 from flint import fmpz_poly
 
 from auditor.search.special_form_work import (
+    DEGREES,
     general_sieve_bits,
     n_star,
     sigma,
     special_sieve_bits,
 )
 
-DEGREES = range(2, 9)
 CHANCE_BITS = -40
 """A tier reports what its number of tests turns up for an ordinary modulus with probability at
 most 2^-40."""
@@ -80,9 +80,8 @@ class SpecialForm:
 
     @property
     def helps_the_sieve(self) -> bool:
-        """The special sieve with this pair is cheaper than the general one. A form that does not
-        help is still not what a random modulus looks like."""
-        return self.sigma > 0 and self.sieve_bits < general_sieve_bits(log2(self.modulus))
+        """The special sieve with this pair is cheaper than the general one."""
+        return self.sieve_bits < general_sieve_bits(log2(self.modulus))
 
     def rank(self) -> tuple[float | int | tuple[int, ...], ...]:
         """Sorts the most special first, to two decimals of sigma; of those the one whose root says
@@ -103,7 +102,8 @@ class SpecialForm:
 
 
 def special_form(p: int, tier: int, raw: RawPair) -> SpecialForm | None:
-    """The raw pair made irreducible and normal; None where no factor of f has the root.
+    """The raw pair made irreducible and normal; None where no factor of f of a useful degree has
+    the root.
 
     For a prime p exactly one factor has it; for a composite one the value may be spread over
     several.
@@ -111,7 +111,7 @@ def special_form(p: int, tier: int, raw: RawPair) -> SpecialForm | None:
     for factor, _ in fmpz_poly(list(raw.coefficients)).factor()[1]:
         coefficients = [int(c) for c in factor.coeffs()]
         value = homogeneous_value(coefficients, raw.g1, raw.g0)
-        if len(coefficients) > 2 and value and value % p == 0:
+        if len(coefficients) - 1 in DEGREES and value and value % p == 0:
             return _normal(p, tier, coefficients, raw.g1, raw.g0)
     return None
 

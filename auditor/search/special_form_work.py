@@ -10,9 +10,9 @@ that shows the figure has to say so.
 
 from math import cbrt, log
 
-LEAST_USABLE_DEGREE = 4
-"""Degrees 4 to 8 are near the optimum of the sieve from 512 bits up; a pair of degree 2 or 3 is
-conspicuous, but its linear side is too large to help."""
+DEGREES = range(4, 9)
+"""Those near the optimum of the sieve. The formulas compare a pair with the best ordinary one of
+its own degree; they would flatter one of degree 2 or 3, whose linear side is far too large."""
 
 _GENERAL = 1.923
 _SPECIAL = 1.5263
@@ -22,13 +22,11 @@ def sigma(n: float, degree: int, coefficient_bits: float, root_bits: float) -> f
     """How special a pair is: 1 for a pure special form, 0 for no advantage over any p.
 
     ``degree * (F + G)`` is n for a pure special form and 2nd/(d+1) for the best pair of that degree
-    that an ordinary p has; sigma places the pair linearly between the two. It is 0 below
-    ``LEAST_USABLE_DEGREE``. Raises ValueError for a degree below 2 or a size below 1 bit.
+    that an ordinary p has; sigma places the pair linearly between the two. Raises ValueError for a
+    degree outside ``DEGREES`` or a modulus below 1 bit.
     """
-    if degree < 2 or n < 1:
-        raise ValueError("a pair has degree 2 or more, and its modulus 1 bit or more")
-    if degree < LEAST_USABLE_DEGREE:
-        return 0.0
+    if degree not in DEGREES or n < 1:
+        raise ValueError("a pair has degree 4 to 8, and its modulus 1 bit or more")
     effective = degree * (coefficient_bits + root_bits)
     generic = 2 * n * degree / (degree + 1)
     return min(1.0, max(0.0, 1 - (effective - n) / (generic - n)))

@@ -21,7 +21,7 @@ from auditor.intake.standard_groups import standard_groups
 from auditor.search import special_form_hidden as hidden
 from auditor.search import special_form_known_root as known_root
 from auditor.search.special_form import search
-from auditor.search.special_form_pair import DEGREES
+from auditor.search.special_form_work import DEGREES
 
 Lattice = Callable[[int, int, int], fmpz_mat]
 
