@@ -22,6 +22,7 @@ from auditor.rulebook import load_all
 from auditor.rulebook_types import Rulebook
 from auditor.run import settle
 from auditor.run_values import RunValues
+from auditor.sharing import share_among_moduli, share_among_rests
 
 DEFAULT_BOOKS = (
     "group-structure",
@@ -134,8 +135,9 @@ def investigate(
         return found
 
     answers = Answers(claims, run, surroundings.draw, keep, surroundings.cores)
-    try:
-        refused = settle(
+
+    def pursue() -> list[str]:
+        return settle(
             declarations,
             answers,
             run,
@@ -143,6 +145,12 @@ def investigate(
             surroundings.progress,
             recall,
         )
+
+    try:
+        share_among_moduli((item.modulus for item in declarations), answers)
+        refused = pursue()
+        while share_among_rests(answers):
+            refused += pursue()
     finally:
         if ledger is not None:
             ledger.close()
