@@ -37,6 +37,11 @@ EXPECTED: dict[str, tuple[str, str | None]] = {
     "passenger-list sealing": ("no objection", None),
     "lock-gate signing": ("no objection", None),
     "radar-feed signing": ("no objection", None),
+    "dockside tunnel": ("hold", "confinement-leak"),
+    "cargo library before": ("hold", "raw-elgamal-even-order"),
+    "cargo library with the generator squared": ("conditions", "raw-message-visible"),
+    "signal-lamp signing": ("no objection", None),
+    "signal-lamp signing with another seed": ("conditions", "declared-origin-disagrees"),
 }
 """Position and deciding rule of every set, as a reviewer would put them by hand."""
 
