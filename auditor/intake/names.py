@@ -14,6 +14,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 from auditor.declaration import Declaration, Place
+from auditor.intake.inputs import InputError
 from auditor.intake.names_statements import Statement, Word, statements
 from auditor.intake.reading import Passed, Reading
 from auditor.intake.standard_groups import StandardGroup, find, standard_groups
@@ -41,6 +42,8 @@ _SECTIONS = (
 _PROPOSALS = frozenset({"ike", "esp", "ah", "proposal", "proposals"})
 _GROUP_WORDS = frozenset({"group", "groups", "grp", "grps"})
 _IKE_WORDS = frozenset({"ike", "ipsec", "isakmp", "ikev1", "ikev2", "phase1", "phase2", "pfs"})
+
+MAX_NAMES = 10_000
 
 TWO_MEANINGS = 1
 """The number of the 768-bit group to IKE, and in the names of SSH of the 1024-bit one."""
@@ -70,9 +73,13 @@ def read_names(text: str, path: str) -> Reading:
         for reader in _READERS:
             for mention in reader(statement):
                 mentions.setdefault((mention.word.line, mention.word.column), mention)
+        if len(mentions) > MAX_NAMES:
+            break
     declarations: dict[str, Declaration] = {}
     passed: list[Passed] = []
-    for _, mention in sorted(mentions.items(), key=lambda item: item[0]):
+    in_order = [mention for _, mention in sorted(mentions.items(), key=lambda item: item[0])]
+    errors = [_too_many(path, mention) for mention in in_order[MAX_NAMES : MAX_NAMES + 1]]
+    for mention in in_order[:MAX_NAMES]:
         if mention.group is None:
             passed.append(Passed(path, mention.reason, mention.word.line))
             continue
@@ -80,7 +87,12 @@ def read_names(text: str, path: str) -> Reading:
         if name in declarations:
             name = f"{name} (line {mention.word.line})"
         declarations.setdefault(name, _declaration(name, mention, mention.group, path))
-    return Reading(tuple(declarations.values()), passed=tuple(passed))
+    return Reading(tuple(declarations.values()), tuple(errors), passed=tuple(passed))
+
+
+def _too_many(path: str, mention: _Mention) -> InputError:
+    message = f"more than {MAX_NAMES} names of groups; those from here on are not read"
+    return InputError(path, mention.word.line, mention.word.column, message)
 
 
 def _worth_a_look(text: str) -> bool:

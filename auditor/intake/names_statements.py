@@ -24,6 +24,9 @@ _FORMS = (
     re.compile(r"^.*\s-o\s*[\"']?(?P<key>[A-Za-z]\w{0,80})(?:=|\s+)(?P<value>\S+)"),
 )
 _WORD = re.compile(r"[^\s,:;\"'\[\](){}=<>\\]+(?:==?(?=[\s,:;\"'\])}]|$))?")
+_ITEMS = re.compile(r"(?:[\w@.+/\-^!?*\"',;\s\\\])}]|=(?=[\"',=]|\s*$))*")
+"""A line that is nothing but items of a list, or the end of one."""
+
 _BETWEEN_WORDS = re.compile(r"(?<=[a-z0-9])(?=[A-Z])|(?<=[A-Z])(?=[A-Z][a-z])|[^A-Za-z0-9]+")
 _OPENING, _CLOSING = re.compile(r"[\[({]"), re.compile(r"[\])}]")
 
@@ -88,14 +91,16 @@ def _without_comment(line: str) -> str:
 def _continued(value: str, index: int, lines: list[str]) -> Iterator[Word]:
     """The words on the lines from ``index`` that belong to the value begun above them.
 
-    They do as items of a block list, up to a closing bracket, or after a comma or a backslash.
+    They do as items of a block list, up to a closing bracket, or after a comma or a backslash, as
+    long as a line is nothing but items.
     """
     bracketed = open_brackets = _balance(value)
     last = value
     for number, line in enumerate(lines[index : index + _MOST_LINES], index + 1):
-        item = not value and line.lstrip().startswith("- ") and ": " not in line
-        after_comma = bracketed <= 0 and bool(line) and last.endswith((",", "\\"))
-        if not (item or open_brackets > 0 or after_comma):
+        block_item = not value and line.lstrip().startswith("- ")
+        after_comma = bracketed <= 0 and last.endswith((",", "\\"))
+        goes_on = block_item or open_brackets > 0 or after_comma
+        if not goes_on or not _ITEMS.fullmatch(line):
             break
         yield from _words(line, number, 0)
         open_brackets += _balance(line)

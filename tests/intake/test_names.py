@@ -4,6 +4,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from auditor.intake import names
 from auditor.intake.names import read_names
 from auditor.intake.standard_groups import standard_groups
 
@@ -29,6 +30,8 @@ SSH = {
     "ssh_kex_algorithms:\n  - diffie-hellman-group14-sha256\n  - curve25519-sha256\n": 2048,
     "key_exchange = [\n  'ecdh-sha2-nistp256',\n  'diffie-hellman-group14-sha1',\n]": 2048,
     "kexAlgorithms: 'diffie-hellman-group14-sha256'  # for the old crane": 2048,
+    '{"kex": "diffie-hellman-group14-sha256",\n "port": 22,\n "name": "quay"}': 2048,
+    "kex = diffie-hellman-group14-sha1,\nport = 22\n": 2048,
     "KEX_ALGORITHMS=ecdh-sha2-nistp256,\\\n  diffie-hellman-group14-sha1": 2048,
 }
 TLS = {
@@ -168,6 +171,16 @@ def test_every_registry_number_is_known(group: object) -> None:
     assert found.modulus == group.modulus
 
 
+def test_the_number_of_names_is_bounded(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Beyond the bound the rest is an error at its place, not silence."""
+    monkeypatch.setattr(names, "MAX_NAMES", 2)
+    result = read_names("dh group 14 15 16 17\n", "etc/config")
+    assert len(result.declarations) == 2
+    (error,) = result.errors
+    assert (error.line, error.column) == (1, 16)
+    assert "more than 2 names" in error.message
+
+
 PIECES = st.sampled_from(
     [
         *("KexAlgorithms", "kex", "dh", "group", "pfs", "ike", "crypto ikev2 proposal", "Groups"),
@@ -182,8 +195,8 @@ def test_any_text(text: str) -> None:
     """No text raises anything; every set is in a line that holds its text."""
     result = read_names(text, "etc/config")
     lines = text.split("\n")
-    names = [item.name for item in result.declarations]
-    assert len(set(names)) == len(names)
+    called = [item.name for item in result.declarations]
+    assert len(set(called)) == len(called)
     for item in result.declarations:
         line = lines[item.place.line - 1]
         assert item.name.partition(" (line")[0].split()[-1] in line[item.place.column - 1 :]

@@ -2,6 +2,8 @@
 
 import io
 import os
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -230,3 +232,21 @@ def test_unnamed_candidates_wait() -> None:
     assert len(read_inputs(["t"]).passed) == 1
     _write({"t/a.pem": f"prime = 0x{P:X}\n{DH}"})
     assert read_inputs(["t"]).passed == ()
+
+
+def test_the_library_is_loaded_for_encoded_input_only() -> None:
+    """Who reviews documents and configuration does not wait for a library that neither needs."""
+    _write({"a.yaml": DOCUMENT, "b.conf": "Groups = ffdhe2048\n", "c.pem": DH})
+    program = (
+        "import sys\n"
+        "from auditor.intake.tree import read_inputs\n"
+        "loaded = []\n"
+        "for path in ('a.yaml', 'b.conf', 'c.pem'):\n"
+        "    assert read_inputs([path]).recognised == 1\n"
+        "    loaded.append('cryptography' in sys.modules)\n"
+        "print(loaded)\n"
+    )
+    done = subprocess.run(
+        [sys.executable, "-c", program], capture_output=True, text=True, check=True
+    )
+    assert done.stdout == "[False, False, True]\n"
