@@ -17,7 +17,7 @@ LINE = (
     ("search",),
     ("claims",),
     ("structure", "element_orders"),
-    ("attested", "dispatch", "answers", "work_units", "question_round", "unit_groups"),
+    ("attested", "dispatch", "answers", "sharing", "work_units", "question_round", "unit_groups"),
     ("routes",),
     ("facts",),
     ("condition_syntax", "condition_types", "conditions"),
