@@ -5,6 +5,7 @@ what a lost worker was at to another one; when the scheduler itself is lost, wha
 lost with it and everything that had come back is in the ledger.
 """
 
+import logging
 from collections.abc import Callable
 from concurrent.futures import Future
 from types import TracebackType
@@ -31,6 +32,8 @@ class Cluster:
             import distributed
         except ImportError as error:
             raise NoCluster("--cluster needs the optional extra 'cluster' (dask)") from error
+        # What it logs about a lost connection is said here in one sentence.
+        logging.getLogger("distributed").setLevel(logging.CRITICAL + 1)
         try:
             client: Any = distributed.Client
             self._client = client(address, timeout=CONNECT_SECONDS, set_as_default=False)

@@ -1,0 +1,138 @@
+"""Many sets in one review: time and memory per set, and the price of primality.
+
+``python -m tests.benchmarks.bulk sets 1000 10000`` reviews so many small sets over few moduli, each
+count in a process of its own. ``python -m tests.benchmarks.bulk primes MODULI [COUNT [BITS]]``
+compares a review of safe primes from a file in OpenSSH's moduli(5) format, cold and with a warm
+ledger, with nothing but the same primality rounds on the same number of processes.
+"""
+
+import os
+import random
+import resource
+import secrets
+import subprocess
+import sys
+import tempfile
+import time
+from concurrent.futures import ProcessPoolExecutor
+from dataclasses import replace
+from multiprocessing import get_context
+from pathlib import Path
+
+import gmpy2
+
+from auditor.answers import Cores
+from auditor.claims.primality_tests import is_probable_prime
+from auditor.declaration import EVERYBODY, Declaration, Party, Place
+from auditor.facts import vocabulary
+from auditor.pool import LocalPool
+from auditor.report.record import Reading, build
+from auditor.review import DEFAULT_BOOKS, Surroundings, census, investigate
+from auditor.rulebook import load_all
+from auditor.run_values import RunValues
+
+POOL, BITS = 16, 256
+"""Distinct moduli of the small sets, and their length."""
+
+
+def small_sets(count: int) -> list[Declaration]:
+    """Sets over few moduli; generators and widths differ, as they do in a tree of configurations."""
+    rng = random.Random(1)
+    primes = [int(gmpy2.next_prime(rng.getrandbits(BITS) | 1 << (BITS - 1))) for _ in range(POOL)]
+    return [
+        Declaration(
+            f"set {place}",
+            Place("invented.yaml", place + 1),
+            primes[place % POOL],
+            2 + place // POOL % 4,
+            purpose="key-agreement",
+            parties=(Party(EVERYBODY, 128 + rng.randrange(128), "static", ("range",)),),
+        )
+        for place in range(count)
+    ]
+
+
+def peak_mib() -> float:
+    """The largest resident size so far."""
+    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+
+
+def time_sets(count: int) -> None:
+    """Print one row of the table."""
+    books = load_all(DEFAULT_BOOKS, vocabulary())
+    sets = small_sets(count)
+    run = replace(RunValues("2026-12-01", "quick"), census=census(sets))
+    before, begun = peak_mib(), time.perf_counter()
+    claims, _ = investigate(sets, run, books, Surroundings(secrets.randbelow))
+    settled, middle = time.perf_counter() - begun, peak_mib()
+    record = build(Reading(tuple(sets)), claims, run, books, "conditions")
+    built = time.perf_counter() - begun - settled
+    assert len(record["parameter_sets"]) == count
+    print(
+        f"| {count:,} | {settled:.1f} s | {1000 * settled / count:.1f} ms | {built:.1f} s "
+        f"| {1000 * built / count:.1f} ms | {1024 * (middle - before) / count:.1f} KiB "
+        f"| {1024 * (peak_mib() - before) / count:.1f} KiB |"
+    )
+
+
+def moduli(path: Path, count: int, bits: int) -> list[int]:
+    """The first so many moduli of that length in a moduli(5) file."""
+    found = []
+    for line in path.read_text().splitlines():
+        words = line.split()
+        if len(words) == 7 and not line.startswith("#") and int(words[4]) + 1 == bits:
+            found.append(int(words[6], 16))
+    return found[:count]
+
+
+def rounds_of(q: int) -> bool:
+    """The primality rounds that a safe prime 2q + 1 cannot do without."""
+    return is_probable_prime(q, 64, secrets.randbelow)
+
+
+def time_primes(path: Path, count: int, bits: int) -> None:
+    """Print the rounds alone, a cold review and a warm one, each on all cores."""
+    primes, jobs = moduli(path, count, bits), os.cpu_count() or 1
+    sets = [Declaration(f"set {n}", Place("moduli", 1), p, 2) for n, p in enumerate(primes)]
+    books = load_all(DEFAULT_BOOKS, vocabulary())
+    run = replace(RunValues("2026-12-01", "standard"), census=census(sets))
+
+    def reviewed(ledger: Path) -> float:
+        with LocalPool(jobs) as pool:
+            begun = time.perf_counter()
+            surroundings = Surroundings(secrets.randbelow, ledger=ledger, cores=Cores(pool, jobs))
+            investigate(sets, run, books, surroundings)
+            return time.perf_counter() - begun
+
+    with ProcessPoolExecutor(jobs, mp_context=get_context("spawn")) as executor:
+        begun = time.perf_counter()
+        assert all(executor.map(rounds_of, [p // 2 for p in primes]))
+        bare = time.perf_counter() - begun
+    with tempfile.TemporaryDirectory() as folder:
+        cold = reviewed(Path(folder) / "ledger")
+        warm = reviewed(Path(folder) / "ledger")
+    print(
+        f"{len(primes)} safe primes of {bits} bits, {jobs} processes: rounds alone {bare:.2f} s, "
+        f"cold {cold:.2f} s ({cold / bare:.2f}x), warm {warm:.2f} s ({warm / bare:.2f}x)"
+    )
+
+
+def main(words: list[str]) -> None:
+    """Run what the words ask for."""
+    if words[0] == "primes":
+        numbers = [int(word) for word in words[2:]]
+        count, bits = (*numbers, *(24, 2048)[len(numbers) :])
+        time_primes(Path(words[1]), count, bits)
+    elif len(words) == 2:
+        time_sets(int(words[1]))
+    else:
+        print("| sets | settle | each | record | each | memory, settled | memory, record |")
+        print("| --- | --- | --- | --- | --- | --- | --- |", flush=True)
+        for word in words[1:]:
+            subprocess.run(
+                [sys.executable, "-m", "tests.benchmarks.bulk", "sets", word], check=True
+            )
+
+
+if __name__ == "__main__":
+    main(sys.argv[1:])
