@@ -1,6 +1,6 @@
 """Stands in for the program ecm: reads the same input, prints in the same form, does as it is told.
 
-    ecm_stand_in.py BEHAVIOUR [options of ecm]
+ecm_stand_in.py BEHAVIOUR [options of ecm]
 """
 
 import json
