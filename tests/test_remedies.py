@@ -2,22 +2,32 @@
 
 import json
 import secrets
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from functools import cache
 from pathlib import Path
 from typing import Any
 
 import pytest
+import sympy
+from hypothesis import given
+from hypothesis import strategies as st
 
 from auditor.changes import groups_for
 from auditor.claims.collection import check_all
-from auditor.declaration import Declaration, Place
+from auditor.declaration import Declaration, Party, Place
 from auditor.encoding import digest
-from auditor.remedies import patched, registry_claims
+from auditor.exposure import Exposures
+from auditor.facts import establish, vocabulary
+from auditor.findings import judge
+from auditor.intake.record import declaration_from
+from auditor.remedies import HELD, Remedies, patched, registry_claims
 from auditor.report.json_report import problems
-from auditor.review import Surroundings, review
+from auditor.review import DEFAULT_BOOKS, Surroundings, review
+from auditor.rulebook import load_all
+from auditor.rulebook_types import Rulebook
 from auditor.run_values import RunValues
 from auditor.verify import verify
+from tests.facts.knowledge import settled
 
 SAMPLES = Path(__file__).parents[1] / "samples"
 QUICK = RunValues("2026-12-01", "quick")
@@ -326,3 +336,56 @@ def test_a_patch_takes_out_what_it_sets_to_null() -> None:
     patch = {"modulus": {"group": "modp2048"}, "generator": None}
 
     assert patched(document, patch) == {"name": "set", "modulus": {"group": "modp2048"}}
+
+
+@cache
+def default_books() -> Sequence[Rulebook]:
+    """The books in force by default."""
+    return load_all(DEFAULT_BOOKS, vocabulary())
+
+
+SMALL_PRIMES = st.integers(3, 2000).map(sympy.nextprime)
+PARTIES = st.lists(
+    st.builds(
+        Party,
+        st.sampled_from(["server", "client"]),
+        st.none() | st.integers(1, 16),
+        st.none() | st.sampled_from(["single", "reused", "static"]),
+        st.none() | st.sampled_from([(), ("range",), ("range", "membership"), ("cofactor",)]),
+    ),
+    max_size=2,
+    unique_by=lambda party: party.role,
+).map(tuple)
+
+
+@given(
+    st.builds(
+        Declaration,
+        name=st.just("set"),
+        place=st.just(Place("p", 1)),
+        modulus=SMALL_PRIMES | st.integers(1, 500),
+        generator=st.integers(0, 3000),
+        purpose=st.none() | st.sampled_from(["key-agreement", "encryption", "signature"]),
+        scheme=st.none() | st.sampled_from(["elgamal-raw", "elgamal-hashed", "schnorr"]),
+        protocol=st.none() | st.sampled_from(["tls1.2", "ssh", "ikev2", "custom"]),
+        subgroup_order=st.none() | st.integers(0, 1000),
+        parties=PARTIES,
+        message_bits=st.none() | st.integers(0, 8),
+        required_strength=st.integers(0, 5) | st.just(300),
+    )
+)
+def test_for_any_numbers_a_patch_of_the_usage_or_the_generator_holds(declared: Declaration) -> None:
+    """Small groups of every kind: judged again on claims of its own, the finding is gone."""
+    books = default_books()
+    claims = settled(declared, QUICK)
+    known = establish(declared, claims, QUICK)
+    judgement = judge(books, known.facts, known.absent, vocabulary())
+    Exposures(claims, QUICK).of(declared)
+
+    for rule, remedy in Remedies(claims, QUICK, books).of(known, judgement).items():
+        if remedy.patch is None or "modulus" in remedy.patch:
+            continue
+        document = patched(declared.document(), remedy.record()["patch"])
+        changed = declaration_from(document, declared.place)
+        now = establish(changed, settled(changed, QUICK), QUICK)
+        assert judge(books, now.facts, now.absent, vocabulary()).outcomes[rule] in HELD
