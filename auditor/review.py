@@ -177,7 +177,9 @@ def _reading(read: InputResult, notices: tuple[str, ...]) -> Reading:
             for error in read.errors
         ),
         skipped=tuple(
-            {"path": path, "reason": "not a declaration document"} for path in read.skipped
+            {"path": item.path, "reason": item.reason}
+            | ({} if item.line is None else {"line": item.line})
+            for item in read.passed
         ),
-        notices=notices,
+        notices=(*map(str, read.notices), *notices),
     )
