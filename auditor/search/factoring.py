@@ -145,14 +145,13 @@ class _Search:
         )
         return SearchResult(self.m, factors, self.parts.composites(), self.work)
 
-    def divide(self, divisors: Iterable[int], method: str) -> bool:
-        """Splits the composite parts by the divisors; whether any was."""
+    def divide(self, divisors: Iterable[int], method: str) -> None:
+        """Splits the composite parts by the divisors."""
         primes = self.parts.divide(divisors)
         for prime, exponent in primes.items():
             self.methods[prime] = method
             if self.on_factor:
                 self.on_factor(Factor(prime, exponent, method))
-        return bool(primes)
 
     def did(self, **counts: Any) -> None:
         self.work = replace(self.work, **counts)
@@ -172,24 +171,25 @@ class _Search:
             self.attempt(partial(rho, iterations=plan.rho_iterations), "rho")
             self.did(rho_iterations=plan.rho_iterations)
         if plan.p_minus_1 > work.p_minus_1:
-            self.attempt_at_once(
-                partial(lucas.p_minus_1, b1=plan.p_minus_1[0], b2=plan.p_minus_1[1]), "p-1"
-            )
+            b1, b2 = plan.p_minus_1
+            self.attempt(partial(lucas.p_minus_1, b1=b1, b2=b2), "p-1")
             self.did(p_minus_1=plan.p_minus_1)
         b1, b2 = plan.p_plus_1
-        starts = plan.p_plus_1_starts if plan.p_plus_1 > work.p_plus_1 else 0
-        for start in range(starts):
-            self.attempt_at_once(partial(lucas.p_plus_1, b1=b1, b2=b2, start=start), "p+1")
+        for start in self._starts_left():
+            self.attempt(partial(lucas.p_plus_1, b1=b1, b2=b2, start=start), "p+1")
             self.did(p_plus_1=plan.p_plus_1, p_plus_1_starts=start + 1)
 
-    def attempt(self, method: Callable[[int], int], name: str) -> None:
-        """Uses a method until it finds nothing more."""
-        while self.parts.open > 1 and self.found(method(self.parts.open), name):
-            pass
+    def _starts_left(self) -> range:
+        """The starting values of p+1 that were not used before with these bounds or larger ones."""
+        plan, work = self.plan, self.work
+        if plan.p_plus_1 < work.p_plus_1:
+            return range(0)
+        first = work.p_plus_1_starts if plan.p_plus_1 == work.p_plus_1 else 0
+        return range(first, plan.p_plus_1_starts)
 
-    def attempt_at_once(self, method: Callable[[int], Sequence[int]], name: str) -> None:
-        """Uses a method that finds all within its reach at once: once on the whole, then on the
-        pieces that it found, which may hold several primes each."""
+    def attempt(self, method: Callable[[int], Sequence[int]], name: str) -> None:
+        """Uses a method, which finds all within its reach in one pass: once on the whole, then on
+        the pieces that it found, which may hold several primes each."""
         waiting = [self.parts.open]
         while waiting:
             number = waiting.pop()

@@ -123,6 +123,15 @@ def test_factors_that_p_minus_1_finds_together_are_told_apart() -> None:
     assert result.composites == ((cofactor, 1),)
 
 
+def test_a_known_composite_part_that_a_method_finds_whole_ends_the_method() -> None:
+    """Rho sees both primes of a known divisor at once; nothing new is learnt, and it stops."""
+    part, rest = 10007 * 10009, composite(4, 256)
+    result = search(part * rest, Plan(100, 1, rho_iterations=5000), known=[part])
+
+    assert {factor.prime for factor in result.factors} <= {10007, 10009}
+    assert result.rest * prod(p for p, _ in result.pairs) == part * rest
+
+
 def test_close_factors_are_found_by_fermat() -> None:
     """Two consecutive primes of 1024 bits."""
     p = prime("close", 1024)
@@ -186,6 +195,8 @@ def test_nothing_is_done_twice(monkeypatch: pytest.MonkeyPatch) -> None:
     assert search(n, plan, done=first.work) == first
     with pytest.raises(AssertionError):
         search(n, replace(plan, p_plus_1=(50, 901)), done=first.work)
+    with pytest.raises(AssertionError):
+        search(n, replace(plan, p_plus_1_starts=3), done=first.work)
 
 
 def test_very_long_numbers_get_less_work_and_the_record_says_so() -> None:
