@@ -42,7 +42,8 @@ class SubgroupGenerator(Claim):
     ) -> "SubgroupGenerator":
         only(statement, "n", "q", "base", "g")
         only(certificate)
-        return cls(*(natural(statement[key]) for key in ("n", "q", "base", "g")), uses)
+        n, q, base, g = (natural(statement[key]) for key in ("n", "q", "base", "g"))
+        return cls(n, q, base, g, uses)
 
     def check(self, used: Mapping[str, Claim], draw: Draw) -> None:
         require_primes({self.n, self.q}, used)

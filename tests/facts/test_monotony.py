@@ -15,7 +15,8 @@ from auditor.rulebook import load_all
 from auditor.rulebook_types import Rulebook
 from tests.facts.knowledge import declare, known, partial_claims, reviewed, settled, some
 
-PRIMES = tuple(sympy.prevprime(1 << bits) for bits in range(8, 44, 3)) + (
+PRIMES = (
+    *(sympy.prevprime(1 << bits) for bits in range(8, 44, 3)),
     1000003,
     10007,
     2**31 - 1,
@@ -40,7 +41,7 @@ CHECKS = (None, (), ("range",), ("membership",), ("range", "membership"), ("cofa
 
 
 @st.composite
-def declarations(draw: st.DrawFn, moduli: tuple[int, ...] = PRIMES + COMPOSITES) -> Declaration:
+def declarations(draw: st.DrawFn, moduli: tuple[int, ...] = (*PRIMES, *COMPOSITES)) -> Declaration:
     """Small sets, most of them over primes, of any usage."""
     n = draw(st.sampled_from(moduli))
     divisors = sympy.divisors(n - 1)[:200] if n > 1 else [1]
