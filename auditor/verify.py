@@ -75,7 +75,7 @@ def verify(
         again = conceded(_again(report, claims, books), granted)
     except RulebookError as error:
         return Verification((), (f"the rulebooks cannot be loaded: {error}",), len(claims))
-    except (ValueError, KeyError) as error:
+    except (ValueError, KeyError, ArithmeticError) as error:
         return Verification((f"the report cannot be drawn again: {error}",), claims=len(claims))
     if other := _other_books(report, again):
         return Verification((), tuple(other), len(claims))

@@ -24,6 +24,8 @@ def unit(given: Given) -> bool:
 @fact("generator.trivial", "bool", "g is 0, 1 or n-1 modulo n")
 def trivial(given: Given) -> bool:
     n = given.declaration.modulus
+    if n < 1:
+        given.undefined()
     return given.declaration.generator % n in {0, 1 % n, n - 1}
 
 
