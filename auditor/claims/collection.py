@@ -54,6 +54,7 @@ class Claims:
     def __init__(self, claims: Iterable[Claim] = ()) -> None:
         self._by_id: dict[str, Claim] = {}
         self._by_subject: dict[tuple[Any, ...], list[Claim]] = {}
+        self._standings: dict[str, Standing] = {}
         self.add(claims)
 
     def __iter__(self) -> Iterator[Claim]:
@@ -125,8 +126,11 @@ class Claims:
         )
 
     def standing(self, claim_id: str) -> Standing:
-        """The weakest standing among the claim and all that it rests on."""
-        return weakest(claim.standing for claim in self.support([claim_id]))
+        """The weakest standing among the claim and all that it rests on; claims only come, so it
+        stays what it is."""
+        if claim_id not in self._standings:
+            self._standings[claim_id] = weakest(c.standing for c in self.support([claim_id]))
+        return self._standings[claim_id]
 
     def support(self, ids: Iterable[str]) -> list[Claim]:
         """The named claims and all that they rest on, by id. KeyError when one is not here."""

@@ -16,7 +16,10 @@ class Standing(StrEnum):
     @property
     def weakness(self) -> int:
         """0 for the strongest."""
-        return list(Standing).index(self)
+        return _WEAKNESS[self]
+
+
+_WEAKNESS = {standing: place for place, standing in enumerate(Standing)}
 
 
 def weakest(standings: Iterable[Standing]) -> Standing:
