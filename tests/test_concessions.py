@@ -298,6 +298,8 @@ def test_every_figure_of_work_has_a_direction() -> None:
         if words[name].kind == "bool" and words[name].bound == "seen"
     )
     assert worse_when("modulus.nature") is None
+    assert worse_when("scheme.forgery_bits_at_most") == "lower"
+    assert worse_when("modulus.occurrences") == "higher"
 
 
 def test_types_are_part_of_a_value() -> None:
@@ -581,6 +583,24 @@ class TestCommands:
         assert weak(*quick("head"), *policy).status == 0
         verified = ("verify", "r.json", "--against", "head", "--policy-from", "base")
         assert weak(*verified).status == 0
+
+    def test_policy_inside_the_tree_is_not_told_as_unused(self, weak: Any) -> None:
+        """What is in use is not named among what is not."""
+        Path("tree/base").mkdir(parents=True)
+        Path("tree/weak.yaml").write_text(WEAK)
+        Path("tree/base/concessions.yaml").write_text(Path("granted.yaml").read_text())
+        words = (*quick("tree"), "--policy-from", "tree/base", "--json", "r.json")
+
+        assert weak(*words).status == 0
+        notes = json.loads(Path("r.json").read_text())["notices"]
+        assert not any("not used" in line for line in notes)
+
+    def test_a_broken_link_is_no_absence(self, weak: Any) -> None:
+        """Concessions that cannot be reached are refused, not passed over."""
+        Path("base").mkdir()
+        Path("base/concessions.yaml").symlink_to("absent.yaml")
+
+        assert weak(*quick("weak.yaml"), "--policy-from", "base").status == 2
 
     def test_files_of_policy_lie_where_policy_is(self, weak: Any) -> None:
         """A named file is looked for there; one outside is refused, whatever way leads out."""
