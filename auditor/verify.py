@@ -4,7 +4,7 @@ Nothing is searched for and nothing in the report is believed but the owner's wo
 of search effort, which nobody can check. The verifier draws its own bases.
 """
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import Any
@@ -21,8 +21,8 @@ from auditor.intake.tree import InputResult
 from auditor.report.json_report import problems
 from auditor.report.record import FORMAT, Reading, build
 from auditor.review import census
-from auditor.rulebook import load_all
-from auditor.rulebook_types import RulebookError
+from auditor.rulebook import available, load_all
+from auditor.rulebook_types import Rulebook, RulebookError
 from auditor.run_values import RunValues
 
 
@@ -107,7 +107,7 @@ def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> d
         engine=run["engine"],
         census=MappingProxyType(dict(census(declarations))),
     )
-    rulebooks = load_all([*(book["name"] for book in report["rulebooks"]), *books], vocabulary())
+    rulebooks = _rulebooks([book["name"] for book in report["rulebooks"]], books)
     reading = Reading(
         declarations,
         tuple(report["inputs"]),
@@ -116,6 +116,14 @@ def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> d
         tuple(report["notices"]),
     )
     return build(reading, claims, values, rulebooks, run["fail_on"])
+
+
+def _rulebooks(names: Sequence[str], files: Iterable[str]) -> tuple[Rulebook, ...]:
+    """The books of the report, in its order: shipped ones by name, others from the files given."""
+    shipped = [name for name in names if name in available()]
+    loaded = load_all([*shipped, *files], vocabulary())
+    places = {name: place for place, name in enumerate(names)}
+    return tuple(sorted(loaded, key=lambda book: places.get(book.name, len(names))))
 
 
 def _declaration(record: Mapping[str, Any]) -> Declaration:

@@ -3,13 +3,17 @@
 import copy
 import secrets
 from functools import cache
+from pathlib import Path
 from typing import Any
 
 import pytest
 
+from auditor.review import Surroundings, review
+from auditor.run_values import RunValues
 from auditor.search import factoring, primality
 from auditor.verify import differences, verify
-from tests.robustness.edits import explained, report, seal, survivors
+from tests.robustness.edits import DOCUMENT, explained, report, seal, survivors
+from tests.test_documents import blocks
 
 
 @cache
@@ -145,3 +149,20 @@ def test_a_report_that_claims_what_broken_search_said_is_refused() -> None:
 
     assert result.status == 1
     assert any("composite" in line for line in result.failures)
+
+
+def test_a_house_book_is_needed_to_verify_what_it_judged(tmp_path: Path) -> None:
+    """With the book all holds; without it, or with another one, that cannot be told."""
+    house = tmp_path / "house.yaml"
+    house.write_text(blocks("rules/README.md", "yaml")[0])
+    record = review(
+        [str(DOCUMENT)],
+        RunValues("2026-12-01", "quick"),
+        Surroundings(secrets.randbelow),
+        books=["group-structure", str(house)],
+    )
+
+    assert verify(record, secrets.randbelow, [str(house)]).status == 0
+    assert verify(record, secrets.randbelow).status == 2
+    house.write_text(house.read_text() + "\n# another\n")
+    assert verify(record, secrets.randbelow, [str(house)]).status == 2
