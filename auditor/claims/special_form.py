@@ -51,7 +51,7 @@ class SpecialForm(Claim):
         )
 
     def check(self, used: Mapping[str, Claim], draw: Draw) -> None:
-        # python-flint is loaded only where a special form has to be checked.
+        # sympy is loaded only where a special form has to be checked.
         from auditor.claims.special_form_check import check
 
         require(len(self.coefficients) >= 2, "no polynomial")

@@ -11,7 +11,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from math import gcd, log2
 
-from flint import fmpz_poly
+from sympy import ZZ, Poly, Symbol
 
 from auditor.claims.base import require
 
@@ -56,8 +56,9 @@ def check(n: int, f: Sequence[int], g1: int, g0: int, k: int | None = None) -> P
     value = _homogeneous_value(f, g1, g0)
     require(value != 0 and value % n == 0, "the value is not a multiple of the modulus")
     require(k is None or value == k * n, "the value is another multiple of the modulus")
-    factors = fmpz_poly(list(f)).factor()[1]
-    require(len(factors) == 1 and factors[0][1] == 1, "the polynomial is reducible")
+    # sympy rather than the library that the search factors polynomials with: a second opinion.
+    polynomial = Poly(list(f)[::-1], Symbol("x"), domain=ZZ)
+    require(bool(polynomial.is_irreducible), "the polynomial is reducible")
     return PairSizes(degree, log2(max(map(abs, f))), log2(max(g0, g1)), chance)
 
 
