@@ -18,6 +18,7 @@ from auditor.claims.factorization import Factorization
 from auditor.claims.order import Membership, Order
 from auditor.claims.prime import Prime, factored_enough
 from auditor.claims.searched import Searched
+from auditor.claims.special_form import FormSearched, SpecialForm
 from auditor.claims.standing import Standing
 from tests.claims.test_primality_tests import CASES, cases, number
 
@@ -63,6 +64,8 @@ GOOD: list[tuple[Claim, list[Claim]]] = [
     (Membership(P, 25, 5003, True), []),
     (Membership(P, 5, 5003, False), []),
     (Searched(2**67 - 1, "built-in", (("rho", (("iterations", 1000),)),)), []),
+    (SpecialForm(2**1024 - 105, (-105, 0, 0, 0, 16), 1, 2**255, 1), []),
+    (FormSearched(P, (1, 2)), []),
 ]
 
 
@@ -183,6 +186,14 @@ REFUTED: list[tuple[str, Claim, list[Claim]]] = [
     ("divides the rest", Factorization(36, ((2, 1),), 18, ids(primes(2))), primes(2)),
     ("not shown composite", Factorization(182, ((2, 1),), 91, ids(primes(2))), primes(2)),
     ("above 1", Searched(1, "built-in", ()), []),
+    ("multiple", SpecialForm(2**1024 - 107, (-105, 0, 0, 0, 16), 1, 2**255, 1), []),
+    ("multiple", SpecialForm(2**1024 - 105, (-105, 0, 0, 0, 16), 1, 2**255, 2), []),
+    ("ordinary", SpecialForm(P, (-105, 0, 0, 0, 16), 1, 2**255, 1), []),
+    ("degree", SpecialForm(2**1024 - 9, (-9, 0, 1), 1, 2**512, 1), []),
+    ("reducible", SpecialForm(2**1024 - 9, (-9, 0, 0, 0, 1), 1, 2**256, 1), []),
+    ("no polynomial", SpecialForm(P, (1,), 1, 2, 1), []),
+    ("tiers", FormSearched(P, (2, 1)), []),
+    ("tiers", FormSearched(P, ()), []),
 ]
 
 
