@@ -111,7 +111,7 @@ PARTIES = st.builds(
         purpose=st.none() | st.sampled_from(PURPOSES),
         protocol=st.none() | st.sampled_from(PROTOCOLS),
         subgroup_order=st.none() | NUMBERS,
-        known_factors=st.lists(NUMBERS, max_size=3).map(tuple),
+        known_factors=st.lists(NUMBERS.filter(lambda n: n > 1), max_size=3).map(tuple),
         parties=st.just(()) | PARTIES.map(lambda party: (party,)),
         public_values=st.lists(NUMBERS, max_size=3).map(tuple),
         provenance=st.none() | NAMES.map(lambda text: Provenance("other", (("text", text),))),
