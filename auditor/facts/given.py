@@ -8,6 +8,7 @@ it with :class:`Missing`; a fact built on it is then absent for the same reason.
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from math import gcd
 from typing import NoReturn, TypeVar
 
 from auditor.claims.base import Claim
@@ -175,7 +176,7 @@ class Given:
         """The most complete factorization of ``m``, by a claim; loose while a rest is left, with
         ``deeper`` as the question that is then open."""
         claim = self._claims.factorization(m)
-        if claim is None:
+        if claim is None or any(1 < gcd(hint, claim.rest) < claim.rest for hint in hints):
             self.unsettled(Question(Asks.SMALL_FACTORS, (m, *hints)))
         self.cite(claim)
         if claim.rest > 1:

@@ -6,16 +6,19 @@ recomputed independently before this code was written; ours count (r-1)/2 trials
 rather than r/2, and round down.
 """
 
+import secrets
 from functools import cache
 from math import prod
 
 import pytest
 
+from auditor.answers import Answers
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
 from auditor.facts import Established
 from auditor.intake.standard_groups import find
+from auditor.questions import Asks
 from auditor.run_values import RunValues
 from tests.facts.knowledge import declare, known, settled
 
@@ -81,7 +84,8 @@ def test_group_24_falls_when_its_32_bit_factor_is_found() -> None:
     sufficient before."""
     usage = {"bits": 256, "required_strength": 100, **STATIC_UNCHECKED}
     declaration = group(24, GROUP_24, **usage)
-    before = known(declaration, without(GROUP_24, declaration.modulus - 1), QUICK)
+    undeclared = group(24, (), **usage)
+    before = known(undeclared, without(GROUP_24, declaration.modulus - 1), QUICK)
     after = known(declaration, claims(24, GROUP_24), QUICK)
 
     bits = "strength.confinement_bits_at_most"
@@ -173,3 +177,17 @@ def test_a_standard_group_is_what_it_is_said_to_be() -> None:
     assert values["generator.order_is_declared"] is True
     assert values["modulus.special_form_seen"] is False
     assert "strength.hidden_form_bits_at_most" not in values
+
+
+def test_a_declared_factor_counts_although_a_search_has_left_it() -> None:
+    """Claims kept from an earlier run left 3181327537 unsplit; the owner declares it now."""
+    declaration = group(24, GROUP_24, bits=256, **STATIC_UNCHECKED)
+    kept = without(GROUP_24, declaration.modulus - 1)
+    asked = known(declaration, kept, QUICK).absent["strength.confinement_bits_at_most"].questions
+    assert [question.asks for question in asked] == [Asks.SMALL_FACTORS]
+
+    answers = Answers(kept, QUICK, secrets.randbelow, lambda made: None)
+    for question in asked:
+        answers.answer(question)
+    after = known(declaration, answers.claims, QUICK)
+    assert after.facts["group.factored"].value is True
