@@ -10,7 +10,7 @@ from collections.abc import Iterable
 from auditor.answers import Answers
 from auditor.claims.factorization import Factorization
 from auditor.questions import Asks, Question
-from auditor.search.batch_gcd import shared_factors
+from auditor.search.batch_gcd import shared_factors, threads
 
 
 def share_among_moduli(moduli: Iterable[int], answers: Answers) -> bool:
@@ -33,7 +33,9 @@ def _use(holders: dict[int, list[int]], answers: Answers) -> bool:
     """Factor the holders of each number by the factor that it shares with another one."""
     numbers = sorted(holders)
     found = False
-    for index, (factor, _) in sorted(shared_factors(numbers).items()) if len(numbers) > 1 else ():
+    with threads(answers.cores.jobs) as executor:
+        shared = shared_factors(numbers, executor) if len(numbers) > 1 else {}
+    for index, (factor, _) in sorted(shared.items()):
         if not 1 < factor < numbers[index]:
             continue
         for n in holders[numbers[index]]:

@@ -16,7 +16,7 @@ a leaf gives the exact remainder.
 """
 
 from collections.abc import Callable, Iterable, Sequence
-from concurrent.futures import Executor
+from concurrent.futures import Executor, ThreadPoolExecutor
 from itertools import pairwise
 from typing import Any, NamedTuple
 
@@ -51,6 +51,19 @@ class SharedFactor(NamedTuple):
 
     factor: int
     other: int
+
+
+def threads(jobs: int) -> ThreadPoolExecutor:
+    """An executor for :func:`batch_gcd` whose threads multiply side by side.
+
+    GMP runs without the interpreter's lock in them, and nothing is copied between processes, which
+    for numbers of megabytes costs more than it gains.
+    """
+    return ThreadPoolExecutor(jobs, initializer=_release_the_lock)
+
+
+def _release_the_lock() -> None:
+    gmpy2.get_context().allow_release_gil = True
 
 
 def batch_gcd(moduli: Sequence[int], executor: Executor | None = None) -> list[int]:

@@ -17,7 +17,7 @@ from typing import Any
 import gmpy2
 from gmpy2 import mpz
 
-from auditor.search.batch_gcd import batch_gcd
+from auditor.search.batch_gcd import batch_gcd, threads
 
 
 def textbook(moduli: list[int]) -> list[int]:
@@ -69,7 +69,9 @@ def compare(count: int, bits: int) -> None:
     with ProcessPoolExecutor(2, mp_context=multiprocessing.get_context("spawn")) as pool:
         pool.submit(batch_gcd, moduli[:2]).result()
         pooled, _, double = timed(batch_gcd, moduli, pool)
-    if not single == double == expected:
+    with threads(2) as pool:
+        threaded, _, triple = timed(batch_gcd, moduli, pool)
+    if not single == double == triple == expected:
         raise SystemExit("the results differ")
     peaks = [fresh_peak(function, moduli) for function in (textbook, batch_gcd)]
     print(f"{count} moduli of {bits} bits, equal results\n")
@@ -78,6 +80,7 @@ def compare(count: int, bits: int) -> None:
     print(f"| textbook | {book:.2f} | 1.00 | {book_busy:.2f} | 1.00 | {peaks[0]} |")
     print(f"| ours | {ours:.2f} | {book / ours:.2f}", end=" | ")
     print(f"{ours_busy:.2f} | {book_busy / ours_busy:.2f} | {peaks[1]} |")
+    print(f"| ours, two threads | {threaded:.2f} | {book / threaded:.2f} | | | |")
     print(f"| ours, two processes | {pooled:.2f} | {book / pooled:.2f} | | | |")
 
 
