@@ -16,6 +16,7 @@ from auditor.facts import (  # noqa: F401  (imported to register their facts)
     strength,
     subgroup,
     usage,
+    witnesses,
 )
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.facts.given import Given

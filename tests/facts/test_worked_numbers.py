@@ -13,7 +13,7 @@ from math import prod
 import pytest
 
 from auditor.answers import Answers
-from auditor.claims.collection import Claims
+from auditor.claims.collection import Claims, check_all
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
 from auditor.facts import Established
@@ -191,3 +191,20 @@ def test_a_declared_factor_counts_although_a_search_has_left_it() -> None:
         answers.answer(question)
     after = known(declaration, answers.claims, QUICK)
     assert after.facts["group.factored"].value is True
+
+
+def test_each_usable_small_order_has_a_witness_that_is_claimed() -> None:
+    """Group 24, static and unchecked: an element of every prime order up to 2^41, each a claim."""
+    found = facts(24, GROUP_24, bits=256, **STATIC_UNCHECKED)
+    witnesses = settled(group(24, GROUP_24, bits=256, **STATIC_UNCHECKED), QUICK)
+    known_now = known(group(24, GROUP_24, bits=256, **STATIC_UNCHECKED), witnesses, QUICK)
+    fact = known_now.facts["subgroup.small_order_elements_seen"]
+    n = group(24).modulus
+
+    assert found.absent["subgroup.small_order_elements_seen"].reason == "unsettled"
+    assert [r for r, _ in fact.value] == [2, 7, 13, 2549, 142031, 3181327537]
+    for r, element in fact.value:
+        h = element if isinstance(element, int) else int(element, 16)
+        assert h != 1
+        assert pow(h, r, n) == 1
+    assert check_all(witnesses, secrets.randbelow) == {}
