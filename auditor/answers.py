@@ -270,7 +270,8 @@ class Answers:
         tiers = (1, 2, 3) if self.run.effort == "thorough" else (1, 2)
         found = special_form.search(n, tiers)
         if found is None:
-            self._accept(FormSearched(n, tiers))
+            done = tuple(sorted(item.tier for item in special_form.looked_for(n, tiers)))
+            self._accept(FormSearched(n, done))
         else:
             self._accept(SpecialForm(n, found.coefficients, found.g1, found.g0, found.cofactor))
 

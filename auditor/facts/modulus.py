@@ -5,6 +5,7 @@ from auditor.facts.given import Given
 from auditor.facts.registry import fact
 from auditor.intake import standard_groups
 from auditor.questions import Asks, Question
+from auditor.search.special_form import LEAST_LENGTH
 
 NATURES = ("prime", "prime power", "power of two", "composite")
 
@@ -76,7 +77,7 @@ def smallest_factor_length(given: Given) -> int:
 )
 def special_form_seen(given: Given) -> bool:
     n = given.declaration.modulus
-    if given.see(parts.nature) != "prime" or n == 2:
+    if given.see(parts.nature) != "prime" or n.bit_length() < LEAST_LENGTH:
         given.undefined()
     form = given.claims.special_form(n)
     if form is not None:
