@@ -4,12 +4,12 @@ Everything else may change between versions without notice; the report record ha
 own (``report.schema.json``).
 """
 
-from auditor.answers import Answers, Cores
 from auditor.claims.collection import Claims
+from auditor.inquiry.answers import Answers, Cores
+from auditor.inquiry.unit_groups import ElementOrder, Structure, isomorphic, order_of, structure
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
 from auditor.structure import PartlyFactoredGroup, UnitGroup, UnsplitGroup
-from auditor.unit_groups import ElementOrder, Structure, isomorphic, order_of, structure
 from auditor.verify import Verification, verify
 
 __all__ = [

@@ -18,8 +18,8 @@ import click
 from auditor import __version__
 
 if TYPE_CHECKING:
-    from auditor.cluster import Cluster
-    from auditor.pool import LocalPool
+    from auditor.inquiry.cluster import Cluster
+    from auditor.inquiry.pool import LocalPool
     from auditor.review import Surroundings
     from auditor.run_values import Effort, RunValues
 
@@ -145,11 +145,11 @@ def _surroundings(options: dict[str, Any]) -> "Iterator[Surroundings]":
     usage error."""
     import secrets
 
-    from auditor.answers import Cores
-    from auditor.dispatch import ExecutorLost
+    from auditor.inquiry.answers import Cores
+    from auditor.inquiry.dispatch import ExecutorLost
     from auditor.progress import Progress, is_live
     from auditor.review import Surroundings
-    from auditor.rulebook_types import RulebookError
+    from auditor.rulebooks.rulebook import RulebookError
 
     progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
     with _workers(options) as pool:
@@ -179,8 +179,8 @@ def _kept(options: dict[str, Any]) -> str:
 
 def _workers(options: dict[str, Any]) -> "LocalPool | Cluster":
     """The workers of the cluster where one is named, otherwise those of this machine."""
-    from auditor.cluster import Cluster, NoCluster
-    from auditor.pool import LocalPool
+    from auditor.inquiry.cluster import Cluster, NoCluster
+    from auditor.inquiry.pool import LocalPool
 
     if not options.get("cluster"):
         return LocalPool(options["jobs"])
@@ -243,7 +243,7 @@ def ask(paths: tuple[str, ...], **options: Any) -> int:
 
 
 def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], list[Any]]:
-    from auditor.ask import ask as ask_about
+    from auditor.advice.ask import ask as ask_about
 
     declarations, claims, run, errors = _investigated(paths, options)
     books = _books(options)
@@ -253,7 +253,7 @@ def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], 
 def _books(options: dict[str, Any]) -> Any:
     from auditor.facts import vocabulary
     from auditor.review import DEFAULT_BOOKS
-    from auditor.rulebook import load_all
+    from auditor.rulebooks.loading import load_all
 
     return load_all(options.get("rulebook") or DEFAULT_BOOKS, vocabulary())
 
@@ -420,12 +420,12 @@ def structure(
     import json
     import secrets
 
-    from auditor.answers import Answers, Cores
     from auditor.claims.collection import Claims
-    from auditor.pool import LocalPool
+    from auditor.inquiry.answers import Answers, Cores
+    from auditor.inquiry.pool import LocalPool
+    from auditor.inquiry.unit_groups import isomorphic, order_of
+    from auditor.inquiry.unit_groups import structure as structure_of
     from auditor.report.unit_group_text import classes_text, record, text
-    from auditor.unit_groups import isomorphic, order_of
-    from auditor.unit_groups import structure as structure_of
 
     run = _run_values({**options, "as_of": None})
     with LocalPool(options["jobs"]) as pool:
@@ -489,7 +489,7 @@ def show_rule(names: tuple[str, ...], html: str | None) -> int:
     """
     from auditor.outputs import write_text
     from auditor.rule_pages import NoSuchRule, page, reference
-    from auditor.rulebook_types import RulebookError
+    from auditor.rulebooks.rulebook import RulebookError
 
     if not names and not html:
         raise click.UsageError("name a rule or a book, or write the whole reference with --html")

@@ -12,10 +12,8 @@ from datetime import date
 from pathlib import Path
 from typing import Any, Literal
 
-from auditor.conditions import Vocabulary
 from auditor.declaration import Place
 from auditor.encoding import plain, shorten
-from auditor.example_values import stated
 from auditor.facts.base import FactType
 from auditor.intake.inputs import (
     InputError,
@@ -25,6 +23,8 @@ from auditor.intake.inputs import (
     input_file,
     read_path,
 )
+from auditor.rulebooks.conditions import Vocabulary
+from auditor.rulebooks.example_values import stated
 from auditor.schema_check import did_you_mean, quoted, schema_problems, sentence, shipped_schema
 from auditor.strict_yaml import KeyPath, Loaded, Mark, YamlError, read, shown_path
 

@@ -10,7 +10,7 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
-from auditor.changes import TLS_WIDTHS
+from auditor.advice.changes import TLS_WIDTHS
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.encoding import EXACT_IN_JSON
 from auditor.facts.usage import PROTOCOLS, PURPOSES, SCHEMES

@@ -4,7 +4,7 @@ import time
 from collections.abc import Callable, Mapping
 from typing import TextIO
 
-from auditor.question_round import Status
+from auditor.inquiry.question_round import Status
 
 EVERY_SECONDS = 30
 """Between plain lines: silence longer than minutes gets jobs killed."""

@@ -3,7 +3,7 @@
 A question names integers and nothing else, so the same question about two parameter sets is
 asked once, may be answered on another machine, and its answer may be kept between runs. A fact
 that cannot be established raises the question that would settle it; which questions are worth
-asking is decided in :mod:`auditor.run`.
+asking is decided in :mod:`auditor.inquiry.settle`.
 """
 
 from dataclasses import dataclass

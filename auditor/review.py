@@ -6,7 +6,6 @@ from pathlib import Path
 from types import MappingProxyType
 from typing import Any, BinaryIO
 
-from auditor.answers import ALONE, Answers, Cores
 from auditor.claims.base import Claim, Draw
 from auditor.claims.collection import Claims
 from auditor.claims.ledger import Ledger
@@ -14,15 +13,16 @@ from auditor.concessions import Concessions, conceded
 from auditor.concessions import notices as notices_of
 from auditor.declaration import Declaration
 from auditor.facts import vocabulary
+from auditor.inquiry.answers import ALONE, Answers, Cores
+from auditor.inquiry.question_round import Progress
+from auditor.inquiry.settle import settle
+from auditor.inquiry.sharing import share_among_moduli, share_among_rests
 from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
-from auditor.question_round import Progress
 from auditor.report.record import Reading, build, in_use
-from auditor.rulebook import load_all
-from auditor.rulebook_types import Rulebook
-from auditor.run import settle
+from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
-from auditor.sharing import share_among_moduli, share_among_rests
 
 DEFAULT_BOOKS = (
     "group-structure",

@@ -12,9 +12,9 @@ from auditor.encoding import shorten
 from auditor.facts import vocabulary
 from auditor.report.text import visible
 from auditor.report.words import plural
-from auditor.rule_examples import failures
-from auditor.rulebook import available, load, load_all
-from auditor.rulebook_types import Criterion, Example, Outcome, Rule, Rulebook, RulebookError
+from auditor.rulebooks.examples import failures
+from auditor.rulebooks.loading import available, load, load_all
+from auditor.rulebooks.rulebook import Criterion, Example, Outcome, Rule, Rulebook, RulebookError
 
 WIDTH = 88
 

@@ -21,8 +21,8 @@ from auditor.intake.tree import InputResult
 from auditor.report.json_report import problems
 from auditor.report.record import FORMAT, Reading, build
 from auditor.review import census
-from auditor.rulebook import available, load_all
-from auditor.rulebook_types import Rulebook, RulebookError
+from auditor.rulebooks.loading import available, load_all
+from auditor.rulebooks.rulebook import Rulebook, RulebookError
 from auditor.run_values import RunValues
 
 

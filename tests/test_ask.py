@@ -3,12 +3,12 @@
 from collections.abc import Sequence
 from functools import cache
 
-from auditor.ask import Asked, ask
+from auditor.advice.ask import Asked, ask
 from auditor.declaration import Declaration, Party
 from auditor.facts import vocabulary
 from auditor.report.asking import render
-from auditor.rulebook import load_all
-from auditor.rulebook_types import Rulebook
+from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.rulebook import Rulebook
 from tests.facts.test_worked_numbers import GROUP_23, GROUP_24, QUICK, claims, group, without
 
 

@@ -8,10 +8,10 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from auditor.claims.standing import Standing
-from auditor.condition_syntax import DEEPEST, LONGEST, SyntaxProblem, parse, render
-from auditor.conditions import Compiler, ConditionError, Decision, Verdict, View
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.questions import Asks, Question
+from auditor.rulebooks.condition_syntax import DEEPEST, LONGEST, SyntaxProblem, parse, render
+from auditor.rulebooks.conditions import Compiler, ConditionError, Decision, Verdict, View
 from tests.vocabulary_of_the_contract import VOCABULARY
 
 COMPILER = Compiler(VOCABULARY)

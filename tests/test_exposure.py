@@ -5,9 +5,9 @@ from itertools import pairwise
 
 import pytest
 
+from auditor.advice.exposure import CHECKS, Exposure, Exposures
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration, Party, Place
-from auditor.exposure import CHECKS, Exposure, Exposures
 from auditor.facts import establish
 from tests.facts.test_worked_numbers import GROUP_23, GROUP_24, QUICK, claims, group
 

@@ -12,19 +12,19 @@ import sympy
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.changes import groups_for
+from auditor.advice.changes import groups_for
+from auditor.advice.exposure import Exposures
+from auditor.advice.remedies import HELD, Remedies, patched, registry_claims
 from auditor.claims.collection import check_all
 from auditor.declaration import Declaration, Party, Place
 from auditor.encoding import digest
-from auditor.exposure import Exposures
 from auditor.facts import establish, vocabulary
-from auditor.findings import judge
 from auditor.intake.record import declaration_from
-from auditor.remedies import HELD, Remedies, patched, registry_claims
 from auditor.report.json_report import problems
 from auditor.review import DEFAULT_BOOKS, Surroundings, review
-from auditor.rulebook import load_all
-from auditor.rulebook_types import Rulebook
+from auditor.rulebooks.findings import judge
+from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 from auditor.verify import verify
 from tests.facts.knowledge import settled

@@ -12,8 +12,8 @@ from auditor.facts import vocabulary
 from auditor.report.text import HIDDEN, visible
 from auditor.rule_pages import NoSuchRule, listing, page, reference
 from auditor.rule_pages import tested as books_tested
-from auditor.rulebook import available, load
-from auditor.rulebook_types import Rule, RulebookError
+from auditor.rulebooks.loading import available, load
+from auditor.rulebooks.rulebook import Rule, RulebookError
 from tests.report.pages import Page
 from tests.report.records import SURROGATE, hostile_texts
 from tests.test_cli import auditor  # noqa: F401  (the fixture is used by its name)

@@ -8,8 +8,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from auditor.data_files import data
-from auditor.rule_examples import failures
-from auditor.rulebook import RulebookError, available, load, load_all
+from auditor.rulebooks.examples import failures
+from auditor.rulebooks.loading import RulebookError, available, load, load_all
 from tests.vocabulary_of_the_contract import VOCABULARY
 
 BOOK = """\

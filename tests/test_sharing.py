@@ -5,11 +5,11 @@ from pathlib import Path
 
 import sympy
 
-from auditor.answers import Answers
 from auditor.claims.collection import Claims, check_all
+from auditor.inquiry.answers import Answers
+from auditor.inquiry.sharing import share_among_moduli, share_among_rests
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
-from auditor.sharing import share_among_moduli, share_among_rests
 from auditor.verify import verify
 
 RUN = RunValues("2026-12-01", "quick")

@@ -9,12 +9,12 @@ import pytest
 import sympy
 from click.testing import CliRunner
 
-from auditor.answers import Answers
 from auditor.claims.collection import Claims, check_all
 from auditor.cli import main
+from auditor.inquiry.answers import Answers
+from auditor.inquiry.unit_groups import isomorphic, order_of, structure
 from auditor.run_values import RunValues
 from auditor.structure import PartialOrder, PartlyFactoredGroup, UnitGroup, UnsplitGroup
-from auditor.unit_groups import isomorphic, order_of, structure
 
 
 def answers(effort: str = "standard") -> Answers:

@@ -109,7 +109,7 @@ class TestBrokenSearch:
         def wrong(m: int, *args: Any, **options: Any) -> Any:
             return right(m + 2, *args, **options)
 
-        monkeypatch.setattr("auditor.answers.search", wrong)
+        monkeypatch.setattr("auditor.inquiry.answers.search", wrong)
         self.nothing_false_is_said()
 
     def test_no_witness(self, monkeypatch: pytest.MonkeyPatch) -> None:

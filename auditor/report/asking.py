@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable, Iterator
 
-from auditor.ask import Asked, Effect, MoreSearch
+from auditor.advice.ask import Asked, Effect, MoreSearch
 from auditor.report.text import visible
 
 

@@ -10,19 +10,19 @@ from dataclasses import asdict, dataclass
 from typing import Any
 
 from auditor import __version__
+from auditor.advice.exposure import Exposures
+from auditor.advice.remedies import Remedies, Remedy
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration
 from auditor.encoding import plain
-from auditor.exposure import Exposures
 from auditor.facts import Established, establish, vocabulary
 from auditor.facts.base import Absent, Fact
-from auditor.findings import Finding, Judgement, facts_in_use, judge
+from auditor.inquiry.settle import open_questions
 from auditor.questions import Asks, Question
-from auditor.remedies import Remedies, Remedy
 from auditor.routes.base import Work, floor_bits
 from auditor.routes.standard_tables import modulus_strength
-from auditor.rulebook_types import Criterion, Rule, Rulebook
-from auditor.run import open_questions
+from auditor.rulebooks.findings import Finding, Judgement, facts_in_use, judge
+from auditor.rulebooks.rulebook import Criterion, Rule, Rulebook
 from auditor.run_values import RunValues
 from auditor.search.plan import LEVELS
 

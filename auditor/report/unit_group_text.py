@@ -5,8 +5,8 @@ from typing import Any
 
 from auditor.claims.base import Factors
 from auditor.encoding import plain, shorten
+from auditor.inquiry.unit_groups import ElementOrder, Structure
 from auditor.structure import PartialOrder, PartlyFactoredGroup, UnitGroup, UnsplitGroup
-from auditor.unit_groups import ElementOrder, Structure
 
 MOST_ORDERS = 48
 """So many different orders of elements are listed one by one."""

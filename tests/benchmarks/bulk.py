@@ -22,14 +22,14 @@ from unittest.mock import patch
 
 import gmpy2
 
-from auditor.answers import Cores
 from auditor.claims.primality_tests import is_probable_prime
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.facts import vocabulary
-from auditor.pool import LocalPool
+from auditor.inquiry.answers import Cores
+from auditor.inquiry.pool import LocalPool
 from auditor.report.record import Reading, build
 from auditor.review import DEFAULT_BOOKS, Surroundings, census, investigate
-from auditor.rulebook import load_all
+from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
 
 POOL, BITS = 16, 256

@@ -8,15 +8,15 @@ from pathlib import Path
 
 import gmpy2
 
-from auditor.answers import ALONE, Cores
 from auditor.claims.collection import Claims
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.encoding import canonical_json
 from auditor.facts import vocabulary
-from auditor.question_round import Progress
+from auditor.inquiry.answers import ALONE, Cores
+from auditor.inquiry.question_round import Progress
 from auditor.report.record import Reading, build
 from auditor.review import Surroundings, census, investigate
-from auditor.rulebook import load_all
+from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
 
 BOOKS = load_all(("group-structure", "strength"), vocabulary())

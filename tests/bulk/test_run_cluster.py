@@ -8,10 +8,10 @@ from pathlib import Path
 
 import pytest
 
-from auditor.answers import Cores
-from auditor.cluster import Cluster, NoCluster
-from auditor.dispatch import ExecutorLost
-from auditor.question_round import Status
+from auditor.inquiry.answers import Cores
+from auditor.inquiry.cluster import Cluster, NoCluster
+from auditor.inquiry.dispatch import ExecutorLost
+from auditor.inquiry.question_round import Status
 from tests.bulk.reviews import mixed_sets, reviewed
 
 SERVE = """
@@ -49,7 +49,7 @@ def test_a_cluster_gives_the_report_of_one_process_and_its_loss_costs_what_was_i
     scheduler: "tuple[subprocess.Popen[str], str]", tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """The same record; then the scheduler dies, and the next run goes on from the ledger."""
-    monkeypatch.setattr("auditor.question_round.SENDING_PAYS", 0.0)
+    monkeypatch.setattr("auditor.inquiry.question_round.SENDING_PAYS", 0.0)
     process, address = scheduler
     sets, seen = mixed_sets(21), list[Status]()
     wanted = reviewed(sets)[1]
@@ -72,7 +72,7 @@ def test_a_cluster_gives_the_report_of_one_process_and_its_loss_costs_what_was_i
 
 def test_nobody_at_the_address(monkeypatch: pytest.MonkeyPatch) -> None:
     """An error in one sentence, soon."""
-    monkeypatch.setattr("auditor.cluster.CONNECT_SECONDS", 1)
+    monkeypatch.setattr("auditor.inquiry.cluster.CONNECT_SECONDS", 1)
     with pytest.raises(NoCluster, match="no scheduler answers"):
         Cluster("tcp://127.0.0.1:9")
     with pytest.raises(NoCluster, match="no scheduler answers"):

@@ -4,8 +4,8 @@ import io
 
 import pytest
 
+from auditor.inquiry.question_round import Status
 from auditor.progress import EVERY_SECONDS, Progress, is_live
-from auditor.question_round import Status
 from auditor.questions import Asks, Question
 
 PRIME = Question(Asks.PRIMALITY, (11,))

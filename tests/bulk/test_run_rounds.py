@@ -12,17 +12,17 @@ from typing import Any
 import gmpy2
 import pytest
 
-import auditor.run
-from auditor.answers import Cores
+import auditor.inquiry.settle
 from auditor.claims.base import Claim, Draw
 from auditor.claims.collection import Claims
 from auditor.claims.prime import Prime
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
-from auditor.pool import LocalPool
-from auditor.question_round import Status
+from auditor.inquiry.answers import Cores
+from auditor.inquiry.pool import LocalPool
+from auditor.inquiry.question_round import Status
+from auditor.inquiry.settle import open_questions
 from auditor.questions import Question
-from auditor.run import open_questions
 from auditor.run_values import RunValues
 from auditor.search.curves import BuiltIn, Outcome, Task
 from auditor.search.plan import EcmLevel
@@ -67,7 +67,7 @@ class Disorder:
 @pytest.fixture
 def send_everything(monkeypatch: pytest.MonkeyPatch) -> None:
     """Small questions travel as large ones do."""
-    monkeypatch.setattr("auditor.question_round.SENDING_PAYS", 0.0)
+    monkeypatch.setattr("auditor.inquiry.question_round.SENDING_PAYS", 0.0)
 
 
 @pytest.mark.parametrize("run", [QUICK, STANDARD], ids=["quick", "standard"])
@@ -88,7 +88,7 @@ def test_two_processes_give_the_report_of_one(
     send_everything: None, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Worker processes of this machine."""
-    monkeypatch.setattr("auditor.question_round.STARTING_PAYS", 0.0)
+    monkeypatch.setattr("auditor.inquiry.question_round.STARTING_PAYS", 0.0)
     sets = mixed_sets(2)
     with LocalPool(2) as pool:
         record = reviewed(sets, cores=Cores(pool, 2))[1]
@@ -186,7 +186,7 @@ def test_a_set_is_looked_at_again_only_when_a_claim_concerns_it(
         looks[item.parties[0].exponent_bits or 0] += 1
         return establish(item, claims, run)
 
-    monkeypatch.setattr(auditor.run, "establish", counting)
+    monkeypatch.setattr(auditor.inquiry.settle, "establish", counting)
     p = random_prime(random.Random(9), 128)
     reviewed([declared(f"s{n}", p, width=100 + n % 20) for n in range(60)])
 

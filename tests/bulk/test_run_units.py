@@ -12,12 +12,12 @@ from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
 from auditor.claims.prime import Prime
-from auditor.dispatch import MOST_LOSSES, Crew, ExecutorLost, work_through
+from auditor.inquiry.dispatch import MOST_LOSSES, Crew, ExecutorLost, work_through
+from auditor.inquiry.work_units import context, step_elsewhere, step_here, taken_over, unit_of
 from auditor.questions import Asks, Question
 from auditor.search.plan import EcmLevel, Plan
 from auditor.search.plan_steps import next_part
 from auditor.search.work import Work
-from auditor.work_units import context, step_elsewhere, step_here, taken_over, unit_of
 from tests.bulk.reviews import QUICK
 
 P = 2**127 - 1

@@ -6,15 +6,15 @@ from math import gcd, prod
 
 import sympy
 
-from auditor.answers import Answers
 from auditor.claims.base import Claim
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.facts import Established, establish
+from auditor.inquiry.answers import Answers
+from auditor.inquiry.settle import settle
 from auditor.questions import Asks, Question
-from auditor.run import settle
 from auditor.run_values import RunValues
 
 RUN = RunValues("2026-12-01", "standard")

@@ -10,9 +10,9 @@ from hypothesis import strategies as st
 
 from auditor.declaration import Declaration
 from auditor.facts import Established, vocabulary
-from auditor.findings import judge
-from auditor.rulebook import load_all
-from auditor.rulebook_types import Rulebook
+from auditor.rulebooks.findings import judge
+from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.rulebook import Rulebook
 from tests.facts.knowledge import declare, known, partial_claims, reviewed, settled, some
 
 PRIMES = (

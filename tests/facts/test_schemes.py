@@ -10,9 +10,9 @@ from auditor.claims.origin_recipe import PROBABLE
 from auditor.claims.origin_replay import Outcome
 from auditor.declaration import Provenance
 from auditor.facts import Established, vocabulary
-from auditor.findings import judge
 from auditor.intake.standard_groups import find
-from auditor.rulebook import load_all
+from auditor.rulebooks.findings import judge
+from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
 from tests.facts.knowledge import declare, known, reviewed, settled, some
 from tests.facts.test_provenance import CASES, case_of, generator_case, with_generator

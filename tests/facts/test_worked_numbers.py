@@ -12,11 +12,11 @@ from math import prod
 
 import pytest
 
-from auditor.answers import Answers
 from auditor.claims.collection import Claims, check_all
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
 from auditor.facts import Established
+from auditor.inquiry.answers import Answers
 from auditor.intake.standard_groups import find
 from auditor.questions import Asks
 from auditor.run_values import RunValues

@@ -3,8 +3,8 @@
 from collections.abc import Iterator
 from dataclasses import replace
 
-from auditor.condition_syntax import JUNCTIONS, Node, render
-from auditor.conditions import Condition
+from auditor.rulebooks.condition_syntax import JUNCTIONS, Node, render
+from auditor.rulebooks.conditions import Condition
 
 _FLIPPED = {
     "==": ("!=",),

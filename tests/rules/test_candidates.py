@@ -7,8 +7,8 @@ import pytest
 
 from auditor.data_files import data
 from auditor.facts import vocabulary
-from auditor.rulebook import available, load_all
-from auditor.rulebook_types import GRADES
+from auditor.rulebooks.loading import available, load_all
+from auditor.rulebooks.rulebook import GRADES
 from auditor.strict_yaml import load
 
 NUMBERS = range(1, 133)

@@ -5,9 +5,9 @@ import re
 from auditor.data_files import data
 from auditor.facts import vocabulary
 from auditor.facts.base import FactType
-from auditor.rule_examples import failures
-from auditor.rulebook import load
-from auditor.vocabulary_table import vocabulary_table
+from auditor.rulebooks.examples import failures
+from auditor.rulebooks.loading import load
+from auditor.rulebooks.vocabulary_table import vocabulary_table
 from tests.vocabulary_of_the_contract import VOCABULARY
 
 MANUAL = (data("rules") / "README.md").read_text("utf-8")

@@ -6,12 +6,12 @@ from dataclasses import replace
 import pytest
 
 from auditor.claims.standing import Standing
-from auditor.conditions import View
 from auditor.facts import vocabulary
 from auditor.facts.base import Absent, Fact
-from auditor.findings import Judgement, evaluate, facts_in_use, judge
-from auditor.rule_examples import failures, rule_failures
-from auditor.rulebook import available, load_all
+from auditor.rulebooks.conditions import View
+from auditor.rulebooks.examples import failures, rule_failures
+from auditor.rulebooks.findings import Judgement, evaluate, facts_in_use, judge
+from auditor.rulebooks.loading import available, load_all
 from tests.rules.mutations import mutants
 
 VOCABULARY = vocabulary()

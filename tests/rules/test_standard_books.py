@@ -7,9 +7,9 @@ import pytest
 
 from auditor.claims.standing import Standing
 from auditor.facts.base import Absent, Fact
-from auditor.findings import Finding, Judgement, facts_in_use, judge
 from auditor.intake.standard_groups import StandardGroup, standard_groups
-from auditor.rulebook import load_all
+from auditor.rulebooks.findings import Finding, Judgement, facts_in_use, judge
+from auditor.rulebooks.loading import load_all
 from tests.vocabulary_of_the_contract import VOCABULARY
 
 CORE = ("group-structure", "strength")

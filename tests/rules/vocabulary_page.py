@@ -3,7 +3,7 @@
 from pathlib import Path
 
 from auditor.facts import vocabulary
-from auditor.vocabulary_table import vocabulary_table
+from auditor.rulebooks.vocabulary_table import vocabulary_table
 
 MANUAL = Path(__file__).parents[2] / "rules" / "README.md"
 BEGIN, END = "<!-- vocabulary: begin -->\n", "<!-- vocabulary: end -->"

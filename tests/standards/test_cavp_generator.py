@@ -4,10 +4,10 @@ import secrets
 
 import pytest
 
-from auditor.answers import Answers
 from auditor.claims.collection import Claims
 from auditor.claims.origin_generator import CanonicalGenerator, generator_from_integers
 from auditor.claims.origin_recipe import HASHES, seed_integer
+from auditor.inquiry.answers import Answers
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
 from tests.standards.vectors import Block, blocks

@@ -10,12 +10,12 @@ from typing import Any
 
 import pytest
 
-from auditor.answers import Answers
 from auditor.claims.collection import Claims, check_all
 from auditor.claims.origin import Origin
 from auditor.claims.origin_recipe import METHODS, Recipe
 from auditor.claims.origin_replay import Outcome
 from auditor.claims.standing import Standing
+from auditor.inquiry.answers import Answers
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
 from tests.standards.vectors import OriginCase, origin_cases

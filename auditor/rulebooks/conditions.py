@@ -7,7 +7,7 @@ decides. What is added here are reasons and bounds:
 - what kept a condition undecided are the absent facts it names that could still decide it;
 - when all of these are ``undefined``, the condition makes no sense for this set;
 - a condition that is false with the bounds as they stand is false, since no bound can turn it to
-  true (:mod:`auditor.condition_types` refuses those); one that is true is asked again without
+  true (``condition_types`` refuses those); one that is true is asked again without
   the bounds that may still move, and is true only if it still is. ``_seen`` facts are exempt:
   what they have not seen they will never have excluded.
 """
@@ -21,7 +21,9 @@ from enum import StrEnum
 from functools import lru_cache
 from typing import Any
 
-from auditor.condition_syntax import (
+from auditor.encoding import shorten
+from auditor.facts.base import Absent, Fact, FactType
+from auditor.rulebooks.condition_syntax import (
     JUNCTIONS,
     LARGEST_INTEGER,
     Node,
@@ -30,9 +32,7 @@ from auditor.condition_syntax import (
     parse,
     render,
 )
-from auditor.condition_types import problems_of
-from auditor.encoding import shorten
-from auditor.facts.base import Absent, Fact, FactType
+from auditor.rulebooks.condition_types import problems_of
 
 # The package imports its interactive shell, which needs four more packages; nothing here does.
 sys.modules.setdefault("cel.cli", types.ModuleType("cel.cli"))

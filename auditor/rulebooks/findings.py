@@ -9,12 +9,12 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Literal
 
-from auditor.conditions import Condition, Decision, Verdict, View, Vocabulary
 from auditor.encoding import shorten
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.questions import Question
-from auditor.rulebook_reading import PLACEHOLDER
-from auditor.rulebook_types import Criterion, Grade, Outcome, Rule, Rulebook
+from auditor.rulebooks.conditions import Condition, Decision, Verdict, View, Vocabulary
+from auditor.rulebooks.reading import PLACEHOLDER
+from auditor.rulebooks.rulebook import Criterion, Grade, Outcome, Rule, Rulebook
 
 Position = Literal["hold", "open", "conditions", "no objection"]
 

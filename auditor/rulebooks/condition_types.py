@@ -11,9 +11,9 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-from auditor.condition_syntax import JUNCTIONS, LARGEST_INTEGER, Node, Scalar
 from auditor.encoding import shorten
 from auditor.facts.base import FactType
+from auditor.rulebooks.condition_syntax import JUNCTIONS, LARGEST_INTEGER, Node, Scalar
 
 Kind = Literal["bool", "int", "real", "text", "unknown"]
 Move = tuple[str, Literal[-1, 1]]

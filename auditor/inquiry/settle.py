@@ -11,13 +11,13 @@ declarations lead to the same claims on any number of processes.
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import replace
 
-from auditor.answers import Answers
 from auditor.claims.base import Claim
 from auditor.claims.ledger import subjects
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
 from auditor.facts.base import Absent, Fact
-from auditor.question_round import Progress, answer_round
+from auditor.inquiry.answers import Answers
+from auditor.inquiry.question_round import Progress, answer_round
 from auditor.questions import CHEAP, Question
 from auditor.run_values import RunValues
 

@@ -13,10 +13,10 @@ from auditor.attested import furthest
 from auditor.claims.collection import Claims
 from auditor.declaration import EVERYBODY, Declaration, Party
 from auditor.facts import Established, establish, vocabulary
-from auditor.findings import Judgement, Position, judge
 from auditor.questions import Asks, Question
 from auditor.routes.base import floor_bits
-from auditor.rulebook_types import Rulebook
+from auditor.rulebooks.findings import Judgement, Position, judge
+from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 from auditor.search.expected_curves import missed_factor_risk
 from auditor.search.plan import LEVELS, EcmLevel

@@ -11,11 +11,11 @@ from dataclasses import dataclass, field
 from importlib.resources.abc import Traversable
 from pathlib import Path
 
-from auditor.condition_types import suggestion
-from auditor.conditions import Compiler, Vocabulary
 from auditor.data_files import data
-from auditor.rulebook_reading import BookReader, parse_book
-from auditor.rulebook_types import (
+from auditor.rulebooks.condition_types import suggestion
+from auditor.rulebooks.conditions import Compiler, Vocabulary
+from auditor.rulebooks.reading import BookReader, parse_book
+from auditor.rulebooks.rulebook import (
     Confidence,
     Criterion,
     Document,

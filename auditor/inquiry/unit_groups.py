@@ -4,10 +4,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from math import gcd
 
-from auditor.answers import Answers
 from auditor.claims.base import Factors
 from auditor.claims.standing import Standing, weakest
 from auditor.element_orders import product_of
+from auditor.inquiry.answers import Answers
 from auditor.questions import Asks, Question
 from auditor.structure import (
     FactoredModulus,

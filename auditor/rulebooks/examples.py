@@ -4,9 +4,9 @@ Facts that an example does not list are unsettled. The examples of an inherited 
 book that wrote it and run there, since another book may have moved the thresholds.
 """
 
-from auditor.conditions import View, Vocabulary
-from auditor.findings import evaluate
-from auditor.rulebook_types import Example, Problem, Rule, Rulebook
+from auditor.rulebooks.conditions import View, Vocabulary
+from auditor.rulebooks.findings import evaluate
+from auditor.rulebooks.rulebook import Example, Problem, Rule, Rulebook
 
 
 def failures(book: Rulebook, vocabulary: Vocabulary) -> tuple[Problem, ...]:

@@ -14,8 +14,8 @@ from itertools import product
 from types import MappingProxyType
 from typing import Any
 
-from auditor import changes
-from auditor.changes import Change, Draft
+from auditor.advice import changes
+from auditor.advice.changes import Change, Draft
 from auditor.claims.base import Claim
 from auditor.claims.collection import Claims
 from auditor.claims.factorization import Factorization
@@ -28,9 +28,9 @@ from auditor.facts import Established, establish, subgroup, vocabulary
 from auditor.facts import parts as group_parts
 from auditor.facts.base import Absent
 from auditor.facts.given import Given
-from auditor.findings import Finding, Judgement, Position, judge
 from auditor.intake.standard_groups import StandardGroup, standard_groups
-from auditor.rulebook_types import Rulebook
+from auditor.rulebooks.findings import Finding, Judgement, Position, judge
+from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 
 MOST_CHANGES = 3

@@ -7,8 +7,8 @@ smooth parts of integers", 2004; Heninger et al., USENIX Security 2012 (both fro
 
 from collections.abc import Iterable
 
-from auditor.answers import Answers
 from auditor.claims.factorization import Factorization
+from auditor.inquiry.answers import Answers
 from auditor.questions import Asks, Question
 from auditor.search.batch_gcd import shared_factors, threads
 

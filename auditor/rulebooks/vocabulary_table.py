@@ -1,7 +1,7 @@
 """The vocabulary as a table for the manual of rule writers."""
 
-from auditor.conditions import Vocabulary
 from auditor.facts.base import FactType
+from auditor.rulebooks.conditions import Vocabulary
 
 _BOUNDS = {
     "at_least": "may rise with more search",

@@ -4,9 +4,9 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from typing import Literal
 
-from auditor.condition_syntax import Scalar
-from auditor.conditions import Condition
 from auditor.facts.base import Absent, Fact
+from auditor.rulebooks.condition_syntax import Scalar
+from auditor.rulebooks.conditions import Condition
 
 Grade = Literal["major", "minor", "observation"]
 Confidence = Literal["confirmed", "secondary", "memory"]

@@ -10,13 +10,13 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any, cast
 
-from auditor.condition_syntax import Scalar
-from auditor.condition_types import suggestion
-from auditor.conditions import Compiler, Condition, ConditionError
 from auditor.encoding import shorten
-from auditor.example_values import stated
 from auditor.facts.base import Absent, Fact, FactType
-from auditor.rulebook_types import (
+from auditor.rulebooks.condition_syntax import Scalar
+from auditor.rulebooks.condition_types import suggestion
+from auditor.rulebooks.conditions import Compiler, Condition, ConditionError
+from auditor.rulebooks.example_values import stated
+from auditor.rulebooks.rulebook import (
     Criterion,
     Document,
     Example,

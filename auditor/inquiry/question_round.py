@@ -9,11 +9,10 @@ for that one, whose proof may settle it: the rounds of a test are run once for e
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 
-from auditor.answers import Answers, worth_keeping
 from auditor.claims.base import Claim
-from auditor.dispatch import Crew, work_through
-from auditor.questions import Asks, Question
-from auditor.work_units import (
+from auditor.inquiry.answers import Answers, worth_keeping
+from auditor.inquiry.dispatch import Crew, work_through
+from auditor.inquiry.work_units import (
     Step,
     context,
     expected_seconds,
@@ -22,6 +21,7 @@ from auditor.work_units import (
     taken_over,
     unit_of,
 )
+from auditor.questions import Asks, Question
 
 STARTING_PAYS = 2.0
 """Expected seconds of work from which it pays to start worker processes."""

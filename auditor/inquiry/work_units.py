@@ -11,7 +11,6 @@ from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import Any
 
-from auditor.answers import ALONE, Answers, Cores, Keep
 from auditor.claims.base import Claim, Draw, Refuted
 from auditor.claims.collection import Claims, read_claim
 from auditor.claims.composite import Composite, PerfectPower
@@ -20,6 +19,7 @@ from auditor.claims.primality_tests import passes_strong_test
 from auditor.claims.prime import Prime
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched
+from auditor.inquiry.answers import ALONE, Answers, Cores, Keep
 from auditor.questions import Asks, Question
 from auditor.run_values import Effort, RunValues
 from auditor.search.curves import Engine

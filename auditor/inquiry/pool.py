@@ -8,7 +8,7 @@ from concurrent.futures import Future
 from types import TracebackType
 from typing import Any
 
-from auditor.work_units import MOST_DIGITS
+from auditor.inquiry.work_units import MOST_DIGITS
 
 
 class LocalPool:

@@ -1,0 +1,1 @@
+"""What follows from the judgement: other usages, changes that mend, answers that would settle."""

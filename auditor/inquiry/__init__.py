@@ -1,0 +1,1 @@
+"""From open questions to checked claims: the loop, its rounds, and the workers that answer."""

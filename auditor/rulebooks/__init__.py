@@ -1,0 +1,1 @@
+"""Books of rules: the condition language, reading and testing of books, outcomes and position."""
