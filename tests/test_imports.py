@@ -25,6 +25,7 @@ LINE = (
     ("report",),
     ("rule_pages", "review", "progress", "outputs"),
     ("verify", "demonstrate", "declare"),
+    ("commands",),
     ("cli", "api"),
 )
 """From left to right; what stands together may import each other."""

@@ -1,0 +1,198 @@
+"""Options that several commands take, and what follows from them."""
+
+import os
+import sys
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from datetime import date
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, TypeVar
+
+import click
+
+if TYPE_CHECKING:
+    from auditor.inquiry.cluster import Cluster
+    from auditor.inquiry.pool import LocalPool
+    from auditor.review import Surroundings
+    from auditor.run_values import Effort, RunValues
+
+Command = TypeVar("Command", bound=Callable[..., Any])
+
+FILE = click.Path(dir_okay=False)
+EFFORTS = ("quick", "standard", "thorough")
+POLICY_HELP = "Take rulebook files, concessions and usage files from there alone."
+
+
+class Interrupted(Exception):
+    """A review was interrupted; the text says why, and what is kept of it."""
+
+
+def _all(options: tuple[Callable[[Command], Command], ...]) -> Callable[[Command], Command]:
+    def decorate(command: Command) -> Command:
+        for option in reversed(options):
+            command = option(command)
+        return command
+
+    return decorate
+
+
+def search_options(effort: str = "standard") -> Callable[[Command], Command]:
+    """How far a search goes, what it keeps, and where it runs; ``effort`` is the default."""
+    return _all(
+        (
+            effort_option(effort),
+            DEPTH,
+            click.option(
+                "--ledger", type=click.Path(dir_okay=False), help="Where claims are kept."
+            ),
+            click.option("--no-ledger", is_flag=True, help="Keep no claims between runs."),
+            JOBS,
+            click.option(
+                "--cluster", metavar="ADDRESS", help="A dask scheduler, in place of --jobs."
+            ),
+        )
+    )
+
+
+def effort_option(default: str) -> Callable[[Command], Command]:
+    """How much work is done."""
+    return click.option("--effort", type=click.Choice(EFFORTS), default=default, show_default=True)
+
+
+DEPTH = click.option(
+    "--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search."
+)
+JOBS = click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
+BOOKS = click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
+AS_OF = click.option(
+    "--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today."
+)
+POLICY = click.option(
+    "--policy-from", type=click.Path(exists=True, file_okay=False), help=POLICY_HELP
+)
+
+
+def policy_of(options: dict[str, Any]) -> dict[str, Any]:
+    """Books, concessions and the directory of policy; files that cannot be used end the run."""
+    from auditor.concessions import ConcessionsError, load
+    from auditor.facts import vocabulary
+    from auditor.intake.policy import NoSuchPolicy, concessions_file, named
+
+    folder, file, books = options["policy_from"], options["concessions"], options["rulebook"]
+    try:
+        if folder:
+            files = (".yaml", ".yml")
+            books = [named(folder, book) if book.endswith(files) else book for book in books]
+            file = named(folder, file) if file else concessions_file(folder)
+        granted = load(file, vocabulary()) if file else None
+    except NoSuchPolicy as error:
+        raise click.ClickException(str(error)) from error
+    except ConcessionsError as error:
+        click.echo(str(error), err=True)
+        raise click.exceptions.Exit(2) from error
+    return {
+        "books": books,
+        "concessions": granted,
+        "policy": Path(folder) if folder else None,
+    }
+
+
+@contextmanager
+def surroundings_of(options: dict[str, Any]) -> "Iterator[Surroundings]":
+    """What a review needs from outside, for as long as it runs; books that cannot be used become a
+    usage error."""
+    import secrets
+
+    from auditor.inquiry.answers import Cores
+    from auditor.inquiry.dispatch import ExecutorLost
+    from auditor.progress import Progress, is_live
+    from auditor.review import Surroundings
+    from auditor.rulebooks.rulebook import RulebookError
+
+    progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
+    with _workers(options) as pool:
+        try:
+            yield Surroundings(
+                draw=secrets.randbelow,
+                progress=progress,
+                ledger=ledger_path(options),
+                cores=Cores(pool if pool.started or pool.jobs > 1 else None, pool.jobs),
+            )
+        except RulebookError as error:
+            raise click.ClickException(str(error)) from error
+        except KeyboardInterrupt:
+            raise Interrupted(f"; {_kept(options)}") from None
+        except ExecutorLost as error:
+            raise Interrupted(f": {error}; {_kept(options)}") from error
+        finally:
+            progress.done()
+
+
+def _kept(options: dict[str, Any]) -> str:
+    ledger = ledger_path(options)
+    if ledger is None:
+        return "nothing is kept, since there is no ledger"
+    return f"what was found is kept in {ledger.name}, and the next run goes on from there"
+
+
+def _workers(options: dict[str, Any]) -> "LocalPool | Cluster":
+    """The workers of the cluster where one is named, otherwise those of this machine."""
+    from auditor.inquiry.cluster import Cluster, NoCluster
+    from auditor.inquiry.pool import LocalPool
+
+    if not options.get("cluster"):
+        return LocalPool(options["jobs"])
+    try:
+        return Cluster(options["cluster"])
+    except NoCluster as error:
+        raise click.ClickException(str(error)) from error
+
+
+def run_values_of(options: dict[str, Any]) -> "RunValues":
+    from auditor.run_values import RunValues
+
+    effort: Effort = options["effort"]
+    day = options["as_of"].date() if options["as_of"] else date.today()
+    return RunValues(day.isoformat(), effort, options["factor_digits"])
+
+
+def ledger_path(options: dict[str, Any]) -> Path | None:
+    if options["no_ledger"]:
+        return None
+    if options["ledger"]:
+        return Path(options["ledger"])
+    from platformdirs import user_cache_path
+
+    return user_cache_path("group-parameter-auditor") / "ledger.sqlite"
+
+
+def status_of(record: dict[str, Any], fail_on: str) -> int:
+    if record["errors"]:
+        return 2
+    from auditor.concessions import fails
+
+    return int(any(fails(item, fail_on) for item in record["parameter_sets"]))
+
+
+def books_of(options: dict[str, Any]) -> Any:
+    from auditor.facts import vocabulary
+    from auditor.review import DEFAULT_BOOKS
+    from auditor.rulebooks.loading import load_all
+
+    return load_all(options.get("rulebook") or DEFAULT_BOOKS, vocabulary())
+
+
+def investigated(
+    paths: tuple[str, ...], options: dict[str, Any]
+) -> tuple[Any, Any, Any, list[Any]]:
+    """The declarations at these paths, the claims about them, the run values, the errors."""
+    from dataclasses import replace
+
+    from auditor.intake.tree import read_inputs
+    from auditor.review import census, investigate
+
+    read = read_inputs(paths, sys.stdin.buffer)
+    run = replace(run_values_of(options), census=census(read.declarations))
+    with surroundings_of(options) as surroundings:
+        claims, _ = investigate(read.declarations, run, books_of(options), surroundings)
+    return read.declarations, claims, run, list(read.errors)

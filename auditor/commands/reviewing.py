@@ -1,0 +1,113 @@
+"""Commands that review: ``review``, ``ask``."""
+
+import sys
+from typing import Any
+
+import click
+
+from auditor.commands.options import (
+    AS_OF,
+    BOOKS,
+    POLICY,
+    books_of,
+    investigated,
+    policy_of,
+    run_values_of,
+    search_options,
+    status_of,
+    surroundings_of,
+)
+
+FAIL_ON = ("hold", "open", "conditions", "never")
+
+
+@click.command()
+@click.argument("paths", nargs=-1, required=True)
+@click.option("--html", type=click.Path(dir_okay=False), help="Write the report as HTML.")
+@click.option("--markdown", type=click.Path(dir_okay=False), help="Write it as Markdown.")
+@click.option("--json", "json_", type=click.Path(dir_okay=False), help="Write the full record.")
+@click.option("--json-lines", type=click.Path(dir_okay=False), help="Write it a set a line.")
+@click.option("--sarif", type=click.Path(dir_okay=False), help="Write it as SARIF 2.1.0.")
+@click.option("--markdown-limit", default=32_767, show_default=True, help="Most characters.")
+@BOOKS
+@AS_OF
+@click.option("--fail-on", type=click.Choice(FAIL_ON), default="conditions", show_default=True)
+@click.option("--concessions", type=click.Path(dir_okay=False), help="Findings conceded.")
+@POLICY
+@click.option("--allow-empty", is_flag=True, help="Nothing recognised is no error.")
+@search_options()
+def review(paths: tuple[str, ...], **options: Any) -> int:
+    """Review parameter declarations in files and directories; '-' is standard input.
+
+    \b
+    auditor review links.yaml
+    auditor review configs/ --html report.html --markdown ticket.md --fail-on hold
+    auditor review - --effort thorough --json report.json < links.yaml
+    """
+    from auditor.outputs import Outputs
+
+    outputs = Outputs(
+        html=options["html"],
+        markdown=options["markdown"],
+        json=options["json_"],
+        json_lines=options["json_lines"],
+        sarif=options["sarif"],
+        markdown_limit=options["markdown_limit"],
+    )
+    outputs.check()
+    record = _reviewed(paths, options)
+    outputs.write(record)
+    for error in record["errors"]:
+        click.echo(
+            f"{error['path']}:{error['line']}:{error['column']}: {error['message']}", err=True
+        )
+    if not record["parameter_sets"] and not record["errors"] and not options["allow_empty"]:
+        click.echo("nothing was recognised as parameters; --allow-empty accepts that", err=True)
+        return 2
+    return status_of(record, options["fail_on"])
+
+
+def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]:
+    from auditor.review import DEFAULT_BOOKS
+    from auditor.review import review as review_inputs
+
+    policy = policy_of(options)
+    with surroundings_of(options) as surroundings:
+        return review_inputs(
+            paths,
+            run_values_of(options),
+            surroundings,
+            books=policy.pop("books") or DEFAULT_BOOKS,
+            fail_on=options["fail_on"],
+            stdin=sys.stdin.buffer,
+            **policy,
+        )
+
+
+@click.command()
+@click.argument("paths", nargs=-1, required=True)
+@BOOKS
+@AS_OF
+@search_options()
+def ask(paths: tuple[str, ...], **options: Any) -> int:
+    """Show which answers, the owner's or of more search, would change a position, and how.
+
+    \b
+    auditor ask links.yaml
+    auditor ask configs/ --effort quick
+    """
+    from auditor.report.asking import render
+
+    asked, errors = _asked(paths, options)
+    click.echo(render(asked), nl=False)
+    for error in errors:
+        click.echo(str(error), err=True)
+    return 2 if errors or not asked else 0
+
+
+def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], list[Any]]:
+    from auditor.advice.ask import ask as ask_about
+
+    declarations, claims, run, errors = investigated(paths, options)
+    books = books_of(options)
+    return [ask_about(item, claims, run, books) for item in declarations], errors
