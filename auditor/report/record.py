@@ -4,7 +4,6 @@ A pure function of what was read, the claims, the run values and the rulebooks, 
 ``report.schema.json`` describes. The verifier builds it again and compares.
 """
 
-import hashlib
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import asdict, dataclass
 from typing import Any
@@ -19,16 +18,17 @@ from auditor.facts import Established, establish, vocabulary
 from auditor.facts.base import Absent, Fact
 from auditor.inquiry.settle import open_questions
 from auditor.questions import Asks, Question
+from auditor.report.overview import overview
 from auditor.routes.base import Work, floor_bits
 from auditor.routes.standard_tables import modulus_strength
-from auditor.rulebooks.findings import Finding, Judgement, facts_in_use, judge
+from auditor.rulebooks.findings import Finding
+from auditor.rulebooks.judging import Judgement, facts_in_use, judge
 from auditor.rulebooks.rulebook import Criterion, Rule, Rulebook
 from auditor.run_values import RunValues
 from auditor.search.plan import LEVELS
 
 FORMAT = 1
 TOOL = "group-parameter auditor"
-POSITIONS = ("hold", "open", "conditions", "no objection")
 
 CAUTIONS = (
     "This is a technical review of parameters, not a certification of a system.",
@@ -74,7 +74,9 @@ def build(
         "inputs": [dict(item) for item in reading.inputs],
         "rulebooks": [_rulebook(book) for book in books],
         "complete": not reading.errors,
-        "overview": _overview(sets, reading.declarations),
+        "overview": overview(
+            [item["position"] for item in sets], reading.declarations, reading.inputs
+        ),
         "parameter_sets": sets,
         "claims": {claim.id: claim.record() for claim in claims.support(sorted(consulted))},
         "notices": list(reading.notices),
@@ -101,25 +103,6 @@ def _run(run: RunValues, fail_on: str) -> dict[str, Any]:
         "engine": run.engine,
         "rounds": run.rounds,
         "fail_on": fail_on,
-    }
-
-
-def _overview(sets: list[dict[str, Any]], declarations: Sequence[Declaration]) -> dict[str, Any]:
-    positions = [item["position"] for item in sets]
-    users: dict[int, list[str]] = {}
-    for declaration in declarations:
-        users.setdefault(declaration.modulus, []).append(declaration.identity)
-    return {
-        "sets": len(sets),
-        "positions": {position: positions.count(position) for position in POSITIONS},
-        "moduli": [
-            {
-                "digest": hashlib.sha256(hex(modulus).encode()).hexdigest(),
-                "length": modulus.bit_length(),
-                "sets": identities,
-            }
-            for modulus, identities in users.items()
-        ],
     }
 
 
