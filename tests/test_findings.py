@@ -9,13 +9,8 @@ from hypothesis import strategies as st
 from auditor.claims.standing import Standing
 from auditor.facts.base import Absent, Fact, FactType
 from auditor.questions import Asks, Question
-from auditor.rulebooks.findings import (
-    facts_in_use,
-    facts_named,
-    judge,
-    show_value,
-    waiting,
-)
+from auditor.rulebooks.findings import show_value
+from auditor.rulebooks.judging import facts_in_use, facts_named, judge, waiting
 from auditor.rulebooks.loading import load
 from tests.vocabulary_of_the_contract import VOCABULARY
 

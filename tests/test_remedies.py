@@ -22,7 +22,7 @@ from auditor.facts import establish, vocabulary
 from auditor.intake.record import declaration_from
 from auditor.report.json_report import problems
 from auditor.review import DEFAULT_BOOKS, Surroundings, review
-from auditor.rulebooks.findings import judge
+from auditor.rulebooks.judging import judge
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues

@@ -15,7 +15,7 @@ from auditor.declaration import EVERYBODY, Declaration, Party
 from auditor.facts import Established, establish, vocabulary
 from auditor.questions import Asks, Question
 from auditor.routes.base import floor_bits
-from auditor.rulebooks.findings import Judgement, Position, judge
+from auditor.rulebooks.judging import Judgement, Position, judge
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 from auditor.search.expected_curves import missed_factor_risk

@@ -29,7 +29,8 @@ from auditor.facts import parts as group_parts
 from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.intake.standard_groups import StandardGroup, standard_groups
-from auditor.rulebooks.findings import Finding, Judgement, Position, judge
+from auditor.rulebooks.findings import Finding
+from auditor.rulebooks.judging import Judgement, Position, judge
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 

@@ -2,6 +2,8 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
+from types import MappingProxyType
 
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration
@@ -19,7 +21,7 @@ from auditor.facts import (  # noqa: F401  (imported to register their facts)
     witnesses,
 )
 from auditor.facts.base import Absent, Fact, FactType
-from auditor.facts.given import Given
+from auditor.facts.given import Given, Shared
 from auditor.facts.properties import Property, properties
 from auditor.facts.registry import establish as fact_of
 from auditor.facts.registry import registered
@@ -28,9 +30,10 @@ from auditor.routes.base import Work
 from auditor.run_values import RunValues
 
 
+@cache
 def vocabulary() -> Mapping[str, FactType]:
     """Every fact by name."""
-    return registered()
+    return MappingProxyType(registered())
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,12 +49,17 @@ class Established:
     consulted: frozenset[str]
 
 
-def establish(declaration: Declaration, claims: Claims, run: RunValues) -> Established:
-    """All facts about one declaration, from the claims as they stand: a pure function."""
-    given = Given(declaration, claims, run)
+def establish(
+    declaration: Declaration, claims: Claims, run: RunValues, shared: Shared | None = None
+) -> Established:
+    """All facts about one declaration, from the claims as they stand: a pure function.
+
+    ``shared`` saves what declarations with the same claims and run values have in common.
+    """
+    given = Given(declaration, claims, run, shared)
     facts: dict[str, Fact] = {}
     absent: dict[str, Absent] = {}
-    for name in registered():
+    for name in vocabulary():
         outcome = fact_of(name, given)
         if isinstance(outcome, Fact):
             facts[name] = outcome

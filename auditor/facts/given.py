@@ -9,7 +9,7 @@ it with :class:`Missing`; a fact built on it is then absent for the same reason.
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from math import gcd
-from typing import NoReturn, TypeVar
+from typing import Any, NoReturn, TypeVar, cast
 
 from auditor.claims.base import Claim
 from auditor.claims.collection import Claims
@@ -24,6 +24,8 @@ from auditor.run_values import RunValues
 Value = TypeVar("Value")
 Default = TypeVar("Default")
 
+Part = Callable[["Given"], object]
+
 
 class Missing(Exception):
     """What was needed is absent."""
@@ -35,7 +37,7 @@ class Missing(Exception):
 
 @dataclass(slots=True)
 class Trace:
-    """What was looked at on the way to a value."""
+    """What a value rests on."""
 
     claims: set[str] = field(default_factory=set)
     rests_on: set[str] = field(default_factory=set)
@@ -43,39 +45,145 @@ class Trace:
     loose: bool = False
 
     def merge(self, other: "Trace") -> None:
-        """Add what another value looked at."""
+        """Add what another value rests on."""
         self.claims |= other.claims
         self.rests_on |= other.rests_on
         self.questions |= other.questions
         self.loose |= other.loose
 
 
+@dataclass(slots=True)
+class Looked:
+    """What was looked at on the way to a value, rested on or not: keys of the declaration, and the
+    ids of claims. Two declarations that agree in these keys have the same value."""
+
+    keys: set[str] = field(default_factory=set)
+    consulted: set[str] = field(default_factory=set)
+
+    def merge(self, other: "Looked") -> None:
+        """Add what was looked at on the way to another value."""
+        self.keys |= other.keys
+        self.consulted |= other.consulted
+
+
+@dataclass(slots=True)
+class Seen:
+    """The outcome of a part, with what it rests on and what was looked at; ``fact`` is for the
+    registry to keep what it makes of it."""
+
+    value: object
+    trace: Trace
+    looked: Looked
+    fact: object = None
+
+
+class Shared:
+    """Outcomes of parts under the same claims and run values, each computed once for all
+    declarations that agree in what the part looked at.
+
+    Claims that come make everything here void; it is then forgotten.
+    """
+
+    def __init__(self, claims: Claims, run: RunValues) -> None:
+        self.claims = claims
+        self.run = run
+        self._size = len(claims)
+        self._numbers: dict[str, dict[object, int]] = {}
+        self._seen: dict[Part, dict[tuple[str, ...], dict[tuple[int, ...], Seen]]] = {}
+
+    def refresh(self) -> None:
+        """Forget what was seen if claims have come since."""
+        if self._size != len(self.claims):
+            self._size = len(self.claims)
+            self._seen.clear()
+
+    def number(self, key: str, value: object) -> int:
+        """A small number that stands for this value of the key."""
+        numbers = self._numbers.setdefault(key, {})
+        return numbers.setdefault(value, len(numbers))
+
+    def recall(self, part: Part, number_of: Callable[[str], int]) -> Seen | None:
+        """The outcome of the part for a declaration whose keys have these numbers."""
+        for keys, outcomes in self._seen.get(part, {}).items():
+            seen = outcomes.get(tuple(map(number_of, keys)))
+            if seen is not None:
+                return seen
+        return None
+
+    def keep(self, part: Part, seen: Seen, number_of: Callable[[str], int]) -> None:
+        """Keep an outcome for other declarations."""
+        keys = tuple(sorted(seen.looked.keys))
+        outcomes = self._seen.setdefault(part, {}).setdefault(keys, {})
+        outcomes[tuple(map(number_of, keys))] = seen
+
+
 class Given:
     """One declaration, the claims about its integers, and the run values, read with a trace."""
 
-    def __init__(self, declaration: Declaration, claims: Claims, run: RunValues) -> None:
-        self.declaration = declaration
+    def __init__(
+        self,
+        declaration: Declaration,
+        claims: Claims,
+        run: RunValues,
+        shared: Shared | None = None,
+    ) -> None:
         self.run = run
-        self.consulted: set[str] = set()
+        self._shared = Shared(claims, run) if shared is None else shared
+        if self._shared.claims is not claims or self._shared.run is not run:
+            raise ValueError("what is shared was seen under other claims or run values")
+        self._shared.refresh()
         self._claims = claims
-        self._known: dict[Callable[[Given], object], tuple[object, Trace]] = {}
+        self._declaration = declaration
+        self._numbers: dict[str, int] = {}
+        self._known: dict[Part, Seen] = {}
         self._traces: list[Trace] = [Trace()]
+        self._looked: list[Looked] = [Looked()]
+        self._reader = cast(Declaration, _Reader(declaration, self._looked))
+
+    @property
+    def declaration(self) -> Declaration:
+        """What was declared; whatever is read of it is noted."""
+        return self._reader
+
+    @property
+    def consulted(self) -> set[str]:
+        """Ids of all claims looked at."""
+        return self._looked[0].consulted
 
     def see(self, part: Callable[["Given"], Value]) -> Value:
-        """The value of ``part``, computed once; what it looked at, the caller looked at too."""
-        if part not in self._known:
-            self._traces.append(Trace())
-            outcome: object
-            try:
-                outcome = part(self)
-            except Missing as missing:
-                outcome = missing
-            self._known[part] = outcome, self._traces.pop()
-        value, trace = self._known[part]
-        if isinstance(value, Missing):
-            raise value
-        self._traces[-1].merge(trace)
-        return value  # type: ignore[return-value]
+        """The value of ``part``, computed once; what it rests on, the caller rests on too."""
+        seen = self.outcome(part)
+        self._looked[-1].merge(seen.looked)
+        if isinstance(seen.value, Absent):
+            raise Missing(seen.value)
+        self._traces[-1].merge(seen.trace)
+        return seen.value  # type: ignore[return-value]
+
+    def outcome(self, part: Part) -> Seen:
+        """The outcome of ``part``: its value, or its absence."""
+        seen = self._known.get(part) or self._shared.recall(part, self._number)
+        if seen is None:
+            seen = self._work_out(part)
+            self._shared.keep(part, seen, self._number)
+        self._known[part] = seen
+        return seen
+
+    def _work_out(self, part: Part) -> Seen:
+        self._traces.append(Trace())
+        self._looked.append(Looked())
+        value: object
+        try:
+            value = part(self)
+        except Missing as missing:
+            value = missing.absent
+        finally:
+            trace, looked = self._traces.pop(), self._looked.pop()
+        return Seen(value, trace, looked)
+
+    def _number(self, key: str) -> int:
+        if key not in self._numbers:
+            self._numbers[key] = self._shared.number(key, getattr(self._declaration, key))
+        return self._numbers[key]
 
     def see_or(self, part: Callable[["Given"], Value], default: Default) -> Value | Default:
         """The value of ``part`` or, where it is absent, ``default``.
@@ -92,17 +200,13 @@ class Given:
     def peek(self, part: Callable[["Given"], Value]) -> Value | Absent:
         """The value of ``part`` or its absence, without resting on it; :meth:`see` it if it
         decides."""
-        self._traces.append(Trace())
-        try:
-            return self.see(part)
-        except Missing as missing:
-            return missing.absent
-        finally:
-            self._traces.pop()
+        seen = self.outcome(part)
+        self._looked[-1].merge(seen.looked)
+        return seen.value  # type: ignore[return-value]
 
-    def trace(self, part: Callable[["Given"], object]) -> Trace:
-        """What ``part``, already seen, looked at."""
-        return self._known[part][1]
+    def trace(self, part: Part) -> Trace:
+        """What ``part``, already seen, rests on."""
+        return self._known[part].trace
 
     def standing(self, trace: Trace) -> Standing:
         """The weakest standing of what was looked at."""
@@ -126,7 +230,7 @@ class Given:
     def cite(self, claim: Claim) -> None:
         """Say that the value in the making rests on ``claim``."""
         self._traces[-1].claims.add(claim.id)
-        self.consulted.add(claim.id)
+        self._looked[-1].consulted.add(claim.id)
 
     def word(self, key: str) -> str | int:
         """The declared word for ``key``; absent as ``undeclared`` where there is none."""
@@ -188,3 +292,17 @@ class Given:
         """The claims themselves, for the few facts that need more than the questions above; they
         must :meth:`cite` what they use."""
         return self._claims
+
+
+class _Reader:
+    """A declaration that notes which of its keys are read."""
+
+    __slots__ = ("_declaration", "_looked")
+
+    def __init__(self, declaration: Declaration, looked: list[Looked]) -> None:
+        self._declaration = declaration
+        self._looked = looked
+
+    def __getattr__(self, key: str) -> Any:
+        self._looked[-1].keys.add(key)
+        return getattr(self._declaration, key)

@@ -5,7 +5,7 @@ from typing import Any
 
 from auditor.encoding import plain
 from auditor.facts.base import Absent, Fact, FactKind, FactType
-from auditor.facts.given import Given, Missing
+from auditor.facts.given import Given, Seen
 
 FactFunction = Callable[[Given], Any]
 
@@ -34,15 +34,21 @@ def registered() -> Mapping[str, FactType]:
 def establish(name: str, given: Given) -> Fact | Absent:
     """The fact of that name for what is given."""
     word, function = _registered[name]
-    try:
-        value = given.see(function)
-    except Missing as missing:
-        return missing.absent
-    trace = given.trace(function)
+    seen = given.outcome(function)
+    if isinstance(seen.value, Absent):
+        return seen.value
+    if seen.fact is None:
+        seen.fact = _fact(word, seen, given)
+    assert isinstance(seen.fact, Fact)
+    return seen.fact
+
+
+def _fact(word: FactType, seen: Seen, given: Given) -> Fact:
+    trace = seen.trace
     if trace.loose and word.bound is None:
-        raise AssertionError(f"{name} is final by name, yet something open could move it")
+        raise AssertionError(f"{word.name} is final by name, yet something open could move it")
     return Fact(
-        value=_value(word, value),
+        value=_value(word, seen.value),
         standing=given.standing(trace),
         tight=not trace.loose,
         claims=tuple(sorted(trace.claims)),

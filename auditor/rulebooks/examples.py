@@ -5,7 +5,7 @@ book that wrote it and run there, since another book may have moved the threshol
 """
 
 from auditor.rulebooks.conditions import View, Vocabulary
-from auditor.rulebooks.findings import evaluate
+from auditor.rulebooks.judging import evaluate
 from auditor.rulebooks.rulebook import Example, Problem, Rule, Rulebook
 
 

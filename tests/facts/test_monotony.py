@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 
 from auditor.declaration import Declaration
 from auditor.facts import Established, vocabulary
-from auditor.rulebooks.findings import judge
+from auditor.rulebooks.judging import judge
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
 from tests.facts.knowledge import declare, known, partial_claims, reviewed, settled, some

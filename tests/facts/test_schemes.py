@@ -11,7 +11,7 @@ from auditor.claims.origin_replay import Outcome
 from auditor.declaration import Provenance
 from auditor.facts import Established, vocabulary
 from auditor.intake.standard_groups import find
-from auditor.rulebooks.findings import judge
+from auditor.rulebooks.judging import judge
 from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
 from tests.facts.knowledge import declare, known, reviewed, settled, some

@@ -10,7 +10,7 @@ from auditor.facts import vocabulary
 from auditor.facts.base import Absent, Fact
 from auditor.rulebooks.conditions import View
 from auditor.rulebooks.examples import failures, rule_failures
-from auditor.rulebooks.findings import Judgement, evaluate, facts_in_use, judge
+from auditor.rulebooks.judging import Judgement, evaluate, facts_in_use, judge
 from auditor.rulebooks.loading import available, load_all
 from tests.rules.mutations import mutants
 

@@ -8,7 +8,8 @@ import pytest
 from auditor.claims.standing import Standing
 from auditor.facts.base import Absent, Fact
 from auditor.intake.standard_groups import StandardGroup, standard_groups
-from auditor.rulebooks.findings import Finding, Judgement, facts_in_use, judge
+from auditor.rulebooks.findings import Finding
+from auditor.rulebooks.judging import Judgement, facts_in_use, judge
 from auditor.rulebooks.loading import load_all
 from tests.vocabulary_of_the_contract import VOCABULARY
 
