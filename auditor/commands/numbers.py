@@ -1,19 +1,26 @@
 """Commands about numbers: ``structure``, ``demonstrate``, ``declare``."""
 
 import sys
+from contextlib import suppress
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import click
 
 from auditor.commands.options import (
     DEPTH,
+    ENGINE,
     JOBS,
+    Interrupted,
     effort_option,
+    engine_of,
     investigated,
     run_values_of,
     search_options,
 )
+
+if TYPE_CHECKING:
+    from auditor.inquiry.unit_groups import Structure
 
 
 @click.command()
@@ -22,35 +29,56 @@ from auditor.commands.options import (
 @click.option("--json", "as_json", is_flag=True, help="A record for programs.")
 @effort_option("standard")
 @DEPTH
+@ENGINE
 @JOBS
 def structure(
     numbers: tuple[str, ...], elements: tuple[str, ...], as_json: bool, **options: Any
 ) -> int:
     """Show the units modulo N: factors, cycles, orders, whether several groups are isomorphic.
 
-    Numbers are decimal or hexadecimal (0x…).
+    Numbers are decimal or hexadecimal (0x…). An interruption shows what was found until then.
 
     \b
     auditor structure 3600 --of 7
     auditor structure 15 16 20
     auditor structure 0xffffffffffffffff --json
     """
-    import json
     import secrets
 
     from auditor.claims.collection import Claims
     from auditor.inquiry.answers import Answers, Cores
     from auditor.inquiry.pool import LocalPool
-    from auditor.inquiry.unit_groups import isomorphic, order_of
+    from auditor.inquiry.unit_groups import known_so_far
     from auditor.inquiry.unit_groups import structure as structure_of
+
+    engine, values = engine_of(options), [_number(number) for number in numbers]
+    run = run_values_of({**options, "as_of": None}, engine)
+    found: list[Structure] = []
+    interrupted = False
+    with LocalPool(options["jobs"]) as pool:
+        cores = Cores(pool if pool.jobs > 1 else None, pool.jobs, engine)
+        answers = Answers(Claims(), run, secrets.randbelow, lambda claims: None, cores)
+        try:
+            for value in values:
+                found.append(structure_of(value, answers))
+        except KeyboardInterrupt:
+            interrupted = True
+            with suppress(KeyError):
+                found.append(known_so_far(values[len(found)], answers.claims))
+    if found or not interrupted:
+        _show(found, [_number(element) for element in elements], as_json)
+    if interrupted:
+        raise Interrupted("; shown is what was found" if found else "; nothing was found yet")
+    return 0
+
+
+def _show(found: "list[Structure]", elements: list[int], as_json: bool) -> None:
+    import json
+
+    from auditor.inquiry.unit_groups import isomorphic, order_of
     from auditor.report.unit_group_text import classes_text, record, text
 
-    run = run_values_of({**options, "as_of": None})
-    with LocalPool(options["jobs"]) as pool:
-        cores = Cores(pool if pool.jobs > 1 else None, pool.jobs)
-        answers = Answers(Claims(), run, secrets.randbelow, lambda claims: None, cores)
-        found = [structure_of(_number(number), answers) for number in numbers]
-    orders = [[order_of(_number(element), item) for element in elements] for item in found]
+    orders = [[order_of(element, item) for element in elements] for item in found]
     if as_json:
         records = [record(item, listed) for item, listed in zip(found, orders, strict=True)]
         click.echo(json.dumps(records, indent=2))
@@ -58,7 +86,6 @@ def structure(
         click.echo(text(found, orders), nl=False)
         if len(found) > 1:
             click.echo(classes_text(isomorphic(found)), nl=False)
-    return 0
 
 
 def _number(word: str) -> int:

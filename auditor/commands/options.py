@@ -15,6 +15,8 @@ if TYPE_CHECKING:
     from auditor.inquiry.pool import LocalPool
     from auditor.review import Surroundings
     from auditor.run_values import Effort, RunValues
+    from auditor.search.curves import BuiltIn
+    from auditor.search.gmp_ecm import GmpEcm
 
 Command = TypeVar("Command", bound=Callable[..., Any])
 
@@ -42,6 +44,7 @@ def search_options(effort: str = "standard") -> Callable[[Command], Command]:
         (
             effort_option(effort),
             DEPTH,
+            ENGINE,
             click.option(
                 "--ledger", type=click.Path(dir_okay=False), help="Where claims are kept."
             ),
@@ -61,6 +64,11 @@ def effort_option(default: str) -> Callable[[Command], Command]:
 
 DEPTH = click.option(
     "--factor-digits", type=click.IntRange(0, 50), help="Depth of the factor search."
+)
+ENGINE = click.option(
+    "--engine",
+    type=click.Choice(("gmp-ecm", "built-in")),
+    help="What runs elliptic curves; GMP-ECM where it is installed.",
 )
 JOBS = click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
 BOOKS = click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
@@ -97,8 +105,29 @@ def policy_of(options: dict[str, Any]) -> dict[str, Any]:
     }
 
 
+def engine_of(options: dict[str, Any]) -> "BuiltIn | GmpEcm":
+    """What runs the curves: GMP-ECM where it is installed, unless the other is asked for.
+
+    Where no curves will run nobody looks for it. Asked for and missing it is a usage error.
+    """
+    from auditor.search.curves import BuiltIn
+    from auditor.search.gmp_ecm import installed
+    from auditor.search.plan import plan_for
+
+    wanted = options["engine"]
+    curves = plan_for(options["effort"], options["factor_digits"]).levels
+    if wanted == "built-in" or not (wanted or curves):
+        return BuiltIn()
+    found = installed()
+    if wanted and found is None:
+        raise click.UsageError("--engine gmp-ecm: no program 'ecm' of GMP-ECM is on the path")
+    return found or BuiltIn()
+
+
 @contextmanager
-def surroundings_of(options: dict[str, Any]) -> "Iterator[Surroundings]":
+def surroundings_of(
+    options: dict[str, Any], engine: "BuiltIn | GmpEcm"
+) -> "Iterator[Surroundings]":
     """What a review needs from outside, for as long as it runs; books that cannot be used become a
     usage error."""
     import secrets
@@ -116,7 +145,7 @@ def surroundings_of(options: dict[str, Any]) -> "Iterator[Surroundings]":
                 draw=secrets.randbelow,
                 progress=progress,
                 ledger=ledger_path(options),
-                cores=Cores(pool if pool.started or pool.jobs > 1 else None, pool.jobs),
+                cores=Cores(pool if pool.started or pool.jobs > 1 else None, pool.jobs, engine),
             )
         except RulebookError as error:
             raise click.ClickException(str(error)) from error
@@ -148,12 +177,12 @@ def _workers(options: dict[str, Any]) -> "LocalPool | Cluster":
         raise click.ClickException(str(error)) from error
 
 
-def run_values_of(options: dict[str, Any]) -> "RunValues":
+def run_values_of(options: dict[str, Any], engine: "BuiltIn | GmpEcm") -> "RunValues":
     from auditor.run_values import RunValues
 
     effort: Effort = options["effort"]
     day = options["as_of"].date() if options["as_of"] else date.today()
-    return RunValues(day.isoformat(), effort, options["factor_digits"])
+    return RunValues(day.isoformat(), effort, options["factor_digits"], engine.name)
 
 
 def ledger_path(options: dict[str, Any]) -> Path | None:
@@ -191,8 +220,9 @@ def investigated(
     from auditor.intake.tree import read_inputs
     from auditor.review import census, investigate
 
+    engine = engine_of(options)
     read = read_inputs(paths, sys.stdin.buffer)
-    run = replace(run_values_of(options), census=census(read.declarations))
-    with surroundings_of(options) as surroundings:
+    run = replace(run_values_of(options, engine), census=census(read.declarations))
+    with surroundings_of(options, engine) as surroundings:
         claims, _ = investigate(read.declarations, run, books_of(options), surroundings)
     return read.declarations, claims, run, list(read.errors)

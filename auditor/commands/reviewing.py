@@ -10,6 +10,7 @@ from auditor.commands.options import (
     BOOKS,
     POLICY,
     books_of,
+    engine_of,
     investigated,
     policy_of,
     run_values_of,
@@ -71,11 +72,11 @@ def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]
     from auditor.review import DEFAULT_BOOKS
     from auditor.review import review as review_inputs
 
-    policy = policy_of(options)
-    with surroundings_of(options) as surroundings:
+    policy, engine = policy_of(options), engine_of(options)
+    with surroundings_of(options, engine) as surroundings:
         return review_inputs(
             paths,
-            run_values_of(options),
+            run_values_of(options, engine),
             surroundings,
             books=policy.pop("books") or DEFAULT_BOOKS,
             fail_on=options["fail_on"],

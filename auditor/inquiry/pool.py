@@ -3,6 +3,7 @@
 import multiprocessing
 import os
 import sys
+import threading
 from collections.abc import Callable
 from concurrent.futures import Future
 from types import TracebackType
@@ -14,7 +15,8 @@ from auditor.inquiry.work_units import MOST_DIGITS
 class LocalPool:
     """``jobs`` worker processes with the submit method of an executor; none until one is needed.
 
-    Workers end with this process; one that is lost costs only what it was at (pebble).
+    Workers end with this process, however it ends; one that is lost costs only what it was at
+    (pebble).
     """
 
     lost = False
@@ -38,8 +40,7 @@ class LocalPool:
             self._pool = ProcessPool(
                 max_workers=self.jobs,
                 context=multiprocessing.get_context("spawn"),
-                initializer=sys.set_int_max_str_digits,
-                initargs=(MOST_DIGITS,),
+                initializer=_begin_worker,
             )
         future: Future[Any] = self._pool.schedule(fn, args=args)
         return future
@@ -57,3 +58,16 @@ class LocalPool:
             self._pool.stop()
             self._pool.join()
             self._pool = None
+
+
+def _begin_worker() -> None:
+    sys.set_int_max_str_digits(MOST_DIGITS)
+    threading.Thread(target=_end_with_parent, daemon=True).start()
+
+
+def _end_with_parent() -> None:
+    """A killed parent tells nobody, and a step of a deep search takes minutes."""
+    parent = multiprocessing.parent_process()
+    assert parent is not None
+    parent.join()
+    os._exit(1)

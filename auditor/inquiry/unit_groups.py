@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from math import gcd
 
 from auditor.claims.base import Factors
+from auditor.claims.collection import Claims
 from auditor.claims.standing import Standing, weakest
 from auditor.element_orders import product_of
 from auditor.inquiry.answers import Answers
@@ -50,28 +51,43 @@ def structure(modulus: int, answers: Answers) -> Structure:
     """
     if modulus < 1:
         raise ValueError("the units modulo a number below 1 are not defined")
-    factors, rest = _factors(modulus, answers, Asks.MODULUS_FACTORS)
-    predecessors = {}
-    for prime, _ in factors:
-        known, _ = _factors(prime - 1, answers, Asks.FACTORIZATION)
-        predecessors[prime] = dict(known)
+    _find_factors([modulus], answers, Asks.MODULUS_FACTORS)
+    primes, _ = _factors(modulus, answers.claims)
+    _find_factors([prime - 1 for prime, _ in primes], answers, Asks.FACTORIZATION)
+    return known_so_far(modulus, answers.claims)
+
+
+def known_so_far(modulus: int, claims: Claims) -> Structure:
+    """What claims say about the units modulo ``modulus``, for instance after an interruption.
+
+    Raises KeyError where the factors of the modulus, or of a group order, were not yet looked for.
+    """
+    factors, rest = _factors(modulus, claims)
+    predecessors = {prime: dict(_factors(prime - 1, claims)[0]) for prime, _ in factors}
     group = known_structure(dict(factors), predecessors, rest)
     used = [n for n in (modulus, *(prime - 1 for prime, _ in factors)) if n > 1]
-    claims = [claim for n in used if (claim := answers.claims.factorization(n))]
-    standing = weakest(answers.claims.standing(claim.id) for claim in claims)
+    rests_on = [claim for n in used if (claim := claims.factorization(n))]
+    standing = weakest(claims.standing(claim.id) for claim in rests_on)
     return Structure(modulus, group, standing)
 
 
-def _factors(number: int, answers: Answers, deeper: Asks) -> tuple[Factors, int]:
+def _find_factors(numbers: Sequence[int], answers: Answers, deeper: Asks) -> None:
+    """The small ones of all numbers first: an interruption then leaves none unexamined."""
+    wanted = [number for number in numbers if number > 1]
+    for number in wanted:
+        answers.answer(Question(Asks.SMALL_FACTORS, (number,)))
+    for number in wanted if answers.deep else ():
+        _, rest = _factors(number, answers.claims)
+        if rest > 1:
+            answers.answer(Question(deeper, (number, rest)))
+
+
+def _factors(number: int, claims: Claims) -> tuple[Factors, int]:
     if number == 1:
         return (), 1
-    answers.answer(Question(Asks.SMALL_FACTORS, (number,)))
-    claim = answers.claims.factorization(number)
-    assert claim is not None
-    if claim.rest > 1 and answers.deep:
-        answers.answer(Question(deeper, (number, claim.rest)))
-        claim = answers.claims.factorization(number)
-        assert claim is not None
+    claim = claims.factorization(number)
+    if claim is None:
+        raise KeyError(number)
     return claim.factors, claim.rest
 
 

@@ -1,6 +1,8 @@
 """Stands in for the program ecm: reads the same input, prints in the same form, does as it is told.
 
 ecm_stand_in.py BEHAVIOUR [options of ecm]
+
+Told nothing it finds nothing; told that it ``works`` it runs the curves by our own code.
 """
 
 import json
@@ -10,13 +12,23 @@ import signal
 import sys
 import time
 
+from auditor.search.ecm import run_curve
+
 
 def main() -> int:
+    sys.set_int_max_str_digits(20_000)
     behaviour = json.loads(sys.argv[1])
-    print("GMP-ECM 9.9 [stands in] [ECM]")
+    print(behaviour.get("greeting", "GMP-ECM 9.9 [stands in] [ECM]"))
     if sys.argv[2:] == ["2"]:
         return 0
     assert sys.argv[2:5] == ["-one", "-resume", "-"], sys.argv
+    if sys.argv[5] == behaviour.get("fails_with"):
+        return 1
+    if "dies_until" in behaviour:
+        with open(behaviour["log"], "a+") as file:
+            file.write("x")
+            if file.tell() < behaviour["dies_until"]:
+                os.kill(os.getpid(), signal.SIGKILL)
     curves = [dict(re.findall(r"(\w+)=(\w+)", line)) for line in sys.stdin]
     for index, curve in enumerate(curves):
         if index == behaviour.get("stop_at"):
@@ -32,6 +44,12 @@ def main() -> int:
         if index == behaviour.get("find_at"):
             print(f"********** Factor found in step 2: {behaviour['factor']}")
             return 6
+        if behaviour.get("works"):
+            bounds = int(sys.argv[5]), int(sys.argv[6])
+            divisor = run_curve(int(curve["N"]), *bounds, int(curve["SIGMA"]))
+            if divisor > 1:
+                print(f"********** Factor found in step 2: {divisor}")
+                return 6
     return int(behaviour.get("status", 0))
 
 

@@ -11,6 +11,7 @@ import signal
 import subprocess
 import sys
 import time
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -51,8 +52,9 @@ def test_a_find_ends_the_unit(tmp_path: Path) -> None:
     ("behaviour", "message"),
     [
         ({"stop_at": 3}, "3 of 4"),
-        ({"die_at": 1}, "-9"),
-        ({"die_at": 3, "by": signal.SIGUSR1}, "-10"),
+        ({"die_at": 1}, "signal 9"),
+        ({"die_at": 3, "by": signal.SIGUSR1}, "signal 10"),
+        ({"greeting": "compresses disc images"}, "is not GMP-ECM"),
         ({"status": 1}, "ended with 1"),
         ({"find_at": 0, "factor": P + 2}, "does not divide"),
         ({"find_at": 0, "factor": 1}, "does not divide"),
@@ -78,7 +80,24 @@ def test_numbers_that_the_program_cannot_take(tmp_path: Path, n: int) -> None:
         stand_in(tmp_path).run(Task(n, n, 100, 1000, 0, 2))
 
 
-def test_a_killed_program_costs_no_answer(tmp_path: Path) -> None:
+def test_a_killed_program_is_run_again(tmp_path: Path) -> None:
+    """Killed now and then it does the work all the same, and nobody else is named."""
+    log = tmp_path / "log"
+    engine = stand_in(tmp_path, dies_until=3, log=str(log), find_at=1, factor=P)
+
+    assert engine.run(TASK) == Outcome(7, P, "GMP-ECM 9.9")
+    assert log.read_text() == "xxx"
+
+
+def test_the_version_that_ran_is_named(tmp_path: Path) -> None:
+    """Another machine may have another one."""
+    engine = replace(stand_in(tmp_path), version="9.8")
+
+    assert engine.name == "GMP-ECM 9.8"
+    assert engine.run(TASK).engine == "GMP-ECM 9.9"
+
+
+def test_a_program_that_is_always_killed_costs_no_answer(tmp_path: Path) -> None:
     """The built-in engine runs its units, and the record names the engines that did the work."""
     result = search(M, PLAN, engine=stand_in(tmp_path, die_at=0))
 
@@ -92,31 +111,47 @@ def test_it_is_found_by_its_greeting(tmp_path: Path, monkeypatch: pytest.MonkeyP
     assert gmp_ecm.installed() is None
     engine = stand_in(tmp_path)
     monkeypatch.setenv("PATH", f"{tmp_path}:/usr/bin:/bin")
+    assert gmp_ecm.installed() == replace(engine, leash=gmp_ecm.LEASH)
+    other = tmp_path / "setpriv"
+    other.write_text("#!/bin/sh\necho unknown option; exit 1\n", encoding="utf-8")
+    other.chmod(0o755)
     assert gmp_ecm.installed() == engine
     (tmp_path / "ecm").write_text("#!/bin/sh\necho compresses disc images\n", encoding="utf-8")
     assert gmp_ecm.installed() is None
 
 
-def test_an_interrupt_ends_the_program(tmp_path: Path) -> None:
-    """The search is interrupted while the program works: the program is gone with it."""
+def lives(pid: int) -> bool:
+    """Whether a process runs; one that has ended and waits for its parent does not."""
+    try:
+        return bool(Path(f"/proc/{pid}/cmdline").read_bytes())
+    except OSError:
+        return False
+
+
+@pytest.mark.parametrize("by", [signal.SIGINT, signal.SIGKILL])
+def test_the_program_ends_with_its_search(tmp_path: Path, by: signal.Signals) -> None:
+    """The search is interrupted, or killed, while the program works: it is gone with it."""
     pid_file = tmp_path / "pid"
-    engine = stand_in(tmp_path, sleep_at=1, pid_file=str(pid_file))
+    engine = replace(stand_in(tmp_path, sleep_at=1, pid_file=str(pid_file)), leash=gmp_ecm.LEASH)
     source = (
         "from auditor.search.gmp_ecm import GmpEcm\n"
         "from auditor.search.curves import Task\n"
-        f"GmpEcm({engine.path!r}, '9.9').run({TASK!r})\n"
+        f"{engine!r}.run({TASK!r})\n"
     )
     searching = subprocess.Popen([sys.executable, "-c", source], stderr=subprocess.PIPE)
     while not (pid_file.exists() and pid_file.read_text()):
         assert searching.poll() is None
         time.sleep(0.01)
     program = int(pid_file.read_text())
-    os.kill(searching.pid, signal.SIGINT)
+    os.kill(searching.pid, by)
     _, errors = searching.communicate()
 
-    assert b"KeyboardInterrupt" in errors
-    with pytest.raises(ProcessLookupError):
-        os.kill(program, 0)
+    assert (b"KeyboardInterrupt" in errors) == (by == signal.SIGINT)
+    for _ in range(100):
+        if not lives(program):
+            break
+        time.sleep(0.05)
+    assert not lives(program)
 
 
 INSTALLED = gmp_ecm.installed()
