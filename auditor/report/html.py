@@ -15,6 +15,7 @@ from auditor.report.exposure_view import exposure_table
 from auditor.report.moduli_view import moduli, moduli_picture
 from auditor.report.order_view import GroupOrders
 from auditor.report.pictures import PART_MEANING, routes_picture
+from auditor.report.shared_findings import by_sheet, shared_findings
 from auditor.report.text import read_integer
 from auditor.report.view import Record, View, view
 
@@ -35,6 +36,7 @@ def render(record: Record | View) -> str:
     orders = GroupOrders.read(claims)
     shown = report.sheets[:MOST_SHEETS]
     distinct = moduli(report.sheets)
+    shared = shared_findings(report.sheets)
     keys = sorted(claims) if len(claims) <= MOST_ENTRIES else report.claims_behind(shown)
     return (
         _environment()
@@ -44,6 +46,8 @@ def render(record: Record | View) -> str:
             words=words,
             most_entries=MOST_ENTRIES,
             shown=shown,
+            shared=shared,
+            shared_by_sheet=by_sheet(shared),
             moduli=distinct,
             moduli_picture=moduli_picture(distinct),
             claims=[(key, claims[key]) for key in keys if not is_small_prime(claims[key])],

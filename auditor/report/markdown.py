@@ -6,11 +6,13 @@ active characters defused.
 """
 
 import re
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TypeVar
 
+from auditor.report.findings_view import MergedFinding, Remedy
 from auditor.report.questions_view import Question
+from auditor.report.shared_findings import Lines, SharedFinding, by_sheet, shared_findings
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import Number, clipped
 from auditor.report.view import Record, View, view
@@ -43,11 +45,15 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
         _fitted("message", "\n## Not read\n\n", report.problems, _message, room.share(6)),
         _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room.share(12)),
     ]
-    return "".join([head, decisions, *_findings(report, room), *after, foot])
+    shared, told = _shared_section(report, room.share(2))
+    return "".join([head, decisions, shared, *_findings(report, room, told), *after, foot])
 
 
 _RESERVE = 600
-"""Kept free for the sentences that say what was left out: five, none above 120 characters."""
+"""Kept free for the sentences that say what was left out: six, none above 100 characters."""
+
+Told = Mapping[tuple[int, int], SharedFinding]
+"""What is told of several sets together, by number of the sheet and place on it."""
 
 
 @dataclass(slots=True)
@@ -149,10 +155,63 @@ def _row(sheet: Sheet) -> str:
     return f"| {' | '.join(cells)} |\n"
 
 
-def _findings(report: View, room: _Room) -> Iterator[str]:
+def _shared_section(report: View, room: _Room) -> tuple[str, Told]:
+    """As many of the findings of several sets as fit, and where these stand on the sheets; the
+    others are told on each sheet."""
+    found = shared_findings(report.sheets)
+    fits = bool(found) and room.take(_SHARED)
+    texts: list[str] = []
+    for text in map(_shared, found) if fits else ():
+        if not room.take(text):
+            break
+        texts.append(text)
+    return (_SHARED if texts else "") + "".join(texts), by_sheet(found[: len(texts)])
+
+
+_SHARED = """
+## Findings of several sets
+
+Equal in defect, outcome, grade and usage. Each is told once; sheets refer to it by its number.
+"""
+
+
+def _shared(finding: SharedFinding) -> str:
+    sets = plural(len(finding.members), "set")
+    heading = f"{prose(finding.first.heading)} {prose(finding.first.statements[0])}"
+    note = f"The words are those of set {finding.members[0][0].number}; each sheet has its own."
+    lines = [
+        f"\n### F{finding.number}. {finding.first.words}, {sets}",
+        "",
+        re.sub(" +", " ", heading).strip(),
+        *(f"Also: {prose(statement)}" for statement in finding.first.statements[1:]),
+        *([] if finding.same_words else ["", note]),
+        "",
+        f"- Sets: {finding.numbers}",
+        f"- Where: {_where(finding.places)}",
+        *(f"- Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria),
+    ]
+    if finding.first.outcome == "undetermined":
+        lines += [f"- Missing: {code(name)}, {prose(why)}" for name, why in finding.missing]
+    for remedy in finding.remedies:
+        lines.append(f"- Remedy: {prose(remedy.text)}")
+        lines += [f"- It breaks: {prose(item)}" for item in remedy.breaks]
+    if finding.has_own_remedies:
+        own = "in the JSON report" if finding.first.grade == "observation" else "on its sheet"
+        lines.append(f"- Remedy: each set has its own, {own}.")
+    lines += [f"- Caution: {prose(caution)}" for caution in finding.cautions]
+    return "\n".join(lines) + "\n"
+
+
+def _where(places: Sequence[Lines]) -> str:
+    """The first files with their lines, each within bounds, and how many more files there are."""
+    text = ", ".join(code(place.text, 400) for place in places[:8])
+    return text + (f" and {plural(len(places) - 8, 'more file')}" if len(places) > 8 else "")
+
+
+def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
     """Sheets with their findings, worst first, until one does not fit; then what was left out."""
     shown, sheets = 0, 0
-    for text, finding in _pieces(report):
+    for text, finding in _pieces(report, told):
         if not room.take(text):
             break
         yield text
@@ -165,16 +224,16 @@ def _findings(report: View, room: _Room) -> Iterator[str]:
         )
 
 
-def _pieces(report: View) -> Iterator[tuple[str, int]]:
+def _pieces(report: View, told: Told) -> Iterator[tuple[str, int]]:
     """What may not be cut apart, and how many findings are in it: a sheet's opening goes with its
     first finding."""
     title = "\n## Findings\n"
     for sheet in report.sheets:
-        first = _finding(sheet, 1) if sheet.findings else ""
+        first = _finding(sheet, 1, told) if sheet.findings else ""
         yield title + _opening(sheet) + first, len(sheet.findings[:1])
         title = ""
         for number in range(2, len(sheet.findings) + 1):
-            yield _finding(sheet, number), 1
+            yield _finding(sheet, number, told), 1
 
 
 def _opening(sheet: Sheet) -> str:
@@ -203,14 +262,16 @@ def _number(number: Number) -> str:
     return f"{text}, {number.length} bits, SHA-256 {code(number.mark)}" if number.is_long else text
 
 
-def _finding(sheet: Sheet, number: int) -> str:
-    """A finding with its criteria and remedies; an observation in one paragraph."""
+def _finding(sheet: Sheet, number: int, told: Told) -> str:
+    """A finding with its criteria and remedies; an observation in one paragraph. Of what is told
+    of several sets together only what is this sheet's own."""
     finding = sheet.findings[number - 1]
-    heading = f"**{finding.words}:** {prose(finding.heading)} {prose(finding.statements[0])}"
-    lines = [f"\n{number}. {re.sub(' +', ' ', heading)}"]
+    if shared := told.get((sheet.number, number)):
+        return _reference(finding, number, shared)
     if finding.grade == "observation":
-        return f"{lines[0]} ({', '.join(code(item.rule) for item in finding.criteria)})\n"
-    lines.append("")
+        rules = ", ".join(code(item.rule) for item in finding.criteria)
+        return f"{_stated(finding, number, finding.statements[:1])} ({rules})\n"
+    lines = [_stated(finding, number, finding.statements[:1]), ""]
     lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
     lines += [
         f"   - Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria
@@ -220,12 +281,32 @@ def _finding(sheet: Sheet, number: int) -> str:
     for remedy, first in sheet.remedies(number):
         if first != number:
             lines.append(f"   - Remedy: as for {first}.")
-            continue
-        lines.append(f"   - Remedy: {prose(remedy.text)}")
-        lines += [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
+        else:
+            lines += _remedy(remedy)
     lines += [f"   - Caution: {prose(caution)}" for caution in finding.cautions]
     lines += [f"   - Concession: {prose(item.text)}" for item in finding.concessions]
     return "\n".join(lines) + "\n"
+
+
+def _reference(finding: MergedFinding, number: int, shared: SharedFinding) -> str:
+    """What a sheet adds to a finding that it shares with others."""
+    said = () if shared.same_words else finding.statements
+    lines = [f"{_stated(finding, number, said)} See F{shared.number}."]
+    if finding.grade != "observation":
+        own = [remedy for remedy in finding.remedies if remedy not in shared.remedies]
+        lines += [line for remedy in own for line in _remedy(remedy)]
+    lines += [f"   - Concession: {prose(item.text)}" for item in finding.concessions]
+    return "\n".join([*lines[:1], *([""] if lines[1:] else []), *lines[1:]]) + "\n"
+
+
+def _stated(finding: MergedFinding, number: int, statements: Sequence[str]) -> str:
+    parts = [prose(part) for part in (finding.heading, *statements) if part]
+    return " ".join([f"\n{number}. **{finding.words}:**", *parts])
+
+
+def _remedy(remedy: Remedy) -> list[str]:
+    breaks = [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
+    return [f"   - Remedy: {prose(remedy.text)}", *breaks]
 
 
 def _question(question: Question) -> str:
