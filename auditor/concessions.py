@@ -333,12 +333,12 @@ def fails(parameter_set: Record, fail_on: str) -> bool:
         return False
     counted = FAIL_ON[: FAIL_ON.index(fail_on) + 1]
     return any(
-        _leads_to(finding) in counted and not is_conceded(finding)
+        leads_to(finding) in counted and not is_conceded(finding)
         for finding in parameter_set["findings"]
     )
 
 
-def _leads_to(finding: Record) -> str:
+def leads_to(finding: Record) -> str:
     """The position that the finding alone would lead to."""
     if finding["grade"] == "observation":
         return "no objection"

@@ -6,6 +6,9 @@ from typing import Any
 import click
 
 from auditor.commands.options import POLICY, policy_of
+from auditor.commands.short import check, format_options, write
+
+FAIL_ON = ("hold", "open", "conditions", "never")
 
 
 @click.command()
@@ -44,21 +47,48 @@ def verify(report: str, against: tuple[str, ...], **options: Any) -> int:
 @click.command()
 @click.argument("old", type=click.Path(dir_okay=False))
 @click.argument("new", type=click.Path(dir_okay=False))
-def compare(old: str, new: str) -> int:
-    """Show what a new JSON report adds, settles and changes; status 1 if anything got worse.
+@click.option("--fail-on", type=click.Choice(FAIL_ON), default="conditions", show_default=True)
+@format_options
+def compare(old: str, new: str, **options: Any) -> int:
+    """Show what a new JSON report adds, settles and changes.
+
+    What only the owner's word has removed, while the integers are the same, counts as new. Exit
+    status 1 when something at or above --fail-on is new.
 
     \b
     auditor compare before.json after.json
+    auditor compare before.json after.json --fail-on hold --markdown ticket.md
     """
     from auditor.compare import compare as compare_reports
-    from auditor.outputs import read_report
-    from auditor.report.comparing import render
+    from auditor.report import comparing, comparing_html, comparing_markdown
+    from auditor.report.json_report import dumps
+
+    check(options)
+    before, after = _reports(old, new)
+    compared = compare_reports(before, after)
+    found = comparing.record(compared, before, after, options["fail_on"])
+    limit = options["markdown_limit"]
+    write(
+        options,
+        {
+            "html": lambda: comparing_html.render(found),
+            "markdown": lambda: comparing_markdown.render(found, limit=limit),
+            "json": lambda: dumps(found),
+            "text": lambda: comparing.render(found),
+        },
+    )
+    return int(found["fails"])
+
+
+def _reports(*paths: str) -> list[dict[str, Any]]:
+    """The reports at these paths; a usage error for what is none."""
+    from auditor.outputs import STANDARD_OUTPUT, read_report
     from auditor.report.json_report import problems
 
-    records = [read_report(old), read_report(new)]
-    for path, record in zip((old, new), records, strict=True):
+    if paths.count(STANDARD_OUTPUT) > 1:
+        raise click.UsageError("only one report can come from standard input")
+    records = [read_report(path) for path in paths]
+    for path, record in zip(paths, records, strict=True):
         if malformed := problems(record):
             raise click.ClickException(f"{path}: not a report of this format: {malformed[0]}")
-    found = compare_reports(*records)
-    click.echo(render(found), nl=False)
-    return int(found.worse)
+    return records
