@@ -9,7 +9,9 @@ modulus is listed as passed over, with the names that such a file would use.
 
 import re
 from bisect import bisect_right
+from collections import Counter
 from collections.abc import Container, Iterable, Iterator
+from dataclasses import dataclass
 
 from auditor.intake.names_statements import words_of
 from auditor.intake.reading import Number, Passed, Reading, Role
@@ -49,6 +51,7 @@ _CAST = re.compile(r"\(\s*(?:unsigned\s+)?(?:byte|char|uint8_t|u8)\s*\)")
 
 _MODULUS = frozenset({"modulus", "prime", "modulo"})
 _GENERATOR = frozenset({"generator", "base"})
+_ORDER = frozenset({"subgroup", "order"})
 _GROUP = re.compile(r"dh|dsa|modp|elgamal|group|schnorr|hellman", re.IGNORECASE)
 _LETTERS: dict[str, Role] = {"p": "modulus", "g": "generator", "q": "subgroup order"}
 
@@ -108,29 +111,60 @@ def role_of(name: str) -> Role | None:
     return _LETTERS.get(words[-1]) if words and _GROUP.search(name) else None
 
 
-def passed_over(numbers: Iterable[Number], known: Container[int]) -> Iterator[Passed]:
+@dataclass(frozen=True, slots=True)
+class Waiting:
+    """A modulus among the candidates that is not reviewed yet, and the names that go with it.
+
+    ``unique`` says that its name stands once in its file: only then can a use name it.
+    """
+
+    modulus: Number
+    generator: str | None
+    subgroup_order: str | None
+    unique: bool
+
+    @property
+    def group(self) -> str:
+        """The standard group with that modulus, or ``none``."""
+        return match(self.modulus.value, 2).name
+
+
+def waiting(numbers: Iterable[Number], known: Container[int]) -> Iterator[Waiting]:
     """Each modulus among the candidates of one file that is not among the ``known`` ones."""
-    numbers = list(numbers)
-    generators = [number for number in numbers if number.role == "generator"]
-    for number in numbers:
-        if number.role != "modulus" or number.value in known:
-            continue
-        beside = next((g.name for g in generators if _stem(g.name) == _stem(number.name)), None)
-        generator = "an integer" if beside is None else beside
-        group = match(number.value, 2).name
-        equal = f", the modulus of {group}" if group != "none" else ""
-        yield Passed(
-            number.path,
-            f"candidate {quoted(number.name)}: {number.value.bit_length()} bits{equal}; not "
-            f"reviewed unless a usage file names it (modulus: {number.name}, "
-            f"generator: {generator})",
-            number.line,
-        )
+    listed = list(numbers)
+    count = Counter(number.name for number in listed)
+
+    def beside(modulus: Number, role: Role) -> str | None:
+        names = (n.name for n in listed if n.role == role and count[n.name] == 1)
+        return next((name for name in names if _stem(name) == _stem(modulus.name)), None)
+
+    for number in listed:
+        if number.role == "modulus" and number.value not in known:
+            yield Waiting(
+                number,
+                beside(number, "generator"),
+                beside(number, "subgroup order"),
+                count[number.name] == 1,
+            )
+
+
+def passed_over(found: Waiting) -> Passed:
+    """How a modulus that waits is listed."""
+    number, group = found.modulus, found.group
+    equal = f", the modulus of {group}" if group != "none" else ""
+    return Passed(
+        number.path,
+        f"candidate {quoted(number.name)}: {number.value.bit_length()} bits{equal}; not "
+        f"reviewed unless a usage file names it (modulus: {number.name}, "
+        f"generator: {found.generator or 'an integer'})",
+        number.line,
+    )
 
 
 def _stem(name: str) -> str:
-    """The name without what tells modulus and generator apart."""
-    return " ".join(w for w in words_of(name) if w not in {*_MODULUS, *_GENERATOR, "p", "g"})
+    """The name without what tells modulus, generator and order apart."""
+    told = {*_MODULUS, *_GENERATOR, *_ORDER, "p", "g", "q"}
+    return " ".join(word for word in words_of(name) if word not in told)
 
 
 def _blanks(found: re.Match[str]) -> str:

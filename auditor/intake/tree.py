@@ -14,7 +14,7 @@ from pathlib import Path, PurePath
 from typing import BinaryIO
 
 from auditor.declaration import Declaration
-from auditor.intake.candidates import passed_over
+from auditor.intake.candidates import Waiting, passed_over, waiting
 from auditor.intake.document import DocumentResult
 from auditor.intake.ignored import ignored_below
 from auditor.intake.inputs import (
@@ -43,7 +43,9 @@ Found = Candidate | Passed | InputError
 class InputResult:
     """All that was read in one run.
 
-    ``passed`` is what was seen and not reviewed, ``notices`` what to know about what is.
+    ``passed`` is what was seen and not reviewed, ``notices`` what to know about what is;
+    ``waiting`` are the candidates that no set is made of, ``documents`` the paths of the
+    declaration documents, whose sets no usage file touches.
     """
 
     declarations: tuple[Declaration, ...]
@@ -51,6 +53,8 @@ class InputResult:
     inputs: tuple[InputFile, ...]
     passed: tuple[Passed, ...] = ()
     notices: tuple[Notice, ...] = ()
+    waiting: tuple[Waiting, ...] = ()
+    documents: frozenset[str] = frozenset()
 
     @property
     def skipped(self) -> tuple[str, ...]:
@@ -166,12 +170,15 @@ class _Run:
             for item, own in zip(self.declarations, stated, strict=True)
         ]
         declarations = self.unique([*in_order, *with_use])
+        unnamed = tuple(self.waiting(declarations))
         return InputResult(
             declarations,
             tuple(sorted([*self.errors, *applied.errors])),
             tuple(sorted(self.inputs)),
-            (*self.passed, *self.waiting(declarations), *applied.passed),
+            (*self.passed, *map(passed_over, unnamed), *applied.passed),
             (*self.notices, *applied.notices),
+            unnamed,
+            frozenset(self.documents),
         )
 
     def unique(self, declarations: Iterable[Declaration]) -> tuple[Declaration, ...]:
@@ -184,7 +191,7 @@ class _Run:
                 self.errors.append(InputError(place.path, place.line, place.column, message))
         return tuple(kept.values())
 
-    def waiting(self, declarations: Iterable[Declaration]) -> Iterator[Passed]:
+    def waiting(self, declarations: Iterable[Declaration]) -> Iterator[Waiting]:
         """The candidates that no set of the same file is made of."""
         known: dict[str, set[int]] = {}
         for declaration in declarations:
@@ -193,7 +200,7 @@ class _Run:
         for number in self.candidates:
             by_path.setdefault(number.path, []).append(number)
         for path, numbers in by_path.items():
-            yield from passed_over(numbers, known.get(path, set()))
+            yield from waiting(numbers, known.get(path, set()))
 
 
 def _holds_nothing(found: Reading | DocumentResult | UsageFile) -> bool:

@@ -4,7 +4,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.intake.candidates import passed_over, read_candidates, role_of
+from auditor.intake.candidates import passed_over, read_candidates, role_of, waiting
 from auditor.intake.standard_groups import find
 
 GROUP = find("modp1024")
@@ -105,7 +105,7 @@ def test_what_is_listed() -> None:
         ("modulus", "PRIME"),
         ("modulus", "MODULUS"),
     ]
-    first, second, third = passed_over(numbers, ())
+    first, second, third = map(passed_over, waiting(numbers, ()))
     assert (first.path, first.line) == ("src/a.c", 1)
     assert first.reason == (
         "candidate 'dh_p': 1024 bits; not reviewed unless a usage file names it "
@@ -113,7 +113,7 @@ def test_what_is_listed() -> None:
     )
     assert "generator: an integer" in second.reason
     assert "1024 bits, the modulus of modp1024;" in third.reason
-    assert [item.line for item in passed_over(numbers, {VALUE})] == [4]
+    assert [item.line for item in map(passed_over, waiting(numbers, {VALUE}))] == [4]
 
 
 def test_numbers_of_too_many_bits() -> None:
