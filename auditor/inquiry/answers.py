@@ -5,7 +5,7 @@ its own check before it is handed on; what search got wrong ends here.
 """
 
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 import gmpy2
@@ -250,7 +250,11 @@ class Answers:
 
     def _work_done(self, known: Factorization | None) -> Work | None:
         record = furthest(self.claims, known.rest) if known else None
-        return record[1] if record else None
+        if record is None:
+            return None
+        _, work = record
+        # Where no curves were run no engine has done anything.
+        return work if work.curves else replace(work, engines=())
 
     def _keep_factorization(self, number: int, result: SearchResult) -> None:
         self._keep_factors(number, result.pairs, result.rest)

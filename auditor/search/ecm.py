@@ -43,13 +43,20 @@ class EdwardsCurve:
     y: mpz
 
 
-def curve(n: mpz, k: int) -> EdwardsCurve:
-    """The curve of parameter ``k``; raises Divisor where it degenerates modulo a factor of n."""
+def suyama(n: mpz, k: int) -> tuple[mpz, mpz]:
+    """Suyama's parameter s of the curve ``k``, which programs call sigma, and w; modulo n.
+
+    Raises Divisor where the curve degenerates modulo a factor of n.
+    """
     family = Weierstrass(n, mpz(284), mpz(24960))
     big_x, big_y = stage_two.times(family, GENERATOR, k)
     [inverse] = inverses([big_x], n)
-    s = (5 + 480 * inverse) % n
-    w = 480 * big_y * inverse * inverse % n
+    return (5 + 480 * inverse) % n, 480 * big_y * inverse * inverse % n
+
+
+def curve(n: mpz, k: int) -> EdwardsCurve:
+    """The curve of parameter ``k``; raises Divisor where it degenerates modulo a factor of n."""
+    s, w = suyama(n, k)
     u, v = (s * s - 5) % n, 4 * s % n
     uuu, vvv = u * u * u % n, v * v * v % n
     quotient = [(s - 1) * (s + 5) * (s * s + 5), uuu + vvv, (v - u) ** 3 * (3 * u + v)]

@@ -1,9 +1,9 @@
 """The program ``ecm`` (GMP-ECM) as the engine of elliptic curves, where it is installed.
 
-One process runs many curves, each with its own sigma: the program is asked to resume from a
-residue saved at B1 = 1, which is the starting point itself. Curves are Suyama's (``-param 0``), as
-the model of :mod:`auditor.search.expected_curves` assumes: those of the built-in engine, with the
-same sigmas. Its output is read back strictly, and a divisor counts only if it divides.
+One process runs many curves: the program is asked to resume each from a residue saved at B1 = 1,
+which is the starting point itself. They are the curves of the built-in engine, told by Suyama's
+parameter (``-param 0``), from the same points and to the same bounds; the program's second stage
+reaches a little further. Its output is read back strictly, and a divisor counts only if it divides.
 
 The program ends with the process that started it: it is killed when the search is interrupted, and
 where util-linux provides ``setpriv`` the kernel kills it when that process is killed. Elsewhere an
@@ -13,14 +13,14 @@ orphan runs to the end of its unit: about a second up to B1 = 40,000, one curve 
 import re
 import shutil
 import subprocess
-from collections.abc import Iterator
 from dataclasses import dataclass
 
 import gmpy2
 from gmpy2 import mpz
 
 from auditor.search.curves import EngineFailed, Outcome, Task
-from auditor.search.ecm import parameter
+from auditor.search.divisor import Divisor, inverses
+from auditor.search.ecm import parameter, suyama
 
 PROGRAM = "ecm"
 LEASH = ("setpriv", "--pdeathsig", "KILL")
@@ -64,22 +64,26 @@ class GmpEcm:
         return self._run_once(task)
 
     def _run_once(self, task: Task) -> Outcome:
-        sigmas = [parameter(task.number, task.b1, i) for i in range(task.first, task.end)]
-        output = self._output(task, sigmas)
+        modulus = mpz(task.modulus)
+        drawn = (parameter(task.number, task.b1, index) for index in range(task.first, task.end))
+        try:
+            curves = [_Start.of(modulus, k) for k in drawn]
+        except Divisor:
+            raise EngineFailed("a curve that the program cannot take over") from None
+        output = self._output(task, "".join(curve.line for curve in curves))
         greeting = _GREETING.match(output)
         if greeting is None:
             raise EngineFailed(f"{self.path} is not GMP-ECM")
-        started, divisor = _read(output, sigmas)
-        if divisor is None and started < len(sigmas):
-            raise EngineFailed(f"{self.name} ran {started} of {len(sigmas)} curves")
-        if divisor is not None and (divisor < 2 or task.modulus % divisor):
+        started, divisor = _read(output, [curve.sigma for curve in curves])
+        if divisor is None and started < len(curves):
+            raise EngineFailed(f"{self.name} ran {started} of {len(curves)} curves")
+        if divisor is not None and (divisor < 2 or modulus % divisor):
             raise EngineFailed(f"{self.name} printed a divisor that does not divide")
         return Outcome(task.first + started, divisor or 1, f"GMP-ECM {greeting.group(1)}")
 
-    def _output(self, task: Task, sigmas: list[int]) -> str:
+    def _output(self, task: Task, lines: str) -> str:
         command = [*self.leash, self.path, "-one", "-resume", "-", str(task.b1), str(task.b2)]
         try:
-            lines = "".join(_residues(mpz(task.modulus), sigmas))
             with subprocess.Popen(
                 command,
                 stdin=subprocess.PIPE,
@@ -91,8 +95,6 @@ class GmpEcm:
                     output, errors = process.communicate(lines)
                 finally:
                     process.kill()
-        except ZeroDivisionError:
-            raise EngineFailed("a curve that the program cannot take over") from None
         except OSError as error:
             raise EngineFailed(f"{self.name} does not start: {error.strerror}") from None
         if process.returncode < 0:
@@ -129,24 +131,32 @@ def _printed(command: list[str]) -> str:
     return result.stdout
 
 
-def _residues(n: mpz, sigmas: list[int]) -> Iterator[str]:
-    """A line of a save file for each curve: the starting point u^3/v^3 of Suyama's curve with
-    u = sigma^2 - 5, v = 4 sigma (README of GMP-ECM, sections 6 and 7)."""
-    for sigma in sigmas:
-        u, v = mpz(sigma) ** 2 - 5, mpz(4 * sigma)
-        x = gmpy2.powmod(u * gmpy2.invert(v, n), 3, n)
-        number, start = n.digits(), x.digits(16)
-        yield f"METHOD=ECM; PARAM=0; SIGMA={sigma}; B1=1; N={number}; X=0x{start};\n"
+@dataclass(frozen=True, slots=True)
+class _Start:
+    """A curve and the point to start from, as the line of a save file that says so."""
+
+    sigma: mpz
+    line: str
+
+    @classmethod
+    def of(cls, n: mpz, k: int) -> "_Start":
+        """The curve of parameter ``k`` with the point that the built-in engine starts from:
+        u^3/v^3, where u = sigma^2 - 5 and v = 4 sigma (README of GMP-ECM, sections 6 and 7)."""
+        sigma, _ = suyama(n, k)
+        [inverse] = inverses([4 * sigma % n], n)
+        x = gmpy2.powmod((sigma * sigma - 5) * inverse, 3, n)
+        saved = f"SIGMA={sigma.digits()}; B1=1; N={n.digits()}; X=0x{x.digits(16)};"
+        return cls(sigma, f"METHOD=ECM; PARAM=0; {saved}\n")
 
 
-def _read(output: str, sigmas: list[int]) -> tuple[int, int | None]:
+def _read(output: str, sigmas: list[mpz]) -> tuple[int, int | None]:
     """How many curves were started, and the divisor that the last one found."""
     started = 0
     for match in _STARTED_OR_FOUND.finditer(output):
         sigma, divisor = match.groups()
         if divisor is not None:
             return started, int(mpz(divisor))
-        if started == len(sigmas) or int(sigma) != sigmas[started]:
+        if started == len(sigmas) or mpz(sigma) != sigmas[started]:
             raise EngineFailed("the program ran another curve than it was told to")
         started += 1
     return started, None

@@ -2,7 +2,8 @@
 
 ecm_stand_in.py BEHAVIOUR [options of ecm]
 
-Told nothing it finds nothing; told that it ``works`` it runs the curves by our own code.
+Told nothing it finds nothing; told the numbers (hexadecimal) for which it ``works`` it runs the
+curves drawn for them, by our own code.
 """
 
 import json
@@ -12,7 +13,16 @@ import signal
 import sys
 import time
 
-from auditor.search.ecm import run_curve
+from gmpy2 import mpz
+
+from auditor.search.ecm import parameter, run_curve, suyama
+
+
+def drawn(numbers: list[int], n: int, sigma: int, b1: int) -> int:
+    """The parameter of the curve for one of the numbers that has this sigma modulo ``n``."""
+    multiples = (number for number in numbers if number % n == 0)
+    candidates = (parameter(number, b1, index) for number in multiples for index in range(300))
+    return next(k for k in candidates if suyama(mpz(n), k)[0] == sigma)
 
 
 def main() -> int:
@@ -44,9 +54,10 @@ def main() -> int:
         if index == behaviour.get("find_at"):
             print(f"********** Factor found in step 2: {behaviour['factor']}")
             return 6
-        if behaviour.get("works"):
-            bounds = int(sys.argv[5]), int(sys.argv[6])
-            divisor = run_curve(int(curve["N"]), *bounds, int(curve["SIGMA"]))
+        if "works" in behaviour:
+            n, sigma, b1, b2 = map(int, (curve["N"], curve["SIGMA"], sys.argv[5], sys.argv[6]))
+            numbers = [int(number, 16) for number in behaviour["works"]]
+            divisor = run_curve(n, b1, b2, drawn(numbers, n, sigma, b1))
             if divisor > 1:
                 print(f"********** Factor found in step 2: {divisor}")
                 return 6

@@ -97,8 +97,11 @@ def test_the_version_that_ran_is_named(tmp_path: Path) -> None:
     assert engine.run(TASK).engine == "GMP-ECM 9.9"
 
 
-def test_a_program_that_is_always_killed_costs_no_answer(tmp_path: Path) -> None:
+def test_a_program_that_is_always_killed_costs_no_answer(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
     """The built-in engine runs its units, and the record names the engines that did the work."""
+    monkeypatch.setattr(gmp_ecm, "MOST_KILLS", 1)
     result = search(M, PLAN, engine=stand_in(tmp_path, die_at=0))
 
     assert result == search(M, PLAN)
@@ -166,3 +169,16 @@ def test_engines_find_the_same_factors(engine: BuiltIn | GmpEcm) -> None:
     assert {factor.prime for factor in result.factors} == {P, Q, R}
     assert result.rest == REST
     assert result.engine == engine.name
+
+
+@pytest.mark.parametrize("engine", [INSTALLED] if INSTALLED else [BuiltIn()], ids=str)
+def test_curve_by_curve_the_program_finds_what_our_code_finds(engine: BuiltIn | GmpEcm) -> None:
+    """The curves are the same; the program may find more, since it reaches further."""
+    both = 0
+    for modulus in (P * R, Q * R, P * REST):
+        for index in range(40):
+            task = Task(modulus, modulus, 300, 9_000, index, index + 1)
+            ours, theirs = BuiltIn().run(task).divisor, engine.run(task).divisor
+            assert ours == 1 or ours == theirs, index
+            both += ours > 1
+    assert both > 10
