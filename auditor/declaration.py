@@ -76,6 +76,18 @@ class Declaration:
         """The declared strength, or the default."""
         return DEFAULT_STRENGTH if self.required_strength is None else self.required_strength
 
+    @property
+    def numbers(self) -> tuple[object, ...]:
+        """What is declared of the integers; their use left out."""
+        return (
+            self.modulus,
+            self.generator,
+            self.subgroup_order,
+            self.known_factors,
+            self.provenance,
+            self.public_values,
+        )
+
     def document(self) -> dict[str, Any]:
         """The set in the words of the declaration document, without what was not declared."""
         record: dict[str, Any] = {}

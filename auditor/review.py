@@ -20,6 +20,7 @@ from auditor.inquiry.sharing import share_among_moduli, share_among_rests
 from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
 from auditor.report.record import Reading, build, in_use
+from auditor.rulebooks.judging import Judging
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
@@ -134,6 +135,7 @@ def investigate(
                 recalled.add(n)
         return found
 
+    judging = Judging(books, vocabulary())
     answers = Answers(claims, run, surroundings.draw, keep, surroundings.cores)
 
     def pursue() -> list[str]:
@@ -141,7 +143,7 @@ def investigate(
             declarations,
             answers,
             run,
-            lambda facts, absent: in_use(books, facts, absent),
+            lambda facts, absent: in_use(judging, facts, absent),
             surroundings.progress,
             recall,
         )

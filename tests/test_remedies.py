@@ -22,7 +22,7 @@ from auditor.facts import establish, vocabulary
 from auditor.intake.record import declaration_from
 from auditor.report.json_report import problems
 from auditor.review import DEFAULT_BOOKS, Surroundings, review
-from auditor.rulebooks.judging import judge
+from auditor.rulebooks.judging import Judging, judge
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
@@ -382,7 +382,9 @@ def test_for_any_numbers_a_patch_of_the_usage_or_the_generator_holds(declared: D
     judgement = judge(books, known.facts, known.absent, vocabulary())
     Exposures(claims, QUICK).of(declared)
 
-    for rule, remedy in Remedies(claims, QUICK, books).of(known, judgement).items():
+    for rule, remedy in (
+        Remedies(claims, QUICK, Judging(books, vocabulary()), [known]).of(known, judgement).items()
+    ):
         if remedy.patch is None or "modulus" in remedy.patch:
             continue
         document = patched(declared.document(), remedy.record()["patch"])

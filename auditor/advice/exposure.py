@@ -13,7 +13,7 @@ from auditor.claims.collection import Claims
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.facts import generator, strength
 from auditor.facts.base import Absent
-from auditor.facts.given import Given
+from auditor.facts.given import Given, Shared
 from auditor.routes.base import Attacker, floor_bits
 from auditor.routes.standard_tables import STRENGTHS
 from auditor.run_values import RunValues
@@ -68,50 +68,58 @@ class Exposures:
     """Works out exposures from claims and run values, equal cases once."""
 
     def __init__(self, claims: Claims, run: RunValues) -> None:
-        self._claims = claims
-        self._run = run
-        self._lengths: dict[Declaration, int | None] = {}
-        self._cases: dict[Declaration, tuple[tuple[_Figure, ...], frozenset[str]]] = {}
+        self._shared = Shared(claims, run)
+        self._groups: dict[Declaration, _Cases] = {}
 
     def of(self, declaration: Declaration) -> tuple[Exposure, ...]:
         """Each usage that makes sense for the set, by check, use, width and attacker."""
-        numbers = _numbers(declaration)
-        widths = self._widths(declaration, numbers)
+        cases = self._cases(declaration)
+        widths = cases.widths(declaration)
+        declared = _declared(declaration)
         return tuple(
-            Exposure(
-                check,
-                use,
-                width,
-                figure.bits,
-                figure.bound,
-                figure.route,
-                figure.attacker,
-                declared=_is_declared(declaration, check, use, width),
-            )
+            exposure
             for check, use in _usages(declaration)
             for width in widths
-            for figure in self._case(numbers, check, use, width)[0]
+            for exposure in cases.exposures(check, use, width, (check, use, width) in declared)
         )
 
     def consulted(self, declaration: Declaration) -> frozenset[str]:
         """Ids of the claims that the exposure of a set was drawn from."""
-        numbers = _numbers(declaration)
-        cases = [
-            self._case(numbers, check, use, width)[1]
-            for check, use in _usages(declaration)
-            for width in self._widths(declaration, numbers)
-        ]
-        return frozenset().union(*cases)
+        cases = self._cases(declaration)
+        return frozenset().union(
+            *(
+                cases.case(check, use, width)[1]
+                for check, use in _usages(declaration)
+                for width in cases.widths(declaration)
+            )
+        )
 
-    def _widths(self, declaration: Declaration, numbers: Declaration) -> tuple[int, ...]:
+    def _cases(self, declaration: Declaration) -> "_Cases":
+        numbers = _numbers(declaration)
+        if numbers not in self._groups:
+            self._groups[numbers] = _Cases(numbers, self._shared)
+        return self._groups[numbers]
+
+
+class _Cases:
+    """The usages of the same numbers that were worked out so far."""
+
+    def __init__(self, numbers: Declaration, shared: Shared) -> None:
+        self._numbers = numbers
+        self._shared = shared
+        found = self._given(numbers).peek(generator.order_length)
+        self._length = None if isinstance(found, Absent) else found
+        self._worked: dict[tuple[str, int], tuple[tuple[_Figure, ...], frozenset[str]]] = {}
+        self._exposures: dict[tuple[str, str, int, bool], tuple[Exposure, ...]] = {}
+
+    def _given(self, declaration: Declaration) -> Given:
+        shared = self._shared
+        return Given(declaration, shared.claims, shared.run, shared)
+
+    def widths(self, declaration: Declaration) -> tuple[int, ...]:
         """The declared widths, and those to recommend: twice the required strength, twice the next
         one that the tables list, and the length of ord(g), which no recommendation exceeds."""
-        if numbers not in self._lengths:
-            given = Given(numbers, self._claims, self._run)
-            found = given.peek(generator.order_length)
-            self._lengths[numbers] = None if isinstance(found, Absent) else found
-        length = self._lengths[numbers]
-        required = declaration.required_bits
+        length, required = self._length, declaration.required_bits
         above = [bits for _, bits in STRENGTHS if bits > required][:1]
         recommended = [2 * bits for bits in (required, *above)]
         if length is not None:
@@ -119,22 +127,26 @@ class Exposures:
         declared = [party.exponent_bits for party in declaration.parties if party.exponent_bits]
         return tuple(sorted({width for width in (*declared, *recommended) if width > 0}))
 
-    def _case(
-        self, numbers: Declaration, check: str, use: str, width: int
-    ) -> tuple[tuple[_Figure, ...], frozenset[str]]:
+    def exposures(self, check: str, use: str, width: int, declared: bool) -> tuple[Exposure, ...]:
+        """The rows of one usage."""
+        key = check, use, width, declared
+        if key not in self._exposures:
+            self._exposures[key] = tuple(
+                Exposure(check, use, width, f.bits, f.bound, f.route, f.attacker, declared)
+                for f in self.case(check, use, width)[0]
+            )
+        return self._exposures[key]
+
+    def case(self, check: str, use: str, width: int) -> tuple[tuple[_Figure, ...], frozenset[str]]:
+        """The figures of one usage, and the ids of the claims that were looked at."""
         closed = use == "single" or check in INSIDE
-        party = Party(
-            EVERYBODY,
-            width,
-            "single" if closed else "static",
-            CHECKS["membership" if closed else check],
-        )
-        assumed = replace(numbers, parties=(party,))
-        if assumed not in self._cases:
-            given = Given(assumed, self._claims, self._run)
+        key = "membership" if closed else check, width
+        if key not in self._worked:
+            party = Party(EVERYBODY, width, "single" if closed else "static", CHECKS[key[0]])
+            given = self._given(replace(self._numbers, parties=(party,)))
             figures = tuple(_figures(given))
-            self._cases[assumed] = figures, frozenset(given.consulted)
-        return self._cases[assumed]
+            self._worked[key] = figures, frozenset(given.consulted)
+        return self._worked[key]
 
 
 def _numbers(declaration: Declaration) -> Declaration:
@@ -166,13 +178,13 @@ def _usages(declaration: Declaration) -> Iterator[tuple[str, str]]:
             yield check, use
 
 
-def _is_declared(declaration: Declaration, check: str, use: str, width: int) -> bool:
-    return any(
-        party.exponent_use == use
-        and party.exponent_bits == width
-        and check == (_check(party) if declaration.purpose != "signature" else "none")
+def _declared(declaration: Declaration) -> set[tuple[str | None, str | None, int | None]]:
+    """The usages that parties of the set declare."""
+    signing = declaration.purpose == "signature"
+    return {
+        ("none" if signing else _check(party), party.exponent_use, party.exponent_bits)
         for party in declaration.parties
-    )
+    }
 
 
 def _check(party: Party) -> str | None:

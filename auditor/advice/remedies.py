@@ -7,7 +7,7 @@ known of the same modulus is taken from the claims of the set, what is known of 
 from the registry that prints it.
 """
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cache
 from itertools import product
@@ -24,14 +24,13 @@ from auditor.claims.origin_formula import Formula
 from auditor.claims.prime import Prime
 from auditor.declaration import Declaration, Place
 from auditor.encoding import plain
-from auditor.facts import Established, establish, subgroup, vocabulary
+from auditor.facts import Established, establish, subgroup
 from auditor.facts import parts as group_parts
 from auditor.facts.base import Absent
-from auditor.facts.given import Given
+from auditor.facts.given import Given, Shared
 from auditor.intake.standard_groups import StandardGroup, standard_groups
 from auditor.rulebooks.findings import Finding
-from auditor.rulebooks.judging import Judgement, Position, judge
-from auditor.rulebooks.rulebook import Rulebook
+from auditor.rulebooks.judging import Judgement, Judging, Position
 from auditor.run_values import RunValues
 
 MOST_CHANGES = 3
@@ -70,13 +69,24 @@ class _Effect:
 
 
 class Remedies:
-    """Chooses remedies for the findings of sets, from claims, run values and rulebooks."""
+    """Chooses remedies for the findings of sets, from claims, run values and rulebooks.
 
-    def __init__(self, claims: Claims, run: RunValues, books: Sequence[Rulebook]) -> None:
+    Sets that differ in their use alone have their claims in common: ``known`` says which claims
+    the sets were judged by.
+    """
+
+    def __init__(
+        self, claims: Claims, run: RunValues, judging: Judging, known: Iterable[Established]
+    ) -> None:
         self._claims = claims
         self._run = run
-        self._books = books
-        self._moved: dict[Declaration, _Effect] = {}
+        self._judging = judging
+        self._consulted: dict[tuple[object, ...], set[str]] = {}
+        for item in known:
+            ids = self._consulted.setdefault(item.declaration.numbers, set())
+            ids |= item.consulted
+        self._groups: dict[tuple[object, ...], _SameNumbers] = {}
+        self._moved: dict[str, _Bench] = {}
         self._found: dict[Declaration, Mapping[str, Remedy]] = {}
 
     def of(self, known: Established, judgement: Judgement) -> Mapping[str, Remedy]:
@@ -91,27 +101,68 @@ class Remedies:
             }
         return self._found[same]
 
-    def effect(self, draft: Draft, support: Sequence[Claim]) -> _Effect:
-        """What the books say of a draft, given the claims that support the set as it is."""
-        declaration = _nameless(draft.declaration)
-        if draft.group is None:
-            return self._judged(declaration, Claims([*support, *_orders(draft, support)]))
-        if declaration not in self._moved:
-            self._moved[declaration] = self._judged(declaration, registry_claims(draft.group.name))
-        return self._moved[declaration]
+    def group(self, declaration: Declaration) -> "_SameNumbers":
+        """What sets with these numbers have in common."""
+        numbers = declaration.numbers
+        if numbers not in self._groups:
+            support = self._claims.support(sorted(self._consulted[numbers]))
+            self._groups[numbers] = _SameNumbers(support, self._run, self._judging)
+        return self._groups[numbers]
 
-    def support(self, known: Established) -> list[Claim]:
-        """The claims that a set was judged by."""
-        return self._claims.support(sorted(known.consulted))
+    def moved(self, group: StandardGroup) -> "_Bench":
+        """Where drafts that move to a standard group are judged."""
+        if group.name not in self._moved:
+            claims = registry_claims(group.name)
+            self._moved[group.name] = _Bench(claims, self._run, self._judging)
+        return self._moved[group.name]
 
-    def given(self, declaration: Declaration, claims: Claims) -> Given:
-        """The declaration with these claims."""
-        return Given(declaration, claims, self._run)
 
-    def _judged(self, declaration: Declaration, claims: Claims) -> _Effect:
-        known = establish(declaration, claims, self._run)
-        judgement = judge(self._books, known.facts, known.absent, vocabulary())
-        return _Effect(judgement.outcomes, _majors(judgement), judgement.position)
+class _Bench:
+    """Judges drafts under the same claims, equal ones once."""
+
+    def __init__(self, claims: Claims, run: RunValues, judging: Judging) -> None:
+        self.shared = Shared(claims, run)
+        self._judging = judging
+        self._judged: dict[Declaration, _Effect] = {}
+
+    def effect(self, declaration: Declaration) -> _Effect:
+        """What the books say of the declaration."""
+        if declaration not in self._judged:
+            shared = self.shared
+            known = establish(declaration, shared.claims, shared.run, shared)
+            judgement = self._judging.judge(known.facts, known.absent)
+            effect = _Effect(judgement.outcomes, _majors(judgement), judgement.position)
+            self._judged[declaration] = effect
+        return self._judged[declaration]
+
+
+class _SameNumbers:
+    """What is known of sets with the same numbers, and the benches for drafts of them: one for
+    each order that a draft takes for known."""
+
+    def __init__(self, support: Sequence[Claim], run: RunValues, judging: Judging) -> None:
+        self._support = support
+        self._run = run
+        self._judging = judging
+        self._benches: dict[tuple[str, ...], _Bench] = {}
+
+    def given(self, declaration: Declaration) -> Given:
+        """The declaration with what is known."""
+        shared = self._bench(()).shared
+        return Given(declaration, shared.claims, shared.run, shared)
+
+    def effect(self, draft: Draft) -> _Effect:
+        """What the books say of a draft that stays with the modulus."""
+        return self._bench(tuple(_orders(draft, self._support))).effect(
+            _nameless(draft.declaration)
+        )
+
+    def _bench(self, orders: tuple[Claim, ...]) -> _Bench:
+        ids = tuple(claim.id for claim in orders)
+        if ids not in self._benches:
+            claims = Claims([*self._support, *orders])
+            self._benches[ids] = _Bench(claims, self._run, self._judging)
+        return self._benches[ids]
 
 
 def _nameless(declaration: Declaration) -> Declaration:
@@ -128,11 +179,11 @@ class _Here:
 
     def __init__(self, remedies: Remedies, known: Established) -> None:
         self._remedies = remedies
+        self._group = remedies.group(known.declaration)
         self._document = known.declaration.document()
-        self._support = remedies.support(known)
-        start = _start(remedies.given(known.declaration, Claims(self._support)))
-        self._drafts = _drafts(start)
+        self._drafts = _drafts(_start(known.declaration, self._group))
         self._judged: list[tuple[Draft, _Effect]] = []
+        self._written: dict[Declaration, Remedy] = {}
 
     def remedy(self, finding: Finding, majors: frozenset[str], position: Position) -> Remedy:
         """The first draft that removes the finding; otherwise the rule's own words."""
@@ -140,22 +191,29 @@ class _Here:
             for draft, effect in self._effects():
                 met = effect.outcomes.get(finding.rule) in HELD
                 if met and effect.majors <= majors - {finding.rule}:
-                    return self._written(draft, effect.position, position)
+                    return self._remedy(draft, effect.position, position)
         return Remedy(finding.remedy)
 
     def _effects(self) -> Iterator[tuple[Draft, _Effect]]:
         yield from self._judged
         for draft in self._drafts:
-            item = draft, self._remedies.effect(draft, self._support)
+            item = draft, self._effect(draft)
             self._judged.append(item)
             yield item
 
-    def _written(self, draft: Draft, after: Position, before: Position) -> Remedy:
-        texts = draft.texts
-        if after != before:
-            texts = (*texts, f"With this alone the position becomes '{after}'.")
-        changed = _patch(self._document, draft)
-        return Remedy(" ".join(texts), draft.breaks, MappingProxyType(changed))
+    def _effect(self, draft: Draft) -> _Effect:
+        if draft.group is None:
+            return self._group.effect(draft)
+        return self._remedies.moved(draft.group).effect(_nameless(draft.declaration))
+
+    def _remedy(self, draft: Draft, after: Position, before: Position) -> Remedy:
+        if draft.declaration not in self._written:
+            texts = draft.texts
+            if after != before:
+                texts = (*texts, f"With this alone the position becomes '{after}'.")
+            changed = MappingProxyType(_patch(self._document, draft))
+            self._written[draft.declaration] = Remedy(" ".join(texts), draft.breaks, changed)
+        return self._written[draft.declaration]
 
 
 def _orders(draft: Draft, support: Sequence[Claim]) -> Iterator[Claim]:
@@ -170,15 +228,16 @@ def _orders(draft: Draft, support: Sequence[Claim]) -> Iterator[Claim]:
         yield Order(n, g, ((q, 1),), 1, (primes[0].id,))
 
 
-def _start(given: Given) -> Draft:
+def _start(declaration: Declaration, group: _SameNumbers) -> Draft:
     """The declaration as it is, with what is known of its group."""
+    given = group.given(declaration)
     order = given.peek(group_parts.generator_order_value)
     factors = given.peek(group_parts.complete_generator_order)
     replacement = given.peek(subgroup.prime_generator)
     is_prime = not isinstance(factors, Absent) and [power for _, power in factors] == [1]
     value = None if isinstance(order, Absent) else order
     return Draft(
-        given.declaration,
+        declaration,
         order=value if is_prime else None,
         length=None if value is None else value.bit_length(),
         replacement=None if isinstance(replacement, Absent) else replacement,
@@ -192,17 +251,17 @@ def _drafts(start: Draft) -> Iterator[Draft]:
     change is made: first the numbers, then how they are used, last the widths, which depend on
     both and follow every move to another group.
     """
-    found: dict[Declaration, tuple[int, int, Draft]] = {}
-    for combination in product(*_families(start)):
-        chosen = [(rank, change) for rank, change in combination if change is not None]
+    combinations = [
+        [(rank, change) for rank, change in combination if change is not None]
+        for combination in product(*_families(start))
+    ]
+    fit = [chosen for chosen in combinations if 0 < len(chosen) <= MOST_CHANGES]
+    seen: set[Declaration] = set()
+    for chosen in sorted(fit, key=lambda chosen: (max(rank for rank, _ in chosen), len(chosen))):
         draft = _applied(start, [change for _, change in chosen])
-        if draft is None or not 0 < len(chosen) <= MOST_CHANGES:
-            continue
-        weight = max(rank for rank, _ in chosen), len(chosen)
-        if draft.declaration not in found or weight < found[draft.declaration][:2]:
-            found[draft.declaration] = *weight, draft
-    ordered = sorted(found.values(), key=lambda item: item[:2])
-    yield from (draft for _, _, draft in ordered)
+        if draft is not None and draft.declaration not in seen:
+            seen.add(draft.declaration)
+            yield draft
 
 
 Ranked = tuple[int, Change | None]

@@ -2,7 +2,7 @@
 
 from auditor.declaration import Party
 from auditor.facts import parts, usage
-from auditor.facts.given import Given
+from auditor.facts.given import Given, narrow
 from auditor.facts.registry import fact
 from auditor.routes.base import floor_bits
 from auditor.routes.confinement import Check
@@ -22,6 +22,7 @@ def group_exponent(given: Given) -> Factors:
     return Factors(group.factors, group.rest)
 
 
+@narrow
 def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
     """The parties that use an exponent again on values which no check keeps inside <g>.
 

@@ -25,6 +25,17 @@ Value = TypeVar("Value")
 Default = TypeVar("Default")
 
 Part = Callable[["Given"], object]
+Key = str | Part
+"""What an outcome depends on: a key of the declaration, or the outcome of a narrow part."""
+
+_narrow: set[Part] = set()
+
+
+def narrow(part: Callable[["Given"], Value]) -> Callable[["Given"], Value]:
+    """Mark a part that reads much and says little: what builds on it depends on its outcome alone,
+    not on all that it read. Its values are hashable."""
+    _narrow.add(part)
+    return part
 
 
 class Missing(Exception):
@@ -54,10 +65,10 @@ class Trace:
 
 @dataclass(slots=True)
 class Looked:
-    """What was looked at on the way to a value, rested on or not: keys of the declaration, and the
-    ids of claims. Two declarations that agree in these keys have the same value."""
+    """What was looked at on the way to a value, rested on or not: keys, and the ids of claims. Two
+    declarations that agree in these keys have the same value."""
 
-    keys: set[str] = field(default_factory=set)
+    keys: set[Key] = field(default_factory=set)
     consulted: set[str] = field(default_factory=set)
 
     def merge(self, other: "Looked") -> None:
@@ -76,6 +87,19 @@ class Seen:
     looked: Looked
     fact: object = None
 
+    @property
+    def content(self) -> tuple[object, ...]:
+        """All that makes a difference to whatever builds on it."""
+        trace = self.trace
+        return (
+            self.value,
+            frozenset(trace.claims),
+            frozenset(trace.rests_on),
+            frozenset(trace.questions),
+            trace.loose,
+            frozenset(self.looked.consulted),
+        )
+
 
 class Shared:
     """Outcomes of parts under the same claims and run values, each computed once for all
@@ -88,8 +112,8 @@ class Shared:
         self.claims = claims
         self.run = run
         self._size = len(claims)
-        self._numbers: dict[str, dict[object, int]] = {}
-        self._seen: dict[Part, dict[tuple[str, ...], dict[tuple[int, ...], Seen]]] = {}
+        self._numbers: dict[Key, dict[object, int]] = {}
+        self._seen: dict[Part, dict[tuple[Key, ...], dict[tuple[int, ...], Seen]]] = {}
 
     def refresh(self) -> None:
         """Forget what was seen if claims have come since."""
@@ -97,12 +121,12 @@ class Shared:
             self._size = len(self.claims)
             self._seen.clear()
 
-    def number(self, key: str, value: object) -> int:
+    def number(self, key: Key, value: object) -> int:
         """A small number that stands for this value of the key."""
         numbers = self._numbers.setdefault(key, {})
         return numbers.setdefault(value, len(numbers))
 
-    def recall(self, part: Part, number_of: Callable[[str], int]) -> Seen | None:
+    def recall(self, part: Part, number_of: Callable[[Key], int]) -> Seen | None:
         """The outcome of the part for a declaration whose keys have these numbers."""
         for keys, outcomes in self._seen.get(part, {}).items():
             seen = outcomes.get(tuple(map(number_of, keys)))
@@ -110,11 +134,15 @@ class Shared:
                 return seen
         return None
 
-    def keep(self, part: Part, seen: Seen, number_of: Callable[[str], int]) -> None:
+    def keep(self, part: Part, seen: Seen, number_of: Callable[[Key], int]) -> None:
         """Keep an outcome for other declarations."""
-        keys = tuple(sorted(seen.looked.keys))
+        keys = tuple(sorted(seen.looked.keys, key=_spelling))
         outcomes = self._seen.setdefault(part, {}).setdefault(keys, {})
         outcomes[tuple(map(number_of, keys))] = seen
+
+
+def _spelling(key: Key) -> str:
+    return key if isinstance(key, str) else f"{key.__module__}.{key.__qualname__}"
 
 
 class Given:
@@ -134,7 +162,7 @@ class Given:
         self._shared.refresh()
         self._claims = claims
         self._declaration = declaration
-        self._numbers: dict[str, int] = {}
+        self._numbers: dict[Key, int] = {}
         self._known: dict[Part, Seen] = {}
         self._traces: list[Trace] = [Trace()]
         self._looked: list[Looked] = [Looked()]
@@ -153,14 +181,24 @@ class Given:
     def see(self, part: Callable[["Given"], Value]) -> Value:
         """The value of ``part``, computed once; what it rests on, the caller rests on too."""
         seen = self.outcome(part)
-        self._looked[-1].merge(seen.looked)
         if isinstance(seen.value, Absent):
             raise Missing(seen.value)
         self._traces[-1].merge(seen.trace)
         return seen.value  # type: ignore[return-value]
 
     def outcome(self, part: Part) -> Seen:
-        """The outcome of ``part``: its value, or its absence."""
+        """The outcome of ``part``: its value, or its absence. The caller has looked at whatever was
+        looked at on the way."""
+        seen = self._seen(part)
+        looked = self._looked[-1]
+        if part in _narrow:
+            looked.keys.add(part)
+            looked.consulted |= seen.looked.consulted
+        else:
+            looked.merge(seen.looked)
+        return seen
+
+    def _seen(self, part: Part) -> Seen:
         seen = self._known.get(part) or self._shared.recall(part, self._number)
         if seen is None:
             seen = self._work_out(part)
@@ -180,10 +218,15 @@ class Given:
             trace, looked = self._traces.pop(), self._looked.pop()
         return Seen(value, trace, looked)
 
-    def _number(self, key: str) -> int:
-        if key not in self._numbers:
-            self._numbers[key] = self._shared.number(key, getattr(self._declaration, key))
-        return self._numbers[key]
+    def _number(self, key: Key) -> int:
+        number = self._numbers.get(key)
+        if number is None:
+            value = self._read(key) if isinstance(key, str) else self._seen(key).content
+            number = self._numbers[key] = self._shared.number(key, value)
+        return number
+
+    def _read(self, key: str) -> object:
+        return getattr(self._declaration, key)
 
     def see_or(self, part: Callable[["Given"], Value], default: Default) -> Value | Default:
         """The value of ``part`` or, where it is absent, ``default``.
@@ -200,13 +243,11 @@ class Given:
     def peek(self, part: Callable[["Given"], Value]) -> Value | Absent:
         """The value of ``part`` or its absence, without resting on it; :meth:`see` it if it
         decides."""
-        seen = self.outcome(part)
-        self._looked[-1].merge(seen.looked)
-        return seen.value  # type: ignore[return-value]
+        return self.outcome(part).value  # type: ignore[return-value]
 
     def trace(self, part: Part) -> Trace:
-        """What ``part``, already seen, rests on."""
-        return self._known[part].trace
+        """What ``part`` rests on, without resting on it."""
+        return self.outcome(part).trace
 
     def standing(self, trace: Trace) -> Standing:
         """The weakest standing of what was looked at."""

@@ -4,7 +4,7 @@ Facts over parties take the worst party, as the contract asks.
 """
 
 from auditor.declaration import EVERYBODY, Party
-from auditor.facts.given import Given
+from auditor.facts.given import Given, narrow
 from auditor.facts.registry import fact
 
 PURPOSES = ("key-agreement", "encryption", "signature")
@@ -29,11 +29,13 @@ def parties(given: Given) -> tuple[Party, ...]:
     return given.declaration.parties or (Party(EVERYBODY),)
 
 
+@narrow
 @fact("usage.purpose", "text", "what the group is for, as declared", PURPOSES)
 def purpose(given: Given) -> str:
     return str(given.word("purpose"))
 
 
+@narrow
 @fact("usage.scheme", "text", "the scheme, as declared", SCHEMES)
 def scheme(given: Given) -> str:
     if given.declaration.purpose == "key-agreement":
@@ -42,16 +44,19 @@ def scheme(given: Given) -> str:
     return str(given.word("scheme"))
 
 
+@narrow
 @fact("usage.protocol", "text", "the protocol, as declared", PROTOCOLS)
 def protocol(given: Given) -> str:
     return str(given.word("protocol"))
 
 
+@narrow
 @fact("usage.message_length", "int", "bits of a raw message, as declared")
 def message_length(given: Given) -> int:
     return int(given.word("message_bits"))
 
 
+@narrow
 @fact("usage.protect_until", "int", "year until which protection is needed, as declared")
 def protect_until(given: Given) -> int:
     return int(given.word("protect_until"))
@@ -73,11 +78,13 @@ def every_party_checks(given: Given, check: str) -> bool:
     return not without
 
 
+@narrow
 @fact("usage.peer_range", "bool", "every party checks that a received value is in [2, n-2]")
 def peer_range(given: Given) -> bool:
     return every_party_checks(given, "range")
 
 
+@narrow
 @fact(
     "usage.peer_membership",
     "bool",
@@ -87,6 +94,7 @@ def peer_membership(given: Given) -> bool:
     return every_party_checks(given, "membership")
 
 
+@narrow
 @fact(
     "usage.peer_cofactor",
     "bool",
@@ -96,6 +104,7 @@ def peer_cofactor(given: Given) -> bool:
     return every_party_checks(given, "cofactor")
 
 
+@narrow
 @fact("usage.exponent_reused", "bool", "some party uses an exponent more than once")
 def exponent_reused(given: Given) -> bool:
     silent = [party for party in given.see(parties) if party.exponent_use is None]
@@ -107,6 +116,7 @@ def exponent_reused(given: Given) -> bool:
     return bool(reusing)
 
 
+@narrow
 @fact("usage.exponent_width", "int", "bits of the narrowest declared exponent")
 def exponent_width(given: Given) -> int:
     widths = [party for party in given.see(parties) if party.exponent_bits is not None]

@@ -16,6 +16,7 @@ from auditor.claims.ledger import subjects
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
 from auditor.facts.base import Absent, Fact
+from auditor.facts.given import Shared
 from auditor.inquiry.answers import Answers
 from auditor.inquiry.question_round import Progress, answer_round
 from auditor.questions import CHEAP, Question
@@ -54,24 +55,13 @@ def settle(
     distinct = list(dict.fromkeys(replace(item, name="") for item in declarations))
     first_of: dict[tuple[object, ...], Declaration] = {}
     for item in distinct:
-        first_of.setdefault(_numbers(item), item)
+        first_of.setdefault(item.numbers, item)
     firsts = list(first_of.values())
     inquiry = _Inquiry(answers, run, in_use, progress, recall)
     inquiry.pursue(firsts)
     if len(firsts) < len(distinct):
         inquiry.pursue(distinct)
     return inquiry.refused
-
-
-def _numbers(item: Declaration) -> tuple[object, ...]:
-    return (
-        item.modulus,
-        item.generator,
-        item.subgroup_order,
-        item.known_factors,
-        item.provenance,
-        item.public_values,
-    )
 
 
 class _Inquiry:
@@ -92,6 +82,7 @@ class _Inquiry:
         self._progress = progress
         self._recall = recall
         self._asked: set[Question] = set()
+        self._shared = Shared(answers.claims, run)
 
     def pursue(self, declarations: Sequence[Declaration]) -> None:
         """Rounds of questions about these sets, the cheap ones exhausted before a deep one is
@@ -124,7 +115,7 @@ class _Inquiry:
 
     def _open(self, declaration: Declaration) -> tuple[Question, ...]:
         """What is worth asking about a set: whatever is cheap and, with effort, what is in use."""
-        known = establish(declaration, self._answers.claims, self._run)
+        known = establish(declaration, self._answers.claims, self._run, self._shared)
         everything = open_questions(known, [*known.facts, *known.absent])
         cheap = [question for question in everything if question.asks in CHEAP]
         if self._run.effort == "quick" or len(cheap) == len(everything):

@@ -4,9 +4,9 @@ A pure function of what was read, the claims, the run values and the rulebooks, 
 ``report.schema.json`` describes. The verifier builds it again and compares.
 """
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import asdict, dataclass
-from typing import Any
+from typing import Any, TypeVar
 
 from auditor import __version__
 from auditor.advice.exposure import Exposures
@@ -16,13 +16,14 @@ from auditor.declaration import Declaration
 from auditor.encoding import plain
 from auditor.facts import Established, establish, vocabulary
 from auditor.facts.base import Absent, Fact
+from auditor.facts.given import Shared
 from auditor.inquiry.settle import open_questions
 from auditor.questions import Asks, Question
 from auditor.report.overview import overview
 from auditor.routes.base import Work, floor_bits
 from auditor.routes.standard_tables import modulus_strength
 from auditor.rulebooks.findings import Finding
-from auditor.rulebooks.judging import Judgement, facts_in_use, judge
+from auditor.rulebooks.judging import Judgement, Judging
 from auditor.rulebooks.rulebook import Criterion, Rule, Rulebook
 from auditor.run_values import RunValues
 from auditor.search.plan import LEVELS
@@ -40,6 +41,23 @@ CAUTIONS = (
     "same; they are no forecast of time or money.",
     "Every group here falls to a large quantum computer, whatever its size.",
 )
+
+
+Thing = TypeVar("Thing")
+
+
+class Once:
+    """Writes each thing once, so that sets which share it share its part of the record too."""
+
+    def __init__(self) -> None:
+        self._written: dict[int, tuple[object, dict[str, Any]]] = {}
+
+    def __call__(self, thing: Thing, write: Callable[[Thing], dict[str, Any]]) -> dict[str, Any]:
+        """What ``write`` makes of the thing; it is kept beside it, so that no other is taken for
+        it."""
+        if id(thing) not in self._written:
+            self._written[id(thing)] = thing, write(thing)
+        return self._written[id(thing)][1]
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,10 +79,12 @@ def build(
     fail_on: str,
 ) -> dict[str, Any]:
     """The record; equal arguments, equal record."""
-    known = [establish(declaration, claims, run) for declaration in reading.declarations]
+    shared, judging = Shared(claims, run), Judging(books, vocabulary())
+    known = [establish(item, claims, run, shared) for item in reading.declarations]
     places = _places(reading.declarations)
-    exposures, remedies = Exposures(claims, run), Remedies(claims, run, books)
-    sets = [_parameter_set(item, books, places, exposures, remedies) for item in known]
+    exposures, remedies = Exposures(claims, run), Remedies(claims, run, judging, known)
+    once = Once()
+    sets = [_parameter_set(item, judging, places, exposures, remedies, once) for item in known]
     consulted = {claim_id for item in known for claim_id in item.consulted}
     consulted |= {id_ for item in reading.declarations for id_ in exposures.consulted(item)}
     return {
@@ -86,13 +106,11 @@ def build(
     }
 
 
-def in_use(
-    books: Sequence[Rulebook], facts: Mapping[str, Fact], absent: Mapping[str, Absent]
-) -> list[str]:
+def in_use(judging: Judging, facts: Mapping[str, Fact], absent: Mapping[str, Absent]) -> list[str]:
     """The facts whose open questions are worth search: those that an outcome waits for, and the
     work factors, which every report shows."""
     strengths = [name for name in (*facts, *absent) if name.startswith("strength.")]
-    return sorted({*facts_in_use(books, facts, absent, vocabulary()), *strengths})
+    return sorted({*judging.facts_in_use(facts, absent), *strengths})
 
 
 def _run(run: RunValues, fail_on: str) -> dict[str, Any]:
@@ -121,13 +139,14 @@ def _place(declaration: Declaration) -> dict[str, Any]:
 
 def _parameter_set(
     known: Established,
-    books: Sequence[Rulebook],
+    judging: Judging,
     places: Mapping[str, list[dict[str, Any]]],
     exposures: Exposures,
     remedies: Remedies,
+    once: Once,
 ) -> dict[str, Any]:
     declaration = known.declaration
-    judgement = judge(books, known.facts, known.absent, vocabulary())
+    judgement = judging.judge(known.facts, known.absent)
     remedy = remedies.of(known, judgement)
     digest = declaration.digest()
     return {
@@ -137,10 +156,10 @@ def _parameter_set(
         "source": _place(declaration),
         "places": places[digest],
         "declaration": declaration.document(),
-        "facts": {name: _fact(fact) for name, fact in known.facts.items()},
-        "absent": {name: _absence(absent) for name, absent in known.absent.items()},
+        "facts": {name: once(fact, _fact) for name, fact in known.facts.items()},
+        "absent": {name: once(item, _absence) for name, item in known.absent.items()},
         "routes": [_route(work, known) for work in known.routes],
-        "exposure": [asdict(row) for row in exposures.of(declaration)],
+        "exposure": [once(row, asdict) for row in exposures.of(declaration)],
         "properties": [
             {"name": item.name, "statement": item.statement, "source": item.source}
             for item in known.properties
@@ -152,8 +171,11 @@ def _parameter_set(
             {"name": left.name, "why": left.why, "missing": sorted(left.missing)}
             for left in judgement.books_left_out
         ],
-        "findings": [_finding(finding, remedy[finding.rule]) for finding in judgement.findings],
-        "questions": _questions(known, judgement, books),
+        "findings": [
+            {**once(finding, _finding), "remedy": once(remedy[finding.rule], Remedy.record)}
+            for finding in judgement.findings
+        ],
+        "questions": _questions(known, judgement, judging),
     }
 
 
@@ -216,7 +238,7 @@ def _criterion(criterion: Criterion) -> dict[str, Any]:
     }
 
 
-def _finding(finding: Finding, remedy: Remedy) -> dict[str, Any]:
+def _finding(finding: Finding) -> dict[str, Any]:
     return {
         "rule": finding.rule,
         "title": finding.title,
@@ -227,7 +249,6 @@ def _finding(finding: Finding, remedy: Remedy) -> dict[str, Any]:
         "values": {name: plain(fact.value) for name, fact in finding.values.items()},
         "missing": sorted(finding.missing),
         "criterion": _criterion(finding.criterion),
-        "remedy": remedy.record(),
         "cautions": list(finding.cautions),
         "concession": None,
     }
@@ -263,10 +284,8 @@ def _rule(rule: Rule) -> dict[str, Any]:
     }
 
 
-def _questions(
-    known: Established, judgement: Judgement, books: Sequence[Rulebook]
-) -> list[dict[str, Any]]:
-    names = in_use(books, known.facts, known.absent)
+def _questions(known: Established, judgement: Judgement, judging: Judging) -> list[dict[str, Any]]:
+    names = in_use(judging, known.facts, known.absent)
     asked = open_questions(known, names)
     waiting = {q for finding in judgement.findings for q in finding.questions}
     records = []

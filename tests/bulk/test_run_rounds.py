@@ -14,7 +14,6 @@ import pytest
 
 import auditor.inquiry.settle
 from auditor.claims.base import Claim, Draw
-from auditor.claims.collection import Claims
 from auditor.claims.prime import Prime
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
@@ -182,9 +181,9 @@ def test_a_set_is_looked_at_again_only_when_a_claim_concerns_it(
     """Sets with the same numbers are looked at once each, but for the first; equal ones share."""
     looks: Counter[int] = Counter()
 
-    def counting(item: Declaration, claims: Claims, run: RunValues) -> Established:
+    def counting(item: Declaration, *known: Any) -> Established:
         looks[item.parties[0].exponent_bits or 0] += 1
-        return establish(item, claims, run)
+        return establish(item, *known)
 
     monkeypatch.setattr(auditor.inquiry.settle, "establish", counting)
     p = random_prime(random.Random(9), 128)
