@@ -19,7 +19,7 @@ FILES = {
     "ssh/sshd_config": (
         "# Remote maintenance of the lock gates.\n"
         "Port 22\n"
-        "KexAlgorithms curve25519-sha256,diffie-hellman-group16-sha512,"
+        "KexAlgorithms curve25519-sha256,diffie-hellman-group15-sha512,"
         "diffie-hellman-group14-sha256\n"
         "Ciphers aes256-gcm@openssh.com\n"
     ),
@@ -73,7 +73,7 @@ FILES = {
 """Path to text. Comments, prose, tables, elliptic curves and negotiated groups name no group."""
 
 NAMED = {
-    "ssh/sshd_config": ("modp4096", "modp2048"),
+    "ssh/sshd_config": ("modp3072", "modp2048"),
     "ssh/ssh_config": ("modp2048",),
     "tunnel/pilot.conf": ("modp3072",),
     "tunnel/gate.cfg": ("modp2048", "modp3072"),
