@@ -3,18 +3,27 @@
 OASIS, Static Analysis Results Interchange Format 2.1.0, errata 01. A nonconformity is a result of
 kind ``fail`` whose level follows the grade; what could not be decided is of kind ``open``, which
 is the specification's word for too little information (3.27.9). What conforms is left out: some
-services show every result as an alert, whatever its kind.
+services show every result as an alert, whatever its kind. An observation that is equal for several
+sets is one result, with the number of its occurrences and the other places as related ones:
+``locations`` may not hold what can be mended in each place by itself (3.27.12, from memory).
 """
 
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from hashlib import sha256
 from typing import Any
 from urllib.parse import quote
 
 from auditor.report.text import clipped
 from auditor.report.view import Record, View, view
-from auditor.report.words import CONFIDENCE_MEANING, outcome, plain_value
+from auditor.report.words import (
+    CONFIDENCE_MEANING,
+    POSITIONS,
+    outcome,
+    plain_value,
+    plural,
+    usage,
+)
 
 LEVELS: Mapping[str, str] = {"major": "error", "minor": "warning", "observation": "note"}
 SEVERITY: Mapping[str, str] = {"major": "8.0", "minor": "5.0", "observation": "2.0"}
@@ -23,6 +32,9 @@ SEVERITY: Mapping[str, str] = {"major": "8.0", "minor": "5.0", "observation": "2
 MOST_RESULTS = 25_000
 """What a widely used service accepts in one run; the notifications say how many are left out."""
 
+MOST_PLACES = 1_000
+"""What such a service accepts with one result; an observation of more sets is more results."""
+
 _DESCRIPTION = 1_024
 _SCHEMA = (
     "https://docs.oasis-open.org/sarif/sarif/v2.1.0/errata01/os/schemas/sarif-schema-2.1.0.json"
@@ -30,7 +42,8 @@ _SCHEMA = (
 
 
 def render(record: Record | View) -> str:
-    """A SARIF log with one run: a result for every finding of every set, in record order."""
+    """A SARIF log with one run: a result for every finding of every set, equal observations as one,
+    in record order."""
     shown = view(record).record
     rules = {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
     named = sorted(rules)
@@ -77,13 +90,34 @@ def _descriptor(rule: str, text: Record) -> dict[str, Any]:
     }
 
 
+_Found = tuple[Record, Record]
+"""A set and one of its findings."""
+
+
 def _results(shown: Record, index: Mapping[str, int]) -> Iterator[dict[str, Any]]:
+    """A result for each finding of each set in record order, equal observations in the place of
+    the first."""
+    groups: dict[object, list[_Found]] = {}
     for parameter_set in shown["parameter_sets"]:
         for finding in parameter_set["findings"]:
-            yield _result(parameter_set, finding, index)
+            groups.setdefault(_key(parameter_set, finding), []).append((parameter_set, finding))
+    for group in groups.values():
+        for start in range(0, len(group), MOST_PLACES):
+            yield _result(group[start : start + MOST_PLACES], index)
 
 
-def _result(parameter_set: Record, finding: Record, index: Mapping[str, int]) -> dict[str, Any]:
+def _key(parameter_set: Record, finding: Record) -> object:
+    """What is equal for the findings of one result: of an observation what it says, how the set is
+    used, and whether it is conceded; every other finding has a result of its own."""
+    if finding["grade"] != "observation":
+        return parameter_set["id"], finding["rule"]
+    said = finding["rule"], finding["outcome"], finding["statement"], *finding["cautions"]
+    conceded = json.dumps(finding["concession"], sort_keys=True)
+    return said, usage(parameter_set["declaration"]), conceded
+
+
+def _result(group: Sequence[_Found], index: Mapping[str, int]) -> dict[str, Any]:
+    parameter_set, finding = group[0]
     rule = finding["rule"]
     fails = finding["outcome"] == "nonconforming"
     print_of_place = sha256(f"{rule}\n{parameter_set['id']}".encode()).hexdigest()
@@ -91,7 +125,7 @@ def _result(parameter_set: Record, finding: Record, index: Mapping[str, int]) ->
         "ruleId": rule,
         "kind": "fail" if fails else "open",
         "level": LEVELS[finding["grade"]] if fails else "none",
-        "message": {"text": _message(_text(parameter_set, finding))},
+        "message": {"text": _message(_text(group))},
         "locations": [_location(parameter_set)],
         "partialFingerprints": {
             "primaryLocationLineHash": print_of_place[:32],
@@ -100,11 +134,14 @@ def _result(parameter_set: Record, finding: Record, index: Mapping[str, int]) ->
         "properties": {
             "grade": finding["grade"],
             "defect": finding["defect"],
-            "position": parameter_set["position"],
-            "values": {name: plain_value(value) for name, value in finding["values"].items()},
+            "position": min((other["position"] for other, _ in group), key=POSITIONS.index),
+            "values": _common_values(group),
             "missing": finding["missing"],
         },
     }
+    if len(group) > 1:
+        result["occurrenceCount"] = len(group)
+        result["relatedLocations"] = [_location(other) for other, _ in group[1:]]
     if rule in index:
         result["ruleIndex"] = index[rule]
     if concession := finding["concession"]:
@@ -112,12 +149,25 @@ def _result(parameter_set: Record, finding: Record, index: Mapping[str, int]) ->
     return result
 
 
-def _text(parameter_set: Record, finding: Record) -> str:
+def _common_values(group: Sequence[_Found]) -> dict[str, str]:
+    """The values that are the same for every set."""
+    return {
+        name: plain_value(value)
+        for name, value in group[0][1]["values"].items()
+        if all(finding["values"].get(name) == value for _, finding in group)
+    }
+
+
+def _text(group: Sequence[_Found]) -> str:
+    parameter_set, finding = group[0]
     words = outcome(finding["grade"], finding["outcome"])
-    parts = [f"{parameter_set['name']}, {words}: {finding['statement']}"]
+    others = f" and {plural(len(group) - 1, 'other set')}" if len(group) > 1 else ""
+    parts = [f"{parameter_set['name']}{others}, {words}: {finding['statement']}"]
     if finding["missing"] and finding["outcome"] == "undetermined":
         parts.append(f"Not established: {', '.join(finding['missing'])}.")
-    if finding["remedy"]:
+    if any(other["remedy"] != finding["remedy"] for _, other in group):
+        parts.append("Remedy: each set has its own, in the JSON report.")
+    elif finding["remedy"]:
         parts.append(f"Remedy: {finding['remedy']['text']}")
         parts += [f"It breaks: {item}" for item in finding["remedy"]["breaks"]]
     return " ".join([*parts, *finding["cautions"]])

@@ -130,6 +130,90 @@ def test_too_many_results_are_cut_and_counted(monkeypatch: pytest.MonkeyPatch) -
     assert any("results are left out" in note for note in notes)
 
 
+def observed(count: int) -> dict[str, Any]:
+    """A record with so many sets that differ in name, place and modulus alone."""
+    record = fixture("harbour")
+    first = next(
+        item
+        for item in record["parameter_sets"]
+        if "observation" in {finding["grade"] for finding in item["findings"]}
+    )
+    record["parameter_sets"] = [
+        first
+        | {
+            "id": f"primes#prime {line}",
+            "name": f"prime {line}",
+            "digest": f"{line:064x}",
+            "source": {"path": "primes", "line": line, "column": 1},
+        }
+        for line in range(1, count + 1)
+    ]
+    return record
+
+
+def test_an_observation_of_many_sets_is_one_result() -> None:
+    """With all its places; what weighs more has a result for each set."""
+    record = observed(30)
+    results = run_of(record)["results"]
+    (one,) = [result for result in results if result["properties"]["grade"] == "observation"]
+    places = [one["locations"][0], *one["relatedLocations"]]
+
+    assert [place["physicalLocation"]["region"]["startLine"] for place in places] == [*range(1, 31)]
+    assert one["occurrenceCount"] == 30
+    assert "and 29 other sets" in one["message"]["text"]
+    heavier = [f for f in record["parameter_sets"][0]["findings"] if f["grade"] != "observation"]
+    assert len(results) == 30 * len(heavier) + 1
+    assert not any("relatedLocations" in result for result in results if result is not one)
+
+
+@pytest.mark.parametrize("key", ["statement", "outcome", "concession", "purpose"])
+def test_observations_that_differ_stay_apart(key: str) -> None:
+    """In what they say, in the usage of their sets, or in what is conceded."""
+    record = observed(5)
+    last = record["parameter_sets"][4]
+    if key == "purpose":
+        last["declaration"] = last["declaration"] | {"purpose": "signature"}
+    else:
+        conceded = {"by": "us", "until": "2027-01-01", "reason": "old", "in_force": True}
+        other = {"statement": "Else.", "outcome": "undetermined", "concession": conceded}[key]
+        last["findings"] = [finding | {key: other} for finding in last["findings"]]
+    results = run_of(record)["results"]
+    found = [result for result in results if result["properties"]["grade"] == "observation"]
+
+    assert [result.get("occurrenceCount", 1) for result in found] == [4, 1]
+
+
+def test_a_remedy_or_value_of_one_set_is_not_said_of_all() -> None:
+    """What differs is left to the record."""
+    record = observed(5)
+    last = record["parameter_sets"][4]
+    last["findings"] = [
+        finding
+        | {
+            "remedy": {"text": "Mend this one.", "breaks": [], "patch": None},
+            "values": finding["values"] | {"modulus.length": 1},
+        }
+        for finding in last["findings"]
+    ]
+    results = run_of(record)["results"]
+    (one,) = [result for result in results if result["properties"]["grade"] == "observation"]
+
+    assert "Remedy: each set has its own" in one["message"]["text"]
+    assert "Mend this one" not in one["message"]["text"]
+    assert one["properties"]["values"].get("modulus.length") != "1"
+
+
+def test_more_places_than_a_service_takes_are_more_results(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """No place is left out."""
+    monkeypatch.setattr(sarif, "MOST_PLACES", 4)
+    results = run_of(observed(10))["results"]
+    found = [result for result in results if result["properties"]["grade"] == "observation"]
+
+    assert [result["occurrenceCount"] for result in found] == [4, 4, 2]
+
+
 @pytest.mark.parametrize("text", hostile_texts())
 def test_outside_text_stays_text(text: str) -> None:
     """Nothing hidden, no placeholder, no link; the text is in the messages and in the address."""
