@@ -3,7 +3,7 @@
 Colour is only added when asked for, around words that carry the meaning without it.
 """
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from textwrap import wrap
 
 from auditor.report.sheet_view import Sheet
@@ -24,21 +24,23 @@ def render(
 ) -> str:
     """The summary: ``height`` lines of ``width`` columns, more only for the worst set's own.
 
-    As many sets as fit are shown, the worst first, and the line below counts the others. Where
-    not all fit with two lines of reasons, each has one, without its place.
+    As many sets as fit are shown, the worst first, and the line below counts the others; sets that
+    come out alike share a row. Where not all fit with two lines of reasons, each has one, without
+    its place.
     """
     report = view(record)
     head, foot = list(_head(report, width)), list(_foot(report, width))
     room = height - len(head) - len(foot) - 1
     body: list[str] = []
     shown = 0
-    most = 2 if 3 * len(report.sheets) <= room else 1
-    for sheet in report.sheets:
-        lines = _sheet(sheet, width, most, colour)
+    rows = _alike(report.sheets)
+    most = 2 if 3 * len(rows) <= room else 1
+    for sheets in rows:
+        lines = _row(sheets, width, most, colour)
         if body and len(body) + len(lines) > room:
             break
         body += lines
-        shown += 1
+        shown += len(sheets)
     if left := len(report.sheets) - shown:
         body.append(f"{plural(left, 'more set')}, none of a worse position.")
     return "\n".join([*head, *body, *foot]) + "\n"
@@ -57,23 +59,38 @@ def _head(report: View, width: int) -> Iterator[str]:
         yield f"{'position':<{_LABEL}}{columns}  set"
 
 
-def _sheet(sheet: Sheet, width: int, most: int, colour: bool) -> list[str]:
+def _alike(sheets: Iterable[Sheet]) -> list[list[Sheet]]:
+    """The sheets by what a row would say of them, in order of the first."""
+    rows: dict[tuple[str, ...], list[Sheet]] = {}
+    for sheet in sheets:
+        rows.setdefault((sheet.position, *_figures(sheet), sheet.reason), []).append(sheet)
+    return list(rows.values())
+
+
+def _figures(sheet: Sheet) -> tuple[str, ...]:
     strength = sheet.strength
-    figures = [
+    return (
         str(strength.required),
         strength.tables_text,
         strength.passive.text,
         strength.peer.text,
         strength.designer.text,
-    ]
-    row = " ".join(f"{figure:>8}" for figure in figures) + "  "
-    more = len(sheet.places) - 1
-    places = sheet.places[0] + (f" and {plural(more, 'more place')}" if more else "")
-    reason = f"{places}: {sheet.reason}" if most > 1 else sheet.reason
+    )
+
+
+def _row(sheets: list[Sheet], width: int, most: int, colour: bool) -> list[str]:
+    first = sheets[0]
+    row = " ".join(f"{figure:>8}" for figure in _figures(first)) + "  "
+    more = sum(len(sheet.places) for sheet in sheets) - 1
+    places = first.places[0] + (f" and {plural(more, 'more place')}" if more else "")
+    reason = f"{places}: {first.reason}" if most > 1 else first.reason
+    others = f" and {len(sheets) - 1:,} more" if len(sheets) > 1 else ""
+    room = max(width - _LABEL - len(row), 8)
     return [
-        _styled(f"{sheet.position:<{_LABEL}}", sheet.position, colour)
+        _styled(f"{first.position:<{_LABEL}}", first.position, colour)
         + row
-        + clipped(sheet.name, max(width - _LABEL - len(row), 8)),
+        + clipped(first.name, max(room - len(others), 1))
+        + others,
         *_entry("", reason, width, most),
     ]
 

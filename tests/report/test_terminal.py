@@ -42,12 +42,25 @@ def test_all_sets_are_shown_where_there_is_room() -> None:
         assert item["name"][:10] in text
 
 
-def test_many_sets_still_fit() -> None:
-    """A thousand sets, errors and notices take one screen and are counted."""
-    record: dict[str, Any] = fixture("harbour")
+def many(count: int, different: int) -> dict[str, Any]:
+    """A record of so many sets, of which so many come out differently."""
+    record = fixture("harbour")
+    first = record["parameter_sets"][0]
     record["parameter_sets"] = [
-        record["parameter_sets"][0] | {"digest": f"{number:064x}"} for number in range(1000)
+        first
+        | {
+            "digest": f"{number:064x}",
+            "name": f"set {number}",
+            "outcomes": {f"rule-{n}": "conforming" for n in range(1 + number % different)},
+        }
+        for number in range(count)
     ]
+    return record
+
+
+def test_many_sets_still_fit() -> None:
+    """Hundreds of sets, errors and notices take one screen and are counted."""
+    record = many(200, 200)
     record["errors"] *= 1000
     record["notices"] *= 1000
     text = render(record, height=40)
@@ -55,8 +68,22 @@ def test_many_sets_still_fit() -> None:
     assert len(text.splitlines()) <= 40
     shown = len(re.findall("^(?:hold|open|conditions|no objection) +112", text, re.MULTILINE))
     assert shown >= 3
-    assert f"{1000 - shown} more sets" in text
+    assert f"{200 - shown} more sets" in text
     assert "and 997 more" in text
+
+
+def test_sets_that_come_out_alike_share_a_row() -> None:
+    """Three rows for a thousand sets; none is left out, and the places are counted."""
+    text = render(many(1000, 3), height=40)
+    rows = re.findall("^no objection +112.*$", text, re.MULTILINE)
+
+    assert [row.rsplit("  ", 1)[1] for row in rows] == [
+        "set 0 and 333 more",
+        "set 1 and 332 more",
+        "set 2 and 332 more",
+    ]
+    assert "more set" not in text
+    assert " ".join(text.split()).count(" more places: All of the") == 3
 
 
 def test_every_caution_and_error_is_there() -> None:
