@@ -3,7 +3,7 @@
 A declaration holds any values, however bad; judgement happens in later, named steps.
 """
 
-from dataclasses import dataclass, field, fields
+from dataclasses import dataclass, field, fields, replace
 from typing import Any
 
 from auditor.encoding import digest, plain
@@ -75,6 +75,11 @@ class Declaration:
     def required_bits(self) -> int:
         """The declared strength, or the default."""
         return DEFAULT_STRENGTH if self.required_strength is None else self.required_strength
+
+    @property
+    def nameless(self) -> "Declaration":
+        """What equal sets have in common, wherever and under whatever name they are declared."""
+        return replace(self, name="", place=Place("", 1))
 
     @property
     def numbers(self) -> tuple[object, ...]:

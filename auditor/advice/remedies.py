@@ -22,7 +22,7 @@ from auditor.claims.factorization import Factorization
 from auditor.claims.order import Membership, Order
 from auditor.claims.origin_formula import Formula
 from auditor.claims.prime import Prime
-from auditor.declaration import Declaration, Place
+from auditor.declaration import Declaration
 from auditor.encoding import plain
 from auditor.facts import Established, establish, subgroup
 from auditor.facts import parts as group_parts
@@ -40,7 +40,6 @@ MOST_GROUPS = 2
 """Standard groups tried: the smallest that reaches the requirement, and the next for rules that ask
 for more."""
 
-NOWHERE = Place("", 1)
 HELD = ("conforming", "not applicable")
 
 
@@ -92,7 +91,7 @@ class Remedies:
     def of(self, known: Established, judgement: Judgement) -> Mapping[str, Remedy]:
         """A remedy for each finding, by rule: the least disruptive that was found to remove it, or
         what its rule advises."""
-        same = _nameless(known.declaration)
+        same = known.declaration.nameless
         if same not in self._found:
             here, majors = _Here(self, known), _majors(judgement)
             self._found[same] = {
@@ -153,9 +152,7 @@ class _SameNumbers:
 
     def effect(self, draft: Draft) -> _Effect:
         """What the books say of a draft that stays with the modulus."""
-        return self._bench(tuple(_orders(draft, self._support))).effect(
-            _nameless(draft.declaration)
-        )
+        return self._bench(tuple(_orders(draft, self._support))).effect(draft.declaration.nameless)
 
     def _bench(self, orders: tuple[Claim, ...]) -> _Bench:
         ids = tuple(claim.id for claim in orders)
@@ -163,11 +160,6 @@ class _SameNumbers:
             claims = Claims([*self._support, *orders])
             self._benches[ids] = _Bench(claims, self._run, self._judging)
         return self._benches[ids]
-
-
-def _nameless(declaration: Declaration) -> Declaration:
-    """What equal sets have in common, wherever they are declared."""
-    return replace(declaration, name="", place=NOWHERE)
 
 
 def _majors(judgement: Judgement) -> frozenset[str]:
@@ -204,7 +196,7 @@ class _Here:
     def _effect(self, draft: Draft) -> _Effect:
         if draft.group is None:
             return self._group.effect(draft)
-        return self._remedies.moved(draft.group).effect(_nameless(draft.declaration))
+        return self._remedies.moved(draft.group).effect(draft.declaration.nameless)
 
     def _remedy(self, draft: Draft, after: Position, before: Position) -> Remedy:
         if draft.declaration not in self._written:

@@ -9,7 +9,6 @@ declarations lead to the same claims on any number of processes.
 """
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import replace
 
 from auditor.claims.base import Claim
 from auditor.claims.ledger import subjects
@@ -52,7 +51,7 @@ def settle(
     the same numbers goes first: the others then find nearly everything answered.
     Returns a notice for each question whose proposed answer did not pass its check.
     """
-    distinct = list(dict.fromkeys(replace(item, name="") for item in declarations))
+    distinct = list(dict.fromkeys(item.nameless for item in declarations))
     first_of: dict[tuple[object, ...], Declaration] = {}
     for item in distinct:
         first_of.setdefault(item.numbers, item)

@@ -79,14 +79,17 @@ def build(
     fail_on: str,
 ) -> dict[str, Any]:
     """The record; equal arguments, equal record."""
-    shared, judging = Shared(claims, run), Judging(books, vocabulary())
-    known = [establish(item, claims, run, shared) for item in reading.declarations]
+    judging, shared, once = Judging(books, vocabulary()), Shared(claims, run), Once()
+    alike = {item: item.nameless for item in reading.declarations}
+    known = {item: establish(item, claims, run, shared) for item in dict.fromkeys(alike.values())}
+    exposures, remedies = Exposures(claims, run), Remedies(claims, run, judging, known.values())
+    judged = {
+        item: _judged(found, judging, exposures, remedies, once) for item, found in known.items()
+    }
     places = _places(reading.declarations)
-    exposures, remedies = Exposures(claims, run), Remedies(claims, run, judging, known)
-    once = Once()
-    sets = [_parameter_set(item, judging, places, exposures, remedies, once) for item in known]
-    consulted = {claim_id for item in known for claim_id in item.consulted}
-    consulted |= {id_ for item in reading.declarations for id_ in exposures.consulted(item)}
+    sets = [{**_declared(item, places), **judged[alike[item]]} for item in reading.declarations]
+    consulted = {claim_id for item in known.values() for claim_id in item.consulted}
+    consulted |= {id_ for item in known for id_ in exposures.consulted(item)}
     return {
         "report": FORMAT,
         "tool": {"name": TOOL, "version": __version__},
@@ -137,17 +140,10 @@ def _place(declaration: Declaration) -> dict[str, Any]:
     return {"path": place.path, "line": place.line, "column": place.column}
 
 
-def _parameter_set(
-    known: Established,
-    judging: Judging,
-    places: Mapping[str, list[dict[str, Any]]],
-    exposures: Exposures,
-    remedies: Remedies,
-    once: Once,
+def _declared(
+    declaration: Declaration, places: Mapping[str, list[dict[str, Any]]]
 ) -> dict[str, Any]:
-    declaration = known.declaration
-    judgement = judging.judge(known.facts, known.absent)
-    remedy = remedies.of(known, judgement)
+    """The part of a set's record that says where and how it was declared."""
     digest = declaration.digest()
     return {
         "id": declaration.identity,
@@ -156,10 +152,24 @@ def _parameter_set(
         "source": _place(declaration),
         "places": places[digest],
         "declaration": declaration.document(),
+    }
+
+
+def _judged(
+    known: Established,
+    judging: Judging,
+    exposures: Exposures,
+    remedies: Remedies,
+    once: Once,
+) -> dict[str, Any]:
+    """The part that equal sets have in common, wherever they are declared."""
+    judgement = judging.judge(known.facts, known.absent)
+    remedy = remedies.of(known, judgement)
+    return {
         "facts": {name: once(fact, _fact) for name, fact in known.facts.items()},
         "absent": {name: once(item, _absence) for name, item in known.absent.items()},
         "routes": [_route(work, known) for work in known.routes],
-        "exposure": [once(row, asdict) for row in exposures.of(declaration)],
+        "exposure": [once(row, asdict) for row in exposures.of(known.declaration)],
         "properties": [
             {"name": item.name, "statement": item.statement, "source": item.source}
             for item in known.properties

@@ -14,6 +14,7 @@ import subprocess
 import sys
 import tempfile
 import time
+from collections.abc import Sequence
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import replace
 from multiprocessing import get_context
@@ -35,8 +36,10 @@ from auditor.run_values import RunValues
 POOL, BITS = 16, 256
 """Distinct moduli of the small sets, and their length."""
 
+WIDTHS = (160, 224, 225, 256)
 
-def small_sets(count: int) -> list[Declaration]:
+
+def small_sets(count: int, widths: Sequence[int] = range(128, 256)) -> list[Declaration]:
     """Sets over few moduli; generators and widths differ, as in a tree of configurations."""
     rng = random.Random(1)
     primes = [int(gmpy2.next_prime(rng.getrandbits(BITS) | 1 << (BITS - 1))) for _ in range(POOL)]
@@ -47,7 +50,7 @@ def small_sets(count: int) -> list[Declaration]:
             primes[place % POOL],
             2 + place // POOL % 4,
             purpose="key-agreement",
-            parties=(Party(EVERYBODY, 128 + rng.randrange(128), "static", ("range",)),),
+            parties=(Party(EVERYBODY, rng.choice(widths), "static", ("range",)),),
         )
         for place in range(count)
     ]
