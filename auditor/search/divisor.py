@@ -19,8 +19,8 @@ def inverses(numbers: Sequence[mpz], n: mpz) -> list[mpz]:
 
     Raises Divisor with gcd(product, n) if that is not 1.
     """
-    products = [mpz(1)]
-    for number in numbers:
+    products = [mpz(1), *numbers[:1]]
+    for number in numbers[1:]:
         products.append(products[-1] * number % n)
     try:
         rest = gmpy2.invert(products[-1], n)
@@ -28,8 +28,10 @@ def inverses(numbers: Sequence[mpz], n: mpz) -> list[mpz]:
         raise Divisor(gmpy2.gcd(products[-1], n)) from None
     products.pop()
     inverted = []
-    for number in reversed(numbers):
+    for number in reversed(numbers[1:]):
         inverted.append(rest * products.pop() % n)
         rest = rest * number % n
+    if numbers:
+        inverted.append(rest)
     inverted.reverse()
     return inverted

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import gmpy2
 from gmpy2 import mpz
 
-from auditor.search import stage_two
+from auditor.search import stage_two, stage_two_powers
 from auditor.search.divisor import Divisor
 from auditor.search.primes import in_batches, primes_of_lcm, product
 
@@ -28,8 +28,7 @@ def p_minus_1(n: int, b1: int, b2: int) -> list[int]:
     """
     found, power, modulus = _stage_one(mpz(START), mpz(1), b1, mpz(n), _power)
     if modulus > 1 and b2 > b1:
-        trace = (power + gmpy2.invert(power, modulus)) % modulus
-        found.append(_stage_two(trace, b1, b2, modulus))
+        found.append(int(stage_two_powers.common_divisor(power, b1, b2, modulus)))
     return [divisor for divisor in found if divisor > 1]
 
 

@@ -1,4 +1,4 @@
-"""The second stage of the p-1, p+1 and elliptic-curve methods, over any of their groups.
+"""The second stage of the p+1 and elliptic-curve methods, over either of their groups.
 
 After stage one a point Q is the identity modulo a prime factor of n except for one prime l in
 (b1, b2]. Write l = i d + j with j coprime to d. Then i d Q and -j Q are equal modulo the factor, so
@@ -18,9 +18,10 @@ from functools import lru_cache
 from math import log2, prod
 from typing import Protocol, TypeVar
 
-import flint
 import gmpy2
 from gmpy2 import mpz
+
+from auditor.search.polynomials import from_roots, polynomials_modulo
 
 P = TypeVar("P")
 
@@ -88,10 +89,10 @@ WHEELS = (
 
 def _largest_offset(powers: Sequence[tuple[int, int]]) -> float:
     """The largest sum of a d/q over the prime powers, as a multiple of d."""
-    return sum(max(_units(p, q)) / q for p, q in powers)
+    return sum(max(units(p, q)) / q for p, q in powers)
 
 
-def _units(p: int, q: int) -> list[int]:
+def units(p: int, q: int) -> list[int]:
     """Units modulo q = p^e, positive halves of pairs of opposites."""
     return [a for a in range(1, max(2, (q + 1) // 2)) if a % p]
 
@@ -126,9 +127,11 @@ def common_divisor(group: Group[P], point: P, b1: int, b2: int) -> mpz:
     """gcd(n, product over the pairs): shared with every prime factor modulo which ``point`` has a
     prime order in (b1, b2]. May raise Divisor where a point is the identity modulo a factor."""
     plan = wheel(b1, b2)
-    roots = [group.coordinate(p) for p in _small_steps(group, point, plan)]
-    giant = times(group, point, plan.d)
-    steps = progression(group, times(group, giant, plan.first), giant, plan.multiples)
+    *bases, giant, first = multiples(
+        group, point, [*(plan.d // q for _, q in plan.powers), plan.d, plan.first * plan.d]
+    )
+    roots = [group.coordinate(p) for p in _small_steps(group, bases, plan)]
+    steps = progression(group, first, giant, plan.multiples)
     values = [group.coordinate(p) for p in steps]
     identity = group.identity_coordinate()
     if identity is not None:  # the multiple 0 of d, for primes that are residues themselves
@@ -137,13 +140,23 @@ def common_divisor(group: Group[P], point: P, b1: int, b2: int) -> mpz:
 
 
 def times(group: Group[P], point: P, scalar: int) -> P:
-    """A positive multiple of a point, by doubling and adding."""
-    result = point
-    for bit in bin(scalar)[3:]:
-        [result] = group.add_each([result], result)
-        if bit == "1":
-            [result] = group.add_each([result], point)
-    return result
+    """A positive multiple of a point."""
+    [multiple] = multiples(group, point, [scalar])
+    return multiple
+
+
+def multiples(group: Group[P], point: P, scalars: Sequence[int]) -> list[P]:
+    """Positive multiples of a point, by doubling it once for all of them."""
+    sums: dict[int, P] = {}
+    bits = max(scalars).bit_length()
+    for bit in range(bits):
+        adding = [i for i, scalar in enumerate(scalars) if scalar >> bit & 1]
+        started = [i for i in adding if i in sums]
+        added = group.add_each([sums[i] for i in started], point) if started else []
+        sums.update(dict.fromkeys(adding, point) | dict(zip(started, added, strict=True)))
+        if bit + 1 < bits:
+            [point] = group.add_each([point], point)
+    return [sums[i] for i in range(len(scalars))]
 
 
 def progression(group: Group[P], first: P, step: P, count: int) -> list[P]:
@@ -155,19 +168,17 @@ def progression(group: Group[P], first: P, step: P, count: int) -> list[P]:
     return points
 
 
-def _small_steps(group: Group[P], point: P, plan: Wheel) -> list[P]:
-    """j times the point for each unit j modulo d, up to sign.
+def _small_steps(group: Group[P], bases: Sequence[P], plan: Wheel) -> list[P]:
+    """j times the point for each unit j modulo d, up to sign, from the multiples d/q.
 
     The units of the largest prime power are taken from one half only; that fixes the sign. They
     come first and the others in order, so that few points are added to more than once.
     """
     points: list[P] = []
-    *others, largest = plan.powers
-    for p, q in (largest, *others):
-        base = times(group, point, plan.d // q)
-        units = _units(p, q)
-        multiples = progression(group, base, base, units[-1])
-        part = [multiples[a - 1] for a in units]
+    *others, largest = zip(plan.powers, bases, strict=True)
+    for (p, q), base in (largest, *others):
+        by_one = progression(group, base, base, units(p, q)[-1])
+        part = [by_one[a - 1] for a in units(p, q)]
         if points and q > 2:
             part += [group.negative(multiple) for multiple in part]
         points = [s for m in part for s in group.add_each(points, m)] if points else part
@@ -176,28 +187,18 @@ def _small_steps(group: Group[P], point: P, plan: Wheel) -> list[P]:
 
 def _product(values: Sequence[mpz], roots: Sequence[mpz], n: mpz) -> mpz:
     """The product of all value - root, up to sign."""
-    ring = flint.fmpz_mod_ctx(int(n))
-    polynomials = flint.fmpz_mod_poly_ctx(ring)
-    with_roots = _from_roots(roots, polynomials)
+    polynomials = polynomials_modulo(n)
+    with_roots = from_roots(roots, polynomials)
     block = len(roots)
     if len(values) <= block:
-        results = with_roots.multipoint_evaluate([ring(int(value)) for value in values])
+        results = with_roots.multipoint_evaluate([int(value) for value in values])
     else:
         reduced = polynomials.one()
         for start in range(0, len(values), block):
-            factor = _from_roots(values[start : start + block], polynomials)
+            factor = from_roots(values[start : start + block], polynomials)
             reduced = reduced * factor % with_roots
-        results = reduced.multipoint_evaluate([ring(int(root)) for root in roots])
+        results = reduced.multipoint_evaluate([int(root) for root in roots])
     product = mpz(1)
     for result in results:
         product = product * mpz(int(result)) % n
     return product
-
-
-def _from_roots(roots: Sequence[mpz], polynomials: flint.fmpz_mod_poly_ctx) -> flint.fmpz_mod_poly:
-    """The monic polynomial with these roots, by a product tree."""
-    level = [polynomials([int(-root), 1]) for root in roots]
-    while len(level) > 1:
-        paired = [a * b for a, b in zip(level[::2], level[1::2], strict=False)]
-        level = paired + level[len(paired) * 2 :]
-    return level[0]

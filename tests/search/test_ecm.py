@@ -163,7 +163,7 @@ def test_a_wheel_meets_every_prime_of_its_range(powers: tuple[tuple[int, int], .
     d = prod(q for _, q in powers)
     b1, b2 = d // 2 + 13, 5 * d
     plan = stage_two._covering(powers, b1, b2)
-    residues = stage_two._small_steps(Integers(mpz(0)), 1, plan)
+    residues = stage_two._small_steps(Integers(mpz(0)), [d // q for _, q in powers], plan)
 
     assert len(residues) == plan.residues == sympy.totient(d) // 2
     met = {
