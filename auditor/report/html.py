@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 from auditor.data_files import data
 from auditor.report import words
 from auditor.report.claim_words import is_small_prime, sentence
+from auditor.report.common_view import common
 from auditor.report.exposure_view import exposure_table
 from auditor.report.moduli_view import moduli, moduli_picture
 from auditor.report.order_view import GroupOrders
@@ -49,6 +50,7 @@ def render(record: Record | View) -> str:
             shared=shared,
             shared_by_sheet=by_sheet(shared),
             moduli=distinct,
+            common=common(report.record["overview"]),
             moduli_picture=moduli_picture(distinct),
             claims=[(key, claims[key]) for key in keys if not is_small_prime(claims[key])],
             small_primes=_small_primes({key: claims[key] for key in keys}),

@@ -10,6 +10,7 @@ from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TypeVar
 
+from auditor.report.common_view import common
 from auditor.report.findings_view import MergedFinding, Remedy
 from auditor.report.questions_view import Question
 from auditor.report.shared_findings import Lines, SharedFinding, by_sheet, shared_findings
@@ -40,17 +41,19 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
     head, foot = "\n".join(_head(report)), "\n".join(_foot(report))
     room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
     decisions = _fitted("set", _DECISIONS, report.sheets, _row, room.share(3))
+    things = [thing.text for thing in common(report.record["overview"])]
+    shares = _fitted("entry", "\n## In common\n\n", things, _message, room.share(8))
     after = [
         _fitted("question", "\n## Open questions\n\n", report.questions, _question, room.share(6)),
         _fitted("message", "\n## Not read\n\n", report.problems, _message, room.share(6)),
         _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room.share(12)),
     ]
     shared, told = _shared_section(report, room.share(2))
-    return "".join([head, decisions, shared, *_findings(report, room, told), *after, foot])
+    return "".join([head, decisions, shares, shared, *_findings(report, room, told), *after, foot])
 
 
 _RESERVE = 600
-"""Kept free for the sentences that say what was left out: six, none above 100 characters."""
+"""Kept free for the sentences that say what was left out: seven, none above 85 characters."""
 
 Told = Mapping[tuple[int, int], SharedFinding]
 """What is told of several sets together, by number of the sheet and place on it."""

@@ -3,9 +3,10 @@
 Colour is only added when asked for, around words that carry the meaning without it.
 """
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from textwrap import wrap
 
+from auditor.report.common_view import common
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import clipped
 from auditor.report.view import Record, View, view
@@ -53,6 +54,8 @@ def _head(report: View, width: int) -> Iterator[str]:
         yield clipped(f"{counts}   (figures in bits)", width)
     yield from _listed("not read", report.problems, width)
     yield from _listed("notice", report.notices, width)
+    things = common(report.record["overview"])
+    yield from _listed("factor", [item.text for item in things if item.kind == "factor"], width)
     if report.sheets:
         yield ""
         columns = " ".join(f"{name:>8}" for name in _COLUMNS)
@@ -103,7 +106,7 @@ def _foot(report: View, width: int) -> Iterator[str]:
     yield from wrap(" ".join(report.cautions), width)
 
 
-def _listed(label: str, items: tuple[str, ...], width: int) -> Iterator[str]:
+def _listed(label: str, items: Sequence[str], width: int) -> Iterator[str]:
     for item in items[:_MOST_LISTED]:
         yield from _entry(label, item, width)
     if len(items) > _MOST_LISTED:
