@@ -140,8 +140,9 @@ def test_an_undetermined_finding_asserts_nothing(book):
     found = judged(books, facts, {"usage.purpose": UNDECLARED}).findings[0]
 
     assert found.statement == (
-        "It is open whether this holds: “The r is wrong”. Missing: usage.purpose (undeclared), "
-        "strength.work_bits_at_most (at most 113.00, and may still move)."
+        "Not decided yet: “The r is wrong”. The declaration does not say: usage.purpose "
+        f"({VOCABULARY['usage.purpose'].meaning}). Search may still move: "
+        "strength.work_bits_at_most, at most 113.00."
     )
     assert found.missing == {
         "usage.purpose": UNDECLARED,

@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from types import MappingProxyType
 from typing import Any, Literal
 
 from auditor.encoding import shorten
@@ -125,17 +126,32 @@ def _statement(rule: Rule, view: View) -> str:
 
 def _undetermined(rule: Rule, missing: Mapping[str, Absent], view: View) -> str:
     """What is open, without a word of the statement: that would assert what is not established."""
-    return f"It is open whether this holds: “{rule.title}”. Missing: {reasons(missing, view)}."
+    return f"Not decided yet: “{rule.title}”. {reasons(missing, view)}."
+
+
+_WHY_MISSING: Mapping[str, str] = MappingProxyType(
+    {
+        "undeclared": "The declaration does not say",
+        "unsettled": "Search has not settled",
+        "undefined": "It makes no sense here to speak of",
+    }
+)
 
 
 def reasons(missing: Mapping[str, Absent], view: View) -> str:
-    """Why these facts are missing, for a sentence."""
-    return ", ".join(
-        f"{name} ({_bound(name, view)}, and may still move)"
-        if name in view.facts
-        else f"{name} ({absent.reason})"
-        for name, absent in missing.items()
-    )
+    """Why these facts are missing, a sentence for each reason, without the last full stop."""
+    told: dict[str, list[str]] = {}
+    for name, absent in missing.items():
+        if name in view.facts:
+            told.setdefault("Search may still move", []).append(f"{name}, {_bound(name, view)}")
+        else:
+            told.setdefault(_WHY_MISSING[absent.reason], []).append(_named(name, view))
+    return ". ".join(f"{why}: {'; '.join(names)}" for why, names in told.items())
+
+
+def _named(name: str, view: View) -> str:
+    word = view.vocabulary.get(name)
+    return f"{name} ({word.meaning})" if word else name
 
 
 def _bound(name: str, view: View) -> str:

@@ -236,7 +236,7 @@ def _decide(condition: Condition | None, view: View) -> Decision:
 
 def _left_out(book: Rulebook, gate: Decision, view: View) -> BookLeftOut:
     missing = {name: view.absence(name) for name in gate.missing}
-    return BookLeftOut(book.name, f"its gate is open; missing: {reasons(missing, view)}", missing)
+    return BookLeftOut(book.name, f"its gate is not decided. {reasons(missing, view)}", missing)
 
 
 def _is_undefined(name: str, absent: Mapping[str, Absent]) -> bool:
