@@ -11,6 +11,7 @@ from click.testing import CliRunner
 
 from auditor.claims.collection import Claims, check_all
 from auditor.cli import main
+from auditor.commands.options import Interrupted
 from auditor.inquiry.answers import Answers
 from auditor.inquiry.unit_groups import isomorphic, order_of, structure
 from auditor.run_values import RunValues
@@ -106,6 +107,17 @@ def test_the_record_for_programs() -> None:
     assert record["elements"] == [{"element": 7, "unit": True, "order": 12}]
     for order, generator in record["generators"]:
         assert sympy.n_order(generator, 3600) == order
+
+
+def test_an_interruption_before_anything_is_known(monkeypatch: pytest.MonkeyPatch) -> None:
+    """There is nothing to show, and that is said."""
+
+    def interrupted(modulus: int, answers: Answers) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("auditor.inquiry.unit_groups.structure", interrupted)
+    with pytest.raises(Interrupted, match="nothing was found yet"):
+        CliRunner().invoke(main, ["structure", "15"], standalone_mode=False, catch_exceptions=False)
 
 
 @pytest.mark.parametrize("word", ["0", "-5", "x", "1.5", "0x", "9" * 30_000])

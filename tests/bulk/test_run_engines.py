@@ -40,7 +40,9 @@ def with_hidden_factor(seed: int) -> Declaration:
     """A set whose group order has a prime factor for curves and two that no method finds."""
     rng = random.Random(seed)
     f, r, s = safe_prime(rng, 36), random_prime(rng, 110), random_prime(rng, 115)
-    return declared("x", next(n for k in range(2, 10**6) if gmpy2.is_prime(n := k * f * r * s + 1)))
+    return declared(
+        f"x{seed}", next(n for k in range(2, 10**6) if gmpy2.is_prime(n := k * f * r * s + 1))
+    )
 
 
 SETS = [with_hidden_factor(seed) for seed in range(2)]
