@@ -228,7 +228,7 @@ def test_gates(book):
     left_out = judged([gated], {"generator.unit": FALSE}, absent)
     assert left_out.outcomes == {}
     assert left_out.books_left_out[0].name == "book"
-    assert "usage.protocol (undeclared)" in left_out.books_left_out[0].why
+    assert "The declaration does not say: usage.protocol" in left_out.books_left_out[0].why
     assert left_out.books_left_out[0].missing == absent
     shut = judged([gated], {"generator.unit": FALSE, "usage.protocol": fact("cms")})
     assert (shut.outcomes, shut.books_left_out) == ({"r": "not applicable"}, ())
