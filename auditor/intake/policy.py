@@ -17,7 +17,7 @@ from auditor.declaration import Place
 from auditor.intake.inputs import InputError, InputFile, Unreadable, input_file, read_path
 from auditor.intake.readers import DOCUMENT_SUFFIXES, Candidate, read_file
 from auditor.intake.reading import Notice, Passed
-from auditor.intake.tree import STANDARD_INPUT, InputResult, _Run, collect
+from auditor.intake.tree import STANDARD_INPUT, InputResult, collect, gather
 from auditor.intake.usage_file import UsageFile
 
 CONCESSIONS = "concessions.yaml"
@@ -74,20 +74,12 @@ def read_governed(
     Where ``policy`` is a git checkout it stands for the checkout that a path lies in; otherwise for
     the current directory where it has that path too, and else for the path itself.
     """
-    run = _Run(stdin)
-    for item in collect(paths):
-        if isinstance(item, InputError):
-            run.errors.append(item)
-        elif isinstance(item, Passed):
-            run.passed.append(item)
-        else:
-            run.take(item)
+    gathered = gather(paths, stdin)
     unused = _unused(paths, policy)
     tops = tuple(dict.fromkeys(_counterpart(path, policy) for path in paths))
     files = list(_usage_files(policy))
     moved = {_moved(file.path, policy, top): file for top in tops for file, _ in files}
-    run.usages = [_at(file, path) for path, file in moved.items()]
-    result = run.result()
+    result = gathered.result([_at(file, path) for path, file in moved.items()])
     origin = {path: file.path for path, file in moved.items()}
     idle = [item for item in result.passed if item.path in origin]
     result = replace(

@@ -8,7 +8,7 @@ nobody knows what it holds.
 """
 
 import os
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path, PurePath
 from typing import BinaryIO
@@ -96,20 +96,32 @@ def read_inputs(
     not unique in the run is an error, the first one stays. Usage files apply to what was found in
     the same run, and not to declaration documents, which say it themselves.
     """
-    run = _Run(stdin)
+    gathered = gather(paths, stdin, root)
+    return gathered.result(gathered.usages)
+
+
+def gather(
+    paths: Iterable[str], stdin: BinaryIO | None = None, root: Path | None = None
+) -> "Gathered":
+    """What all files below ``paths`` hold, before anything is said about its use."""
+    gathered = Gathered(stdin)
     for item in collect(paths, root):
         if isinstance(item, InputError):
-            run.errors.append(item)
+            gathered.errors.append(item)
         elif isinstance(item, Passed):
-            run.passed.append(item)
+            gathered.passed.append(item)
         else:
-            run.take(item)
-    return run.result()
+            gathered.take(item)
+    return gathered
 
 
 @dataclass(slots=True)
-class _Run:
-    """What has been read so far."""
+class Gathered:
+    """What was read file by file; :meth:`result` makes the sets of a run of it.
+
+    ``documents`` are the paths of declaration documents, whose sets say themselves how they are
+    used; ``candidates`` are numbers that become sets where a usage file names them.
+    """
 
     stdin: BinaryIO | None
     declarations: list[Declaration] = field(default_factory=list)
@@ -159,11 +171,11 @@ class _Run:
             return read_path(Path(candidate.path))
         return read_path(Path(os.path.realpath(candidate.path)), regular=True)
 
-    def result(self) -> InputResult:
-        """The sets with their use in input order, those made of candidates last."""
+    def result(self, usages: Sequence[UsageFile]) -> InputResult:
+        """The sets in input order, used as ``usages`` say, those made of candidates last."""
         stated = [item.place.path in self.documents for item in self.declarations]
         found = [item for item, own in zip(self.declarations, stated, strict=True) if not own]
-        applied = apply(self.usages, found, self.candidates)
+        applied = apply(usages, found, self.candidates)
         with_use = iter(applied.declarations)
         in_order = [
             item if own else next(with_use)
