@@ -9,6 +9,7 @@ from gmpy2 import mpz, powmod
 class Logarithm:
     """h = g^x where x is ``value`` modulo ``modulus``, and the group operations it took.
 
+    They are counted, except where :mod:`auditor.search.log_small` says that it estimates them.
     Modulus 0 says that x is ``value`` itself, as congruence modulo 0 is equality.
     """
 

@@ -24,6 +24,7 @@ from gmpy2 import invert, mpz
 from auditor.search.log_kangaroo import kangaroo
 from auditor.search.log_result import Logarithm, LogarithmError, NotFound, OutOfBudget, Tally
 from auditor.search.log_rho import rho
+from auditor.search.log_small import in_small_field
 from auditor.search.log_steps import Steps, baby_steps, logarithm_in_interval
 
 __all__ = [
@@ -82,9 +83,14 @@ def pohlig_hellman(
 
     T = prod q^e times ``rest`` is the order of g or a multiple of it; the result is x modulo the
     part of ord(g) that is made of the primes in ``factors``: all of ord(g) when ``rest`` is 1.
-    Work: for each prime power e (lg T + sqrt(2 q)) operations or so. ValueError when g^T is not 1;
+    Work: for each prime power e (lg T + sqrt(2 q)) operations or so; without a ``tally`` the whole
+    group of a small field is left to :mod:`auditor.search.log_small`. ValueError when g^T is not 1;
     NotFound when h is not a power of g, as far as these factors show it.
     """
+    if tally is None and rest == 1:
+        found = in_small_field(n, g % n, h % n, factors)
+        if found is not None:
+            return found
     tally = tally or Tally()
     n, g, h = mpz(n), mpz(g) % n, mpz(h) % n
     order = prod(q**e for q, e in factors) * rest
