@@ -27,7 +27,8 @@ from auditor.intake.inputs import (
     read_stream,
     reason,
 )
-from auditor.intake.readers import Candidate, claimed, read_file
+from auditor.intake.moduli import is_moduli
+from auditor.intake.readers import DER_SUFFIXES, MODULI, Candidate, claimed, read_file
 from auditor.intake.reading import Notice, Number, Passed, Reading
 from auditor.intake.usage_file import UsageFile, apply
 
@@ -140,7 +141,7 @@ class Gathered:
             data = self.bytes_of(candidate)
             found = read_file(candidate, data)
         except TooLarge as error:
-            found = _failure(candidate, error, claimed(candidate, error.start))
+            found = _failure(candidate, error, _must_be_read(candidate, error.start))
         except Unreadable as error:
             found = _failure(candidate, error, is_error=True)
         self.errors += found.errors
@@ -218,6 +219,13 @@ class Gathered:
 def _holds_nothing(found: Reading | DocumentResult | UsageFile) -> bool:
     """Whether a file was passed over as a whole."""
     return isinstance(found, Reading) and found.nothing
+
+
+def _must_be_read(candidate: Candidate, start: bytes) -> bool:
+    """Whether a file whose beginning is known says by its name or by it that it holds something."""
+    encoded = candidate.suffix in (".pem", *DER_SUFFIXES)
+    primes = PurePath(candidate.path).name == MODULI or is_moduli(start[:65_536].decode("latin-1"))
+    return claimed(candidate, start) or encoded or primes
 
 
 def _failure(candidate: Candidate, error: Unreadable, is_error: bool) -> Reading:
