@@ -6,6 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from auditor.claims.special_form_check import LARGEST_DEGREE, LEAST_DEGREE
 from auditor.routes.base import Closed, Unit, Work, floor_bits
 from auditor.routes.hidden_form import hidden_form
 from auditor.routes.number_field_sieve import number_field_sieve
@@ -20,7 +21,12 @@ from auditor.routes.sieve_models import (
     rfc3766_symmetric_bits,
     special_bits,
 )
-from auditor.routes.special_number_field_sieve import advantage, special_number_field_sieve
+from auditor.routes.special_number_field_sieve import (
+    DEGREES,
+    advantage,
+    special_number_field_sieve,
+)
+from auditor.search import special_form_work
 from tests.routes.cases import cases, group, number
 
 SIEVES = cases("sieves")
@@ -141,7 +147,7 @@ def test_an_ordinary_polynomial_gives_the_general_sieve() -> None:
 
 @given(
     LENGTHS,
-    st.integers(2, 8),
+    st.integers(1, 10),
     st.floats(0, 1000),
     st.floats(0, 1000),
     st.floats(0, 1000),
@@ -155,6 +161,38 @@ def test_larger_coefficients_never_lower_the_figure(
 
     assert 0 <= advantage(length, degree, coefficient, root) <= 1
     assert small.bits <= large.bits <= nist_bits(length)
+
+
+@pytest.mark.parametrize("degree", [1, 2, 3, 9, 40])
+def test_no_advantage_is_claimed_outside_the_degrees_of_the_formula(degree: int) -> None:
+    """2^1024 - 105 is x^2 - 105 at 2^512 as well: as small a pair as a special form allows, of a
+    degree for which the sieve gains nothing by it."""
+    root_bits = 1024 / degree
+    work = special_number_field_sieve(1024, degree, math.log2(105), root_bits)
+
+    assert advantage(1024, degree, math.log2(105), root_bits) == 0
+    assert work.bits == nist_bits(1024)
+
+
+@pytest.mark.parametrize("degree", DEGREES)
+def test_a_pure_form_of_every_degree_covered_is_full_advantage(degree: int) -> None:
+    """With coefficients 0 and 1 and a root of n/d bits."""
+    assert advantage(2048, degree, 0, 2048 / degree) == 1
+    assert special_number_field_sieve(2048, degree, 0, 2048 / degree).bits < nist_bits(2048) - 20
+
+
+def test_the_degrees_are_those_of_the_search_and_of_the_claim() -> None:
+    """What is looked for, what a claim can show and what has a figure are the same."""
+    assert (DEGREES.start, DEGREES.stop - 1) == (LEAST_DEGREE, LARGEST_DEGREE)
+    assert DEGREES == special_form_work.DEGREES
+
+
+def test_a_skewed_pair_is_measured_by_its_largest_coefficient() -> None:
+    """Which only raises the figure: the bound stays one from above."""
+    even = special_number_field_sieve(2048, 5, 20, 410)
+    skewed = special_number_field_sieve(2048, 5, 60, 410)
+
+    assert even.bits < skewed.bits <= nist_bits(2048)
 
 
 def test_a_hidden_form_is_full_advantage() -> None:
