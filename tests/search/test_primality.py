@@ -65,6 +65,29 @@ def test_lucas_pseudoprimes_are_composite(case: dict[str, Any]) -> None:
     assert not candidate(case["input"]["n"]).prime
 
 
+@pytest.mark.parametrize("case", cases("elliptic_chain"))
+def test_numbers_of_elliptic_proofs_are_prime(case: dict[str, Any]) -> None:
+    """Every number down a chain of elliptic-curve proofs; the small ones are proved here too."""
+    numbers = [int(number) for number in case["input"]["numbers"]]
+
+    assert all(candidate(number).prime for number in numbers)
+    for number in numbers:
+        if number < 2**120:
+            assert n_minus_1_proof(number, sympy.factorint(number - 1)) is not None
+
+
+@pytest.mark.parametrize("case", cases("elliptic_forgery"))
+def test_forged_elliptic_proofs_prove_nothing(case: dict[str, Any]) -> None:
+    """What they are forged for is composite, has a small factor, and has no proof from n - 1."""
+    n, factors = int(case["input"]["n"]), case["expect"]["factors"]
+    found = candidate(n)
+
+    assert prod(factors) == n
+    assert not found.prime
+    assert found.factor == min(factors)
+    assert n_minus_1_proof(n, sympy.factorint(n - 1)) is None
+
+
 def test_safe_looking_parameters_with_a_composite_q() -> None:
     """p = 2q + 1 is prime and q passes the first twelve bases, yet is composite."""
     [case] = [case for case in DATA if case["kind"] == "dh_parameters"]
