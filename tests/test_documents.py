@@ -4,7 +4,9 @@ import re
 import shlex
 from pathlib import Path
 
+import click
 import pytest
+import yaml
 
 from auditor.cli import main
 from auditor.intake.document import read_document
@@ -22,7 +24,7 @@ def blocks(name: str, language: str) -> list[str]:
 
 def test_the_declaration_in_the_readme_is_one() -> None:
     """It is read without an error."""
-    (document,) = blocks("README.md", "yaml")
+    document, *_ = blocks("README.md", "yaml")
     result = read_document(document, "README.md", None)
 
     assert result.errors == ()
@@ -42,6 +44,40 @@ def test_the_first_command_reviews_the_samples() -> None:
     assert {word for word in words if word.startswith("--")} <= options
     assert second.strip() == "bash tests/run"
     assert (ROOT / "tests" / "run").exists()
+
+
+def reviewing(command: str) -> click.Context:
+    """The review that a command line asks for, its options read and nothing run."""
+    program, name, *words = shlex.split(command)
+    assert (program, name) == ("auditor", "review")
+    with main.commands["review"].make_context("review", words) as context:
+        return context
+
+
+def test_the_recipes_for_continuous_integration_call_a_review(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """They are YAML, and their command is one that the program takes."""
+    _, actions, pipeline = map(yaml.safe_load, blocks("README.md", "yaml"))
+    steps = [step["run"] for step in actions["jobs"]["group-parameters"]["steps"] if "run" in step]
+    (here,) = [step for step in steps if step.startswith("auditor")]
+    (there,) = [step for step in pipeline["group-parameters"]["script"] if "auditor r" in step]
+    (tmp_path / "policy").mkdir()
+    (tmp_path / "tree").mkdir()
+
+    monkeypatch.chdir(tmp_path)
+    assert reviewing(here).params["policy_from"] == "policy"
+    monkeypatch.chdir(tmp_path / "tree")
+    assert reviewing(there).params["policy_from"] == "../policy"
+
+
+def test_the_commit_hook_calls_a_review() -> None:
+    """Of the whole tree, at an effort that does not keep anybody waiting."""
+    (hook,) = yaml.safe_load((ROOT / ".pre-commit-hooks.yaml").read_text(encoding="utf-8"))
+    params = reviewing(hook["entry"]).params
+
+    assert (params["paths"], params["effort"], params["fail_on"]) == ((".",), "quick", "hold")
+    assert hook["pass_filenames"] is False
 
 
 def test_every_command_named_exists() -> None:
