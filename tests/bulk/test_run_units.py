@@ -1,6 +1,7 @@
 """Units of work: what travels, what is believed of it, and what happens when it is lost."""
 
 import json
+import random
 import secrets
 from collections.abc import Callable
 from concurrent.futures import Future
@@ -8,12 +9,21 @@ from typing import Any
 
 import pytest
 
+from auditor.claims.base import Claim
 from auditor.claims.collection import Claims
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
+from auditor.claims.order import Membership, Order
 from auditor.claims.prime import Prime
 from auditor.inquiry.dispatch import MOST_LOSSES, Crew, ExecutorLost, work_through
-from auditor.inquiry.work_units import context, step_elsewhere, step_here, taken_over, unit_of
+from auditor.inquiry.work_units import (
+    ONE_IN,
+    context,
+    step_elsewhere,
+    step_here,
+    taken_over,
+    unit_of,
+)
 from auditor.questions import Asks, Question
 from auditor.search.plan import EcmLevel, Plan
 from auditor.search.plan_steps import next_part
@@ -56,8 +66,16 @@ def test_the_context_holds_the_half_of_a_safe_prime() -> None:
     assert context(Question(Asks.MEMBERSHIP, (47, 2, 23)), Claims([half])) == []
 
 
+C7919 = Prime(7919, "below-2^64").id
 LIES = {
     "a composite called prime": [Prime(P * P, "baillie-psw", rounds=16).record()],
+    "a composite called proven": [
+        Prime(7919, "below-2^64").record(),
+        Prime(
+            P * 7919, "n-1", factored=((7919, 1),), witnesses=((7919, 2),), uses=(C7919,)
+        ).record(),
+    ],
+    "a small composite called prime": [Prime(15, "below-2^64").record()],
     "a wrong product": [
         TWO.record(),
         Factorization(6, ((2, 1),), 1, (TWO.id,)).record(),
@@ -76,6 +94,25 @@ def test_a_worker_is_not_believed(records: list[dict[str, Any]]) -> None:
 
     assert step.claims == ()
     assert step.refused
+
+
+WRONG = {
+    "an order": Order(P, 2, ((7, 1),), 1, (SEVEN.id,)),
+    "a membership": Membership(P, 2, 7, True),
+    "a witness": Composite(P, witness=2),
+}
+
+
+@pytest.mark.parametrize("claim", WRONG.values(), ids=WRONG.keys())
+def test_of_claims_that_cost_something_one_in_eight_is_checked(claim: Claim) -> None:
+    """Drawn where the worker cannot foresee it: of many wrong steps that share is refused."""
+    rng = random.Random(5)
+    reports = [([claim.record()], True, None) for _ in range(400)]
+    steps = [taken_over(report, Claims([SEVEN]), rng.randrange) for report in reports]
+    refused = sum(step.refused is not None for step in steps)
+
+    assert abs(refused - 400 / ONE_IN) < 25
+    assert all(step.refused is None or step.claims == () for step in steps)
 
 
 class Losing:
