@@ -110,9 +110,12 @@ class NormOne:
         scaled = self.discriminant * e % n
         return [((a * c + scaled * b) % n, (a * e + b * c) % n) for a, b in points]
 
-    def negative(self, point: tuple[mpz, mpz]) -> tuple[mpz, mpz]:
-        """The inverse, which is the conjugate."""
-        return point[0], -point[1]
+    def add_and_subtract_each(
+        self, points: Sequence[tuple[mpz, mpz]], addend: tuple[mpz, mpz]
+    ) -> list[tuple[mpz, mpz]]:
+        """Each element times ``addend``, then times its inverse, which is its conjugate."""
+        c, e = addend
+        return self.add_each(points, addend) + self.add_each(points, (c, -e))
 
     def identity_coordinate(self) -> mpz:
         """Half the trace of 1."""

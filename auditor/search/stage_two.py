@@ -36,8 +36,8 @@ class Group(Protocol[P]):
     def add_each(self, points: Sequence[P], addend: P) -> list[P]:
         """Each point plus ``addend``; may raise Divisor."""
 
-    def negative(self, point: P) -> P:
-        """The inverse of a point."""
+    def add_and_subtract_each(self, points: Sequence[P], addend: P) -> list[P]:
+        """The sums with ``addend``, then the differences; may raise Divisor."""
 
     def coordinate(self, point: P) -> mpz:
         """A residue modulo n that is the same for a point and its negative only."""
@@ -179,9 +179,8 @@ def _small_steps(group: Group[P], bases: Sequence[P], plan: Wheel) -> list[P]:
     for (p, q), base in (largest, *others):
         by_one = progression(group, base, base, units(p, q)[-1])
         part = [by_one[a - 1] for a in units(p, q)]
-        if points and q > 2:
-            part += [group.negative(multiple) for multiple in part]
-        points = [s for m in part for s in group.add_each(points, m)] if points else part
+        combine = group.add_and_subtract_each if q > 2 else group.add_each
+        points = [s for m in part for s in combine(points, m)] if points else part
     return points
 
 

@@ -47,9 +47,21 @@ class Weierstrass:
         x, y = point
         return (3 * x + 2 * self.a2) * x + self.a4, 2 * y
 
-    def negative(self, point: Point) -> Point:
-        """The inverse of a point."""
-        return point[0], -point[1] % self.n
+    def add_and_subtract_each(self, points: Sequence[Point], addend: Point) -> list[Point]:
+        """Each point plus ``addend``, then each less it: both have slopes over the same run.
+
+        Raises Divisor where a point and ``addend`` have the same x modulo a factor of n.
+        """
+        n = self.n
+        x2, y2 = addend
+        over_runs = inverses([x2 - x1 for x1, _ in points], n)
+        sums = []
+        for y in (y2, -y2):
+            for (x1, y1), over_run in zip(points, over_runs, strict=True):
+                slope = (y - y1) * over_run % n
+                x3 = (slope * slope - self.a2 - x1 - x2) % n
+                sums.append((x3, (slope * (x2 - x3) - y) % n))
+        return sums
 
     def identity_coordinate(self) -> None:
         """None: the identity is the point at infinity."""

@@ -98,6 +98,10 @@ def test_affine_points_are_a_group(p: int, a: int, b: int) -> None:
     [both] = family.add_each([multiple_a], stage_two.times(family, point, b))
 
     assert both == stage_two.times(family, point, a + b)
+    if a != b:
+        larger, smaller = (stage_two.times(family, point, c) for c in (max(a, b), min(a, b)))
+        difference = stage_two.times(family, point, abs(a - b))
+        assert family.add_and_subtract_each([larger], smaller) == [both, difference]
     assert [int(c) for c in multiple_a] == [
         int(c.lift()) for c in pari.ellmul(oracle, [-120, 240], a)
     ]
@@ -144,9 +148,9 @@ class Integers:
         """Sums."""
         return [point + addend for point in points]
 
-    def negative(self, point: int) -> int:
-        """The opposite."""
-        return -point
+    def add_and_subtract_each(self, points: Sequence[int], addend: int) -> list[int]:
+        """Sums and differences."""
+        return self.add_each(points, addend) + self.add_each(points, -addend)
 
     def identity_coordinate(self) -> mpz:
         """Zero."""
@@ -203,7 +207,7 @@ def test_norm_one_elements_are_a_group(half: int, a: int, b: int) -> None:
     [both] = group.add_each([power_a], stage_two.times(group, element, b))
 
     assert both == stage_two.times(group, element, a + b)
-    assert group.add_each([power_a], group.negative(power_a)) == [(1, 0)]
+    assert group.add_and_subtract_each([power_a], power_a)[1] == (1, 0)
 
 
 @pytest.mark.parametrize("bounds", [(100, 0), (100, 100), (100, 3000)])
