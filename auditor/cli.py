@@ -11,11 +11,12 @@ import sys
 import click
 
 from auditor import __version__
+from auditor.commands.asking import ask
 from auditor.commands.books import rulebook
 from auditor.commands.numbers import declare, demonstrate, structure
 from auditor.commands.options import Interrupted
 from auditor.commands.reports import compare, verify
-from auditor.commands.reviewing import ask, review
+from auditor.commands.reviewing import review
 
 MOST_DIGITS = 20_000
 """Decimal digits that Python may read and write: enough for integers of 65,536 bits."""

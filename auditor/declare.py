@@ -29,8 +29,14 @@ parameter_sets:
 
 _BARE = re.compile(r"[A-Za-z](?:[A-Za-z0-9 ()._-]*[A-Za-z0-9)])?")
 _RESERVED = ("true", "false", "null", "yes", "no", "on", "off", "y", "n")
-_USE = "how often one exponent is used: single, reused, static"
-_CHECKS = "what is done to received values: range, membership, cofactor, certified; [] is nothing"
+_USE = (
+    "how often one exponent is used: single (drawn anew each time), reused (for a while), static "
+    "(a key that stays)"
+)
+_CHECKS = (
+    "what is done to received values: range (they are 2 to n-2), membership (y^q = 1, y != 1), "
+    "cofactor (the exponent is multiplied by it, 1 is refused), certified; [] is nothing"
+)
 
 Line = tuple[str, str, str]
 """A key, a value that may be written there, and what it means."""
@@ -92,10 +98,10 @@ def _lines(
     if group is not None:
         record["modulus"] = {"group": group.name}
         del record["generator"]
-    yield f"  - name: {_text(record.pop('name'))}"
+    yield f"  - name: {scalar(record.pop('name'))}"
     yield f"    # {' '.join(about.split())}"
-    for key, example, meaning in _keys(declaration):
-        if key not in record and (not example or key in _pointless(declaration)):
+    for key, example, meaning in questions(declaration):
+        if key not in record and (not example or key in pointless(declaration)):
             continue
         if meaning:
             yield f"    # {meaning}"
@@ -105,7 +111,7 @@ def _lines(
             yield f"    #{key}: {example}"
 
 
-def _pointless(declaration: Declaration) -> tuple[str, ...]:
+def pointless(declaration: Declaration) -> tuple[str, ...]:
     """Keys that make no sense for the purpose, or are said of each party already."""
     by_party = ("exponent", "peer_check") if len(declaration.parties) > 1 else ()
     match declaration.purpose:
@@ -116,7 +122,7 @@ def _pointless(declaration: Declaration) -> tuple[str, ...]:
     return by_party
 
 
-def _keys(declaration: Declaration) -> Sequence[Line]:
+def questions(declaration: Declaration) -> Sequence[Line]:
     """Every key of a set in the order of the document; those without a value are not proposed."""
     width = 2 * max(LEAST_STRENGTH, modulus_strength(declaration.modulus.bit_length()))
     return (
@@ -154,9 +160,9 @@ def _entry(key: str, value: Any) -> Iterator[str]:
                 yield "      - >-"
                 yield from _folded(item, 8)
             else:
-                yield f"      - {_flow(item)}"
+                yield f"      - {flow(item)}"
     else:
-        yield f"    {key}: {_flow(value)}"
+        yield f"    {key}: {flow(value)}"
 
 
 def _is_long(value: Any) -> bool:
@@ -168,16 +174,16 @@ def _folded(value: str, indent: int) -> Iterator[str]:
         yield " " * indent + value[start : start + DIGITS_A_LINE]
 
 
-def _flow(value: Any) -> str:
+def flow(value: Any) -> str:
     """A value on one line of YAML."""
     if isinstance(value, Mapping):
-        return "{" + ", ".join(f"{key}: {_flow(item)}" for key, item in value.items()) + "}"
+        return "{" + ", ".join(f"{key}: {flow(item)}" for key, item in value.items()) + "}"
     if isinstance(value, list):
-        return "[" + ", ".join(map(_flow, value)) + "]"
-    return _text(value) if isinstance(value, str) else str(value)
+        return "[" + ", ".join(map(flow, value)) + "]"
+    return scalar(value) if isinstance(value, str) else str(value)
 
 
-def _text(text: str) -> str:
+def scalar(text: str) -> str:
     """A scalar: bare where no reader could take it for anything else."""
     if _BARE.fullmatch(text) and text.lower() not in _RESERVED:
         return text

@@ -6,7 +6,6 @@ from functools import cache
 from auditor.advice.ask import Asked, ask
 from auditor.declaration import Declaration, Party
 from auditor.facts import vocabulary
-from auditor.report.asking import render
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
 from tests.facts.test_worked_numbers import GROUP_23, GROUP_24, QUICK, claims, group, without
@@ -28,13 +27,12 @@ def test_a_membership_check_lifts_group_23_from_36_to_110_bits() -> None:
     result = asked(group(23, GROUP_23, bits=224, use="static", checks=()), 23, GROUP_23)
     best = result.effects[0]
 
-    assert best.answers == ("if every party checks membership",)
+    assert best.words == ("if every party checks membership",)
     assert (best.before.position, best.after.position) == ("hold", "no objection")
     assert best.before.bits is not None
     assert best.after.bits is not None
     assert round(best.before.bits) == 36
     assert round(best.after.bits) == 110
-    assert "hold to no objection" in render([result])
 
 
 def test_two_answers_where_one_is_not_enough() -> None:
@@ -43,7 +41,7 @@ def test_two_answers_where_one_is_not_enough() -> None:
     result = asked(group(23, GROUP_23, parties=parties), 23, GROUP_23)
     best = result.effects[0]
 
-    assert best.answers == (
+    assert best.words == (
         "if the server checks membership",
         "if the client checks membership",
     )
@@ -56,7 +54,7 @@ def test_two_answers_where_one_is_not_enough() -> None:
 def test_undeclared_usage_is_asked_for_both_ways() -> None:
     """With nothing said about the peer check, there are answers that help and that hurt."""
     result = asked(group(24, GROUP_24, bits=256, use="static"), 24, GROUP_24)
-    after = {effect.answers: effect.after.position for effect in result.effects}
+    after = {effect.words: effect.after.position for effect in result.effects}
 
     assert result.outlook.position == "open"
     assert after[("if every party checks membership",)] == "no objection"
@@ -76,10 +74,9 @@ def test_more_search_has_its_cost_and_its_effect() -> None:
     result = ask(declaration, claims(23, ()), QUICK, books())
     (search,) = result.searches
 
-    assert search.minutes > 0
+    assert search.seconds > 0
     assert search.window == (20, 113)
     assert 0 < search.risk_after < search.risk_before <= 1
-    assert "the risk of a missed factor of 20 to 113 bits falls from" in render([result])
 
 
 def test_assumed_answers_change_no_claims() -> None:

@@ -24,7 +24,7 @@ LINE = (
     ("advice", "compare", "concessions"),
     ("report",),
     ("rule_pages", "review", "progress", "outputs"),
-    ("verify", "demonstrate", "declare"),
+    ("verify", "demonstrate", "declare", "usage_draft"),
     ("commands",),
     ("cli", "api"),
 )

@@ -11,8 +11,10 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import click
 
 if TYPE_CHECKING:
+    from auditor.claims.collection import Claims
     from auditor.inquiry.cluster import Cluster
     from auditor.inquiry.pool import LocalPool
+    from auditor.intake.tree import InputResult
     from auditor.review import Surroundings
     from auditor.run_values import Effort, RunValues
     from auditor.search.curves import BuiltIn
@@ -215,6 +217,14 @@ def investigated(
     paths: tuple[str, ...], options: dict[str, Any]
 ) -> tuple[Any, Any, Any, list[Any]]:
     """The declarations at these paths, the claims about them, the run values, the errors."""
+    read, claims, run = investigated_inputs(paths, options)
+    return read.declarations, claims, run, list(read.errors)
+
+
+def investigated_inputs(
+    paths: tuple[str, ...], options: dict[str, Any]
+) -> "tuple[InputResult, Claims, RunValues]":
+    """All that was read at these paths, the claims about it, the run values."""
     from dataclasses import replace
 
     from auditor.intake.tree import read_inputs
@@ -225,4 +235,4 @@ def investigated(
     run = replace(run_values_of(options, engine), census=census(read.declarations))
     with surroundings_of(options, engine) as surroundings:
         claims, _ = investigate(read.declarations, run, books_of(options), surroundings)
-    return read.declarations, claims, run, list(read.errors)
+    return read, claims, run

@@ -1,4 +1,4 @@
-"""Commands that review: ``review``, ``ask``."""
+"""The command ``review``."""
 
 import sys
 from typing import Any
@@ -9,9 +9,7 @@ from auditor.commands.options import (
     AS_OF,
     BOOKS,
     POLICY,
-    books_of,
     engine_of,
-    investigated,
     policy_of,
     run_values_of,
     search_options,
@@ -83,32 +81,3 @@ def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]
             stdin=sys.stdin.buffer,
             **policy,
         )
-
-
-@click.command()
-@click.argument("paths", nargs=-1, required=True)
-@BOOKS
-@AS_OF
-@search_options()
-def ask(paths: tuple[str, ...], **options: Any) -> int:
-    """Show which answers, the owner's or of more search, would change a position, and how.
-
-    \b
-    auditor ask links.yaml
-    auditor ask configs/ --effort quick
-    """
-    from auditor.report.asking import render
-
-    asked, errors = _asked(paths, options)
-    click.echo(render(asked), nl=False)
-    for error in errors:
-        click.echo(str(error), err=True)
-    return 2 if errors or not asked else 0
-
-
-def _asked(paths: tuple[str, ...], options: dict[str, Any]) -> tuple[list[Any], list[Any]]:
-    from auditor.advice.ask import ask as ask_about
-
-    declarations, claims, run, errors = investigated(paths, options)
-    books = books_of(options)
-    return [ask_about(item, claims, run, books) for item in declarations], errors

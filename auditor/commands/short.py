@@ -35,20 +35,22 @@ def format_options(command: Command) -> Command:
     return command
 
 
-def check(options: Mapping[str, Any]) -> None:
-    """Refuse, before any work is done, what cannot be written in the end."""
+def check(options: Mapping[str, Any], beside: str | None = None) -> None:
+    """Refuse, before any work is done, what cannot be written in the end; ``beside`` is the path
+    of a file that is written as well."""
     from auditor.outputs import Outputs
 
-    Outputs(html=options["html"], markdown=options["markdown"], json=options["json_"]).check()
+    html, markdown, json = options["html"], options["markdown"], options["json_"]
+    Outputs(html=html, markdown=markdown, json=json, json_lines=beside).check()
 
 
-def write(options: Mapping[str, Any], formats: Formats) -> None:
-    """Write what was asked for; the text to standard output where no format goes there."""
+def write(options: Mapping[str, Any], formats: Formats, beside: str | None = None) -> None:
+    """Write what was asked for; the text to standard output where nothing else goes there."""
     from auditor.outputs import STANDARD_OUTPUT, write_text
 
     paths = {"html": options["html"], "markdown": options["markdown"], "json": options["json_"]}
     for name, path in paths.items():
         if path:
             write_text(path, formats[name]())
-    if STANDARD_OUTPUT not in paths.values():
+    if STANDARD_OUTPUT not in (*paths.values(), beside):
         click.echo(formats["text"](), nl=False)

@@ -49,12 +49,12 @@ class Use:
 
     def covers(self, declaration: Declaration) -> bool:
         """Whether the use is about ``declaration``."""
-        inside = _below(self.place.path, declaration.place.path)
-        if inside is None or not _matches(self.path, inside):
+        inside = below(self.place.path, declaration.place.path)
+        if inside is None or not path_matches(self.path, inside):
             return False
         if self.modulus is not None:
             return declaration.name == self.modulus
-        return self.name is None or _name_matches(self.name, declaration.name)
+        return self.name is None or name_matches(self.name, declaration.name)
 
 
 @dataclass(frozen=True, slots=True)
@@ -156,8 +156,8 @@ def _from_candidates(use: Use, numbers: Sequence[Number]) -> Declaration:
     here = [
         number
         for number in numbers
-        if (inside := _below(use.place.path, number.path)) is not None
-        and _matches(use.path, inside)
+        if (inside := below(use.place.path, number.path)) is not None
+        and path_matches(use.path, inside)
     ]
     modulus = _candidate(use.modulus or "", here, use.path)
     generator, order = (
@@ -206,13 +206,24 @@ def _with_uses(declaration: Declaration, uses: Sequence[Use]) -> tuple[Declarati
 
 
 def _added(said: Mapping[str, Any], more: Mapping[str, Any]) -> dict[str, Any]:
-    """``more`` over ``said``; keys that belong together are replaced together."""
+    """``more`` over ``said``; keys that belong together are replaced together. Width and use of an
+    exponent are two keys, and parties of the same roles add up like sets."""
     dropped: set[str] = set()
     if "purpose" in more:
         dropped.update(_ABOUT_PURPOSE)
     if "parties" in more or ("parties" in said and {*_PARTIES} & {*more}):
         dropped.update(_PARTIES)
-    return {key: value for key, value in said.items() if key not in dropped} | dict(more)
+    merged = {key: value for key, value in said.items() if key not in dropped} | dict(more)
+    if "exponent" in said and "exponent" in more and "exponent" not in dropped:
+        merged["exponent"] = {**said["exponent"], **more["exponent"]}
+    if _roles(said) and _roles(said) == _roles(more):
+        pairs = zip(said["parties"], more["parties"], strict=True)
+        merged["parties"] = [_added(before, after) for before, after in pairs]
+    return merged
+
+
+def _roles(said: Mapping[str, Any]) -> list[str]:
+    return [party["role"] for party in said.get("parties", ())]
 
 
 def _declared(declaration: Declaration, said: Mapping[str, Any]) -> Declaration:
@@ -243,14 +254,14 @@ def _nearest_last(file: UsageFile) -> tuple[int, str]:
     return len(PurePath(directory).parts), file.path
 
 
-def _below(usage: str, path: str) -> str | None:
+def below(usage: str, path: str) -> str | None:
     """``path`` relative to the directory of the usage file; None outside of it."""
     directory = PurePath(os.path.abspath(os.path.dirname(usage)))
     target = PurePath(os.path.abspath(path))
     return target.relative_to(directory).as_posix() if target.is_relative_to(directory) else None
 
 
-def _matches(pattern: str, path: str) -> bool:
+def path_matches(pattern: str, path: str) -> bool:
     """Whether ``path`` fits: ``*`` and ``?`` within a name, ``**`` for any number of directories.
 
     The positions in the pattern that the names so far can have led to are carried along, so that
@@ -263,7 +274,7 @@ def _matches(pattern: str, path: str) -> bool:
         move = {
             index + 1
             for index in at - stay
-            if index < len(parts) and _name_matches(parts[index], name)
+            if index < len(parts) and name_matches(parts[index], name)
         }
         at = _past_directories(parts, stay | move)
     return len(parts) in at
@@ -277,5 +288,6 @@ def _past_directories(parts: Sequence[str], at: set[int]) -> set[int]:
     return at
 
 
-def _name_matches(pattern: str, name: str) -> bool:
+def name_matches(pattern: str, name: str) -> bool:
+    """Whether ``name`` fits: ``*`` and ``?`` stand for any characters, nothing else is special."""
     return fnmatchcase(name, pattern.replace("[", "[[]"))

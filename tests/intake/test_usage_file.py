@@ -241,3 +241,20 @@ def test_files_are_recorded_as_inputs(tree: Path) -> None:
     uses = f"{HEAD}  - {{path: '**', protocol: cms}}\n"
     result = _read({"usage.yaml": uses, "dh.pem": DH})
     assert [item.path for item in result.inputs] == ["dh.pem", "usage.yaml"]
+
+
+def test_width_and_use_of_an_exponent_add_up(tree: Path) -> None:
+    """Two uses say one each; so do two lists of parties with the same roles, in any order of the
+    files; other roles replace them."""
+    first = f"{HEAD}  - {{path: dh.pem, exponent: {{bits: 300, use: static}}}}\n"
+    second = f"{HEAD}  - {{path: dh.pem, exponent: {{use: single}}}}\n"
+    found = _one({"a.yaml": first, "b.yaml": second, "dh.pem": DH})
+    assert found.parties == (Party(EVERYBODY, 300, "single"),)
+
+    parties = "  - {path: dh.pem, parties: [{role: a, %s}, {role: b}]}\n"
+    Path("a.yaml").write_text(HEAD + parties % "exponent: {bits: 300}, peer_check: []")
+    found = _one({"b.yaml": HEAD + parties % "exponent: {use: static}"})
+    assert found.parties == (Party("a", 300, "static", ()), Party("b"))
+
+    found = _one({"c.yaml": f"{HEAD}  - {{path: dh.pem, parties: [{{role: b}}]}}\n"})
+    assert found.parties == (Party("b"),)
