@@ -1,7 +1,8 @@
 """Many sets in one review: time and memory per set, and the price of primality.
 
 ``python -m tests.benchmarks.bulk sets 1000 10000`` reviews so many small sets over few moduli, each
-count in a process of its own. ``python -m tests.benchmarks.bulk primes MODULI [COUNT [BITS]]``
+count in a process of its own; ``distinct`` in place of ``sets`` gives each set a modulus of its
+own. ``python -m tests.benchmarks.bulk primes MODULI [COUNT [BITS]]``
 compares a review of safe primes from a file in OpenSSH's moduli(5) format, cold and with a warm
 ledger, with nothing but the same primality rounds on the same number of processes.
 """
@@ -39,16 +40,18 @@ POOL, BITS = 16, 256
 WIDTHS = (160, 224, 225, 256)
 
 
-def small_sets(count: int, widths: Sequence[int] = range(128, 256)) -> list[Declaration]:
-    """Sets over few moduli; generators and widths differ, as in a tree of configurations."""
+def small_sets(
+    count: int, widths: Sequence[int] = range(128, 256), pool: int = POOL
+) -> list[Declaration]:
+    """Sets over so many moduli; generators and widths differ, as in a tree of configurations."""
     rng = random.Random(1)
-    primes = [int(gmpy2.next_prime(rng.getrandbits(BITS) | 1 << (BITS - 1))) for _ in range(POOL)]
+    primes = [int(gmpy2.next_prime(rng.getrandbits(BITS) | 1 << (BITS - 1))) for _ in range(pool)]
     return [
         Declaration(
             f"set {place}",
             Place("invented.yaml", place + 1),
-            primes[place % POOL],
-            2 + place // POOL % 4,
+            primes[place % pool],
+            2 + place // pool % 4,
             purpose="key-agreement",
             parties=(Party(EVERYBODY, rng.choice(widths), "static", ("range",)),),
         )
@@ -61,10 +64,10 @@ def peak_mib() -> float:
     return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
 
 
-def time_sets(count: int) -> None:
+def time_sets(count: int, pool: int) -> None:
     """Print one row of the table."""
     books = load_all(DEFAULT_BOOKS, vocabulary())
-    sets = small_sets(count)
+    sets = small_sets(count, pool=pool)
     run = replace(RunValues("2026-12-01", "quick"), census=census(sets))
     before, begun = peak_mib(), time.process_time()
     claims, _ = investigate(sets, run, books, Surroundings(secrets.randbelow))
@@ -129,7 +132,8 @@ def main(words: list[str]) -> None:
         count, bits = (*numbers, *(24, 2048)[len(numbers) :])
         time_primes(Path(words[1]), count, bits)
     elif len(words) == 2:
-        time_sets(int(words[1]))
+        count = int(words[1])
+        time_sets(count, POOL if words[0] == "sets" else count)
     else:
         print(
             "| sets | settle, core time | each | record | each | memory, settled | memory, record |"
@@ -137,7 +141,7 @@ def main(words: list[str]) -> None:
         print("| --- | --- | --- | --- | --- | --- | --- |", flush=True)
         for word in words[1:]:
             subprocess.run(
-                [sys.executable, "-m", "tests.benchmarks.bulk", "sets", word], check=True
+                [sys.executable, "-m", "tests.benchmarks.bulk", words[0], word], check=True
             )
 
 
