@@ -138,13 +138,20 @@ def test_what_one_engine_has_searched_the_other_does_not_search_again(
 @pytest.mark.usefixtures("short_levels")
 @pytest.mark.parametrize(
     ("behaviour", "names"),
-    [({"greeting": "other"}, "built-in"), ({"fails_with": "600"}, "GMP-ECM 9.9 and built-in")],
+    [
+        (None, "built-in"),
+        ({"greeting": "other"}, "built-in"),
+        ({"fails_with": "600"}, "GMP-ECM 9.9 and built-in"),
+    ],
+    ids=["missing", "something else", "at one level"],
 )
 def test_where_the_program_fails_the_engines_that_ran_are_named(
-    tmp_path: Path, behaviour: dict[str, Any], names: str
+    tmp_path: Path, behaviour: dict[str, Any] | None, names: str
 ) -> None:
-    """On all units, or on those of one level; the claims are the same."""
-    program = stand_in(tmp_path, NUMBERS, **behaviour)
+    """As on a worker where it is not installed; the claims are the same."""
+    program = stand_in(tmp_path, NUMBERS, **(behaviour or {}))
+    if behaviour is None:
+        (tmp_path / "ecm").unlink()
     claims, record = reviewed(SETS, DEEP, cores=Cores(engine=program))
 
     assert without_names(claims) == without_names(reviewed(SETS, DEEP)[0])
