@@ -15,6 +15,7 @@ from auditor.facts import vocabulary
 from auditor.intake.document import parse
 from auditor.intake.tree import InputResult, read_inputs
 from auditor.intake.usage_file import UsageFile, read_usage
+from auditor.report.view import view
 from auditor.review import DEFAULT_BOOKS, Surroundings, investigate, review
 from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
@@ -101,8 +102,17 @@ def test_thirty_files_are_one_question(tree: Path) -> None:
     written({"usage.yaml": lifted(found.text)})
     assert questions() == set()
     assert drafted("more.yaml").is_empty
-    (sheet,) = {item["digest"] for item in reviewed()["parameter_sets"]}
-    assert sheet
+    assert len({item["digest"] for item in reviewed()["parameter_sets"]}) == 1
+
+
+def test_thirty_different_sets_are_one_question_in_the_report_too(tree: Path) -> None:
+    """Thirty sheets wait for the same keys: one question with all of them, and one use."""
+    written({f"a/{g}.pem": pem("DH PARAMETERS", integers(P, g)) for g in range(2, 32)})
+    owners = [question for question in view(reviewed()).questions if question.is_owners]
+
+    assert [len(question.waiting) for question in owners].count(30) == 1
+    assert owners[0].about.startswith("The owner has not declared exponent.bits, exponent.use")
+    assert drafted("usage.yaml").uses == 1
 
 
 def reviewed() -> dict[str, Any]:
