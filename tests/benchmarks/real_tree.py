@@ -7,12 +7,15 @@ All of it is reviewed at quick effort, every tenth of the primes at standard eff
 with a warm ledger. The competitor is the same rounds of the same primality tests, and the same
 searches for special forms where the review made any, spread over as many processes.
 
-``--groups N --longest BITS`` takes a part of the primes, evenly spread; ``--moduli FILE`` another
-file; ``--jobs N`` fewer cores. A full run takes about half an hour on two cores.
+``--groups N --longest BITS`` takes a part of the primes, evenly spread, ``--every N`` another part
+of these at standard effort, ``--primes-only`` leaves the other files out; ``--moduli FILE`` reads
+another file of primes; ``--jobs N`` uses fewer cores; ``--sets 1000 10000`` goes on with the memory
+of so many small sets. A full run takes about half an hour on two cores.
 """
 
 import argparse
 import os
+import resource
 import secrets
 import subprocess
 import sys
@@ -44,11 +47,31 @@ Record = dict[str, Any]
 
 
 @dataclass(frozen=True, slots=True)
-class Timed:
-    """A review and what it took, in seconds of the clock."""
+class Spent:
+    """Seconds of the clock, and of processors: of this process and of those that it ended."""
 
-    record: Record
-    seconds: float
+    clock: float
+    processors: float
+
+    def __add__(self, other: "Spent") -> "Spent":
+        return Spent(self.clock + other.clock, self.processors + other.processors)
+
+    def __str__(self) -> str:
+        return f"{self.clock:.1f} ({self.processors:.1f})"
+
+    def by(self, other: "Spent") -> str:
+        """As multiples of another."""
+        return f"{self.clock / other.clock:.3f} ({self.processors / other.processors:.3f})"
+
+
+def _now() -> Spent:
+    children = resource.getrusage(resource.RUSAGE_CHILDREN)
+    return Spent(time.perf_counter(), time.process_time() + children.ru_utime + children.ru_stime)
+
+
+def _since(begun: Spent) -> Spent:
+    now = _now()
+    return Spent(now.clock - begun.clock, now.processors - begun.processors)
 
 
 def fetch(folder: Path) -> str:
@@ -66,25 +89,25 @@ def fetch(folder: Path) -> str:
     return (folder / "package/etc/ssh/moduli").read_text("utf-8")
 
 
-def reviewed(tree: Path, effort: Effort, ledger: Path, jobs: int) -> Timed:
+def reviewed(tree: Path, effort: Effort, ledger: Path, jobs: int) -> tuple[Record, Spent]:
     """A review of the tree on so many processes, from bytes to record."""
-    begun = time.perf_counter()
+    begun = _now()
     with LocalPool(jobs) as pool:
         surroundings = Surroundings(secrets.randbelow, ledger=ledger, cores=Cores(pool, jobs))
         record = review([str(tree)], RunValues("2026-12-01", effort), surroundings)
-    return Timed(record, time.perf_counter() - begun)
+    return record, _since(begun)
 
 
-def bare(record: Record, jobs: int) -> tuple[float, float]:
-    """Seconds of the clock for the rounds that the review made, and for its searches for special
-    forms, by nothing but them; the longest numbers first, so that all cores end together."""
+def bare(record: Record, jobs: int) -> tuple[Spent, Spent]:
+    """What the rounds that the review made take, and its searches for special forms, by nothing
+    but them; the longest numbers first, so that all cores end together."""
     claims = record["claims"].values()
     rounds = record["run"]["rounds"]
     primes = _subjects(c for c in claims if c["certificate"].get("method") == "baillie-psw")
     forms = _subjects(c for c in claims if c["kind"] in ("form-searched", "special-form"))
     return (
-        _spread(_is_prime, [(n, rounds) for n in primes], jobs),
-        _spread(_has_form, [(n,) for n in forms], jobs),
+        _spread(_prime_test, [(n, rounds) for n in primes], jobs),
+        _spread(_form_search, [(n,) for n in forms], jobs),
     )
 
 
@@ -92,20 +115,28 @@ def _subjects(claims: Iterable[Record]) -> list[int]:
     return sorted({int(str(claim["statement"]["n"]), 0) for claim in claims}, reverse=True)
 
 
-def _is_prime(n: int, rounds: int) -> bool:
-    return is_probable_prime(n, rounds, secrets.randbelow)
+def _prime_test(n: int, rounds: int) -> float:
+    begun = time.process_time()
+    is_probable_prime(n, rounds, secrets.randbelow)
+    return time.process_time() - begun
 
 
-def _has_form(n: int) -> bool:
-    return special_form.search(n) is not None
+def _form_search(n: int) -> float:
+    begun = time.process_time()
+    special_form.search(n)
+    return time.process_time() - begun
 
 
-def _spread(work: Callable[..., bool], arguments: list[tuple[int, ...]], jobs: int) -> float:
-    begun = time.perf_counter()
-    if arguments:
-        with ProcessPoolExecutor(jobs, mp_context=get_context("spawn")) as executor:
-            list(executor.map(work, *zip(*arguments, strict=True)))
-    return time.perf_counter() - begun
+def _spread(work: Callable[..., float], arguments: list[tuple[int, ...]], jobs: int) -> Spent:
+    """What the work takes on so many processes, which have started before; ``work`` says what it
+    took of a processor."""
+    if not arguments:
+        return Spent(0.0, 0.0)
+    with ProcessPoolExecutor(jobs, mp_context=get_context("spawn")) as executor:
+        list(executor.map(time.sleep, [1.0] * jobs))
+        begun = time.perf_counter()
+        processors = sum(executor.map(work, *zip(*arguments, strict=True)))
+        return Spent(time.perf_counter() - begun, processors)
 
 
 def count(record: Record, tree: Path, expected: "real_tree.Counter[real_tree.Place]") -> None:
@@ -148,28 +179,31 @@ def _places(places: list[Lines]) -> str:
     )
 
 
+HEAD = (
+    "| effort | sets | rounds | special forms | review, cold | by both | review, warm | by cold "
+    "| aims |\n" + "| --- " * 9 + "|"
+)
+
+
 def timings(tree: Path, effort: Effort, jobs: int) -> Record:
     """Print one row of the table; the record of the cold review."""
     with tempfile.TemporaryDirectory() as folder:
         ledger = Path(folder) / "ledger"
-        cold = reviewed(tree, effort, ledger, jobs)
-        warm = reviewed(tree, effort, ledger, jobs)
-    rounds, forms = bare(cold.record, jobs)
-    sets = len(cold.record["parameter_sets"])
-    ratio, rest = cold.seconds / (rounds + forms), warm.seconds / cold.seconds
+        record, cold = reviewed(tree, effort, ledger, jobs)
+        again, warm = reviewed(tree, effort, ledger, jobs)
+    rounds, forms = bare(record, jobs)
+    both = rounds + forms
+    reached = cold.clock <= COLD * both.clock and warm.clock <= WARM * cold.clock
+    sets = len(record["parameter_sets"])
     print(
-        f"| {effort} | {sets} | {rounds:.1f} | {forms:.1f} | {cold.seconds:.1f} | {ratio:.2f} "
-        f"| {warm.seconds:.1f} | {rest:.3f} | {_verdict(ratio <= COLD and rest <= WARM)} |",
+        f"| {effort} | {sets} | {rounds} | {forms} | {cold} | {cold.by(both)} | {warm} "
+        f"| {warm.by(cold)} | {'reached' if reached else 'missed'} |",
         flush=True,
     )
-    pairs = zip(warm.record["parameter_sets"], cold.record["parameter_sets"], strict=True)
+    pairs = zip(again["parameter_sets"], record["parameter_sets"], strict=True)
     if other := sum(one != another for one, another in pairs):
         print(f"{other} sets come out otherwise with a warm ledger")
-    return cold.record
-
-
-def _verdict(reached: bool) -> str:
-    return "reached" if reached else "missed"
+    return record
 
 
 def main() -> None:
@@ -183,16 +217,12 @@ def main() -> None:
         print(
             f"{len(records)} primes in the file, {len(chosen)} of them here; {options.jobs} cores"
         )
-        expected = real_tree.build(folder / "all", chosen)
-        (folder / "tenth").mkdir()
-        (folder / "tenth/moduli").write_text("\n".join([*chosen[::10], ""]), "utf-8")
-        print(
-            "| effort | sets | rounds, s | forms, s | cold, s | by both | warm, s | by cold "
-            f"| at most {COLD} and {WARM} |\n" + "| --- " * 9 + "|",
-            flush=True,
-        )
+        build = real_tree.build_primes if options.primes_only else real_tree.build
+        expected = build(folder / "all", chosen)
+        real_tree.build_primes(folder / "part", chosen[:: options.every])
+        print(f"seconds (of processors); aims: {COLD} by both, {WARM} by cold\n{HEAD}", flush=True)
         record = timings(folder / "all", "quick", options.jobs)
-        timings(folder / "tenth", "standard", options.jobs)
+        timings(folder / "part", "standard", options.jobs)
         count(record, folder / "all", expected)
         documents(record)
         sets = len(record["parameter_sets"])
@@ -207,6 +237,8 @@ def _options() -> argparse.Namespace:
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("--groups", type=int, help="so many of the primes; all")
     parser.add_argument("--longest", type=int, default=65_536, help="most bits of a prime")
+    parser.add_argument("--every", type=int, default=10, help="so many are one at standard effort")
+    parser.add_argument("--primes-only", action="store_true", help="no other files")
     parser.add_argument("--moduli", help="a file in the format of moduli(5)")
     parser.add_argument("--jobs", type=int, default=os.cpu_count() or 1)
     parser.add_argument("--sets", nargs="*", help="then the memory of so many small sets")

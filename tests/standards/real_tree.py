@@ -69,13 +69,19 @@ def build(folder: Path, records: Iterable[str]) -> Counter[Place]:
         for path in _key_files()
         for p, g in sorted(groups(path.read_bytes()))
     )
-    lines = list(records)
-    (folder / "primes").mkdir()
-    (folder / "primes" / "moduli").write_text("\n".join(["# primes", *lines, ""]), "utf-8")
-    expected.update(("primes/moduli", p, g) for p, g in map(record_numbers, lines))
+    expected += build_primes(folder, records)
     found = configurations.write(folder / "configuration")
     expected.update({(f"configuration/{name}", p, g): n for (name, p, g), n in found.items()})
     return expected
+
+
+def build_primes(folder: Path, records: Iterable[str]) -> Counter[Place]:
+    """The same with the records alone."""
+    lines = list(records)
+    path = folder / "primes" / "moduli"
+    path.parent.mkdir(parents=True)
+    path.write_text("\n".join(["# primes", *lines, ""]), "utf-8")
+    return Counter(("primes/moduli", p, g) for p, g in map(record_numbers, lines))
 
 
 def reviewed(record: dict[str, Any], folder: Path) -> Counter[Place]:
