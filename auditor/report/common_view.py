@@ -16,7 +16,14 @@ class Common:
     """One thing that several sets or files have in common, and which they are."""
 
     kind: str
-    text: str
+    sentence: str
+    """Without a full stop, and without a name from outside."""
+    names: tuple[str, ...]
+
+    @property
+    def text(self) -> str:
+        """The sentence with the first names."""
+        return f"{self.sentence}: {listed(self.names, most=MOST_NAMED)}."
 
 
 def common(overview: Mapping[str, Any]) -> tuple[Common, ...]:
@@ -25,8 +32,8 @@ def common(overview: Mapping[str, Any]) -> tuple[Common, ...]:
     return (
         *_factors(overview),
         *_moduli(overview["moduli"]),
-        *(Common("copies", _copies(entry["sets"])) for entry in overview["copies"]),
-        *(Common("files", _equal(entry["paths"])) for entry in overview["equal_files"]),
+        *(_copies(entry["sets"]) for entry in overview["copies"]),
+        *(_equal(entry["paths"]) for entry in overview["equal_files"]),
     )
 
 
@@ -38,8 +45,8 @@ def _factors(overview: Mapping[str, Any]) -> Iterator[Common]:
         yield Common(
             "factor",
             f"{plural(len(entry['moduli']), 'modulus', 'moduli')} have the factor {number.short} "
-            f"({number.length} bits) in common, which anybody finds who knows two of them: "
-            f"{_names(sets)}.",
+            f"({number.length} bits) in common, which anybody finds who knows two of them",
+            tuple(sets),
         )
 
 
@@ -49,18 +56,15 @@ def _moduli(moduli: Sequence[Mapping[str, Any]]) -> Iterator[Common]:
         yield Common(
             "modulus",
             f"{plural(len(entry['sets']), 'set')} in {plural(len(entry['paths']), 'file')} use the "
-            f"modulus of {entry['length']} bits with the SHA-256 {entry['digest'][:12]}: "
-            f"{_names(entry['sets'])}.",
+            f"modulus of {entry['length']} bits with the SHA-256 {entry['digest'][:12]}",
+            tuple(entry["sets"]),
         )
 
 
-def _copies(sets: Sequence[str]) -> str:
-    return f"{plural(len(sets), 'set')} are equal in all values and in their use: {_names(sets)}."
+def _copies(sets: Sequence[str]) -> Common:
+    sentence = f"{plural(len(sets), 'set')} are equal in all values and in their use"
+    return Common("copies", sentence, tuple(sets))
 
 
-def _equal(paths: Sequence[str]) -> str:
-    return f"{plural(len(paths), 'file')} are equal byte for byte: {_names(paths)}."
-
-
-def _names(names: Sequence[str]) -> str:
-    return listed(names, most=MOST_NAMED)
+def _equal(paths: Sequence[str]) -> Common:
+    return Common("files", f"{plural(len(paths), 'file')} are equal byte for byte", tuple(paths))

@@ -10,7 +10,7 @@ from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import TypeVar
 
-from auditor.report.common_view import common
+from auditor.report.common_view import MOST_NAMED, Common, common
 from auditor.report.findings_view import MergedFinding, Remedy
 from auditor.report.questions_view import Question
 from auditor.report.shared_findings import Lines, SharedFinding, by_sheet, shared_findings
@@ -41,8 +41,8 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
     head, foot = "\n".join(_head(report)), "\n".join(_foot(report))
     room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
     decisions = _fitted("set", _DECISIONS, report.sheets, _row, room.share(3))
-    things = [thing.text for thing in common(report.record["overview"])]
-    shares = _fitted("entry", "\n## In common\n\n", things, _message, room.share(8))
+    things = common(report.record["overview"])
+    shares = _fitted("entry", "\n## In common\n\n", things, _in_common, room.share(8))
     after = [
         _fitted("question", "\n## Open questions\n\n", report.questions, _question, room.share(6)),
         _fitted("message", "\n## Not read\n\n", report.problems, _message, room.share(6)),
@@ -308,8 +308,10 @@ def _stated(finding: MergedFinding, number: int, statements: Sequence[str]) -> s
 
 
 def _remedy(remedy: Remedy) -> list[str]:
+    patch = "; ".join(f"{code(key)} {code(value)}" for key, value in remedy.patch)
+    declare = f" Declare: {patch}." if patch else ""
     breaks = [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
-    return [f"   - Remedy: {prose(remedy.text)}", *breaks]
+    return [f"   - Remedy: {prose(remedy.text)}{declare}", *breaks]
 
 
 def _question(question: Question) -> str:
@@ -320,6 +322,12 @@ def _question(question: Question) -> str:
         f"- {prose(question.about)} Cost: {prose(question.cost)}.{waiting} {effects}".rstrip()
         + "\n"
     )
+
+
+def _in_common(thing: Common) -> str:
+    names = ", ".join(code(name) for name in thing.names[:MOST_NAMED])
+    more = len(thing.names) - MOST_NAMED
+    return f"- {prose(thing.sentence)}: {names}{f' and {more:,} more' if more > 0 else ''}.\n"
 
 
 def _message(text: str) -> str:

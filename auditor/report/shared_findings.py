@@ -17,6 +17,10 @@ from auditor.report.words import GRADES
 
 Item = TypeVar("Item")
 
+FEWEST = 4
+"""Sheets that share a finding before it is told apart from them: what two or three have in common
+is read more easily on each."""
+
 
 @dataclass(frozen=True, slots=True)
 class Lines:
@@ -94,13 +98,14 @@ class SharedFinding:
 
 
 def shared_findings(sheets: Iterable[Sheet]) -> tuple[SharedFinding, ...]:
-    """The findings of more than one sheet: the heaviest first, then in order of appearance."""
+    """The findings of :data:`FEWEST` sheets or more: the heaviest first, then in order of
+    appearance."""
     groups: dict[tuple[str, str, str, tuple[str, ...]], list[tuple[Sheet, int]]] = {}
     for sheet in sheets:
         for place, finding in enumerate(sheet.findings, 1):
             key = finding.defect, finding.outcome, finding.grade, sheet.usage
             groups.setdefault(key, []).append((sheet, place))
-    several = [(key, members) for key, members in groups.items() if len(members) > 1]
+    several = [(key, members) for key, members in groups.items() if len(members) >= FEWEST]
     several.sort(key=lambda item: (GRADES.index(item[0][2]), item[0][1] == "undetermined"))
     return tuple(
         SharedFinding(number, tuple(members)) for number, (_, members) in enumerate(several, 1)

@@ -6,7 +6,7 @@ from typing import Any
 import pytest
 
 from auditor.report import html, markdown
-from auditor.report.shared_findings import by_sheet, ranges, shared_findings
+from auditor.report.shared_findings import FEWEST, by_sheet, ranges, shared_findings
 from auditor.report.view import view
 from tests.report.pages import Page
 from tests.report.records import fixture
@@ -126,6 +126,12 @@ def test_the_page_tells_an_observation_of_many_sets_once() -> None:
             assert source.count(f"(rule <code>{criterion.rule}</code>)") == 1
     assert "primes:1-12" in page.words()
     assert all(item["name"] in page.words() for item in record["parameter_sets"])
+
+
+def test_what_few_sets_have_in_common_stays_on_their_sheets() -> None:
+    """Below the least number nothing is told apart."""
+    assert shared_findings(view(alike(FEWEST - 1)).sheets) == ()
+    assert shared_findings(view(alike(FEWEST)).sheets) != ()
 
 
 def test_sets_without_anything_in_common_share_nothing() -> None:
