@@ -21,11 +21,12 @@ class Criterion:
 
 @dataclass(frozen=True, slots=True)
 class Remedy:
-    """What would remove a finding, what that breaks, and the declared keys it changes."""
+    """What would remove a finding, what that breaks, and each declared key that it changes, as it
+    then stands in the declaration."""
 
     text: str
     breaks: tuple[str, ...]
-    patch: tuple[tuple[str, str], ...]
+    patch: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -130,8 +131,21 @@ def remedy(record: Record) -> Remedy:
     return Remedy(
         record["text"],
         tuple(record["breaks"]),
-        tuple((key, plain_value(value)) for key, value in patch.items()),
+        tuple(_entry(key, value) for key, value in patch.items()),
     )
+
+
+def _entry(key: str, value: Any) -> str:
+    return f"no {key}" if value is None else f"{key}: {_flow(value)}"
+
+
+def _flow(value: Any) -> str:
+    """A value as a declaration writes it on one line, long integers shortened."""
+    if isinstance(value, Mapping):
+        return "{" + ", ".join(f"{key}: {_flow(item)}" for key, item in value.items()) + "}"
+    if isinstance(value, list):
+        return "[" + ", ".join(map(_flow, value)) + "]"
+    return plain_value(value)
 
 
 def _concession(record: Record) -> Concession:

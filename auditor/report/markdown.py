@@ -308,8 +308,8 @@ def _stated(finding: MergedFinding, number: int, statements: Sequence[str]) -> s
 
 
 def _remedy(remedy: Remedy) -> list[str]:
-    patch = "; ".join(f"{code(key)} {code(value)}" for key, value in remedy.patch)
-    declare = f" Declare: {patch}." if patch else ""
+    patch = ", ".join(code(entry, 200) for entry in remedy.patch)
+    declare = f" Declare {patch}." if patch else ""
     breaks = [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
     return [f"   - Remedy: {prose(remedy.text)}{declare}", *breaks]
 
