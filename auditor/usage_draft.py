@@ -7,7 +7,6 @@ use; in prose one blank or more than two follow it.
 """
 
 import os
-import re
 from collections.abc import Hashable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from textwrap import wrap
@@ -20,7 +19,7 @@ from auditor.declare import flow, pointless, questions, scalar
 from auditor.facts.usage import PURPOSES
 from auditor.intake.candidates import Waiting
 from auditor.intake.usage_file import USAGE, below
-from auditor.intake.usage_patterns import ANY_NAME, MAX_PATH, Covered, fewest, labelled
+from auditor.intake.usage_patterns import ANY_NAME, MAX_PATH, NOT_LITERAL, Covered, fewest, labelled
 from auditor.report import asking
 from auditor.report.asking_record import situation_record
 from auditor.report.text import clipped, visible
@@ -39,9 +38,6 @@ uses:
 """
 
 _NOTHING = f'  - path: "**"\n    name: "{ANY_NAME}"\n'
-_NO_PATH = re.compile(r"[*?\\\x00-\x1f\x7f-\x9f]")
-"""What a path that is no pattern cannot hold."""
-
 _WIDTH, _LONGEST = 92, 600
 _PLACES = 3
 
@@ -238,7 +234,7 @@ def _candidates(path: str, waiting: Iterable[Waiting]) -> tuple[list[str], list[
             unnamed.append(f"{where}: not below {os.path.dirname(path) or '.'}")
         elif not item.unique:
             unnamed.append(f"{where}: the file has this name more than once")
-        elif _NO_PATH.search(inside) or len(inside) > MAX_PATH:
+        elif NOT_LITERAL.search(inside) or len(inside) > MAX_PATH:
             unnamed.append(f"{where}: no pattern names this file alone")
         else:
             named.append("\n".join(_candidate(item, inside)) + "\n")

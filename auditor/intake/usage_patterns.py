@@ -16,6 +16,8 @@ MAX_PATH, MAX_NAME = 1_000, 200
 """Characters of a pattern that the format takes."""
 
 ANY_NAME = "*"
+NOT_LITERAL = re.compile(r"[*?\\\x00-\x1f\x7f-\x9f]")
+"""What a path that is its own pattern cannot hold."""
 
 _Pattern = tuple[str, str]
 _REFUSED = re.compile(r"[\x00-\x1f\x7f-\x9f\\]")
@@ -67,12 +69,13 @@ def fewest(sets: Iterable[Labelled]) -> tuple[Covered, ...]:
     by_file = _largest(listed, lambda item: (item.path, ANY_NAME))
     by_kind = _largest(listed, lambda item: (item.path, item.kind))
     by_name = _largest(listed, lambda item: (item.path, item.declaration.name), deep=False)
+    tree = _Tree(listed)
     tried: dict[_Pattern | None, Covered | None] = {None: None}
     uses: dict[_Pattern, Covered] = {}
     for patterns in zip(by_file, by_kind, by_name, strict=True):
         for pattern in patterns:
             if pattern is not None and pattern not in tried:
-                tried[pattern] = _use(pattern, listed)
+                tried[pattern] = tree.use(pattern)
         found = [use for pattern in patterns if (use := tried[pattern]) is not None]
         if found:
             most = max(found, key=lambda use: len(use.sets))
@@ -80,12 +83,31 @@ def fewest(sets: Iterable[Labelled]) -> tuple[Covered, ...]:
     return tuple(_once(list(uses.values())))
 
 
-def _use(pattern: _Pattern, listed: Sequence[Labelled]) -> Covered | None:
-    """The use with its sets by the matching of usage files; None where it mixes labels."""
-    empty = Covered(*pattern, ())
-    sets = tuple(item for item in listed if empty.covers(item))
-    fits = 0 < len(pattern[1]) <= MAX_NAME
-    return Covered(*pattern, sets) if fits and len({item.label for item in sets}) == 1 else None
+class _Tree:
+    """The sets by the patterns of their paths, so that few have to be matched with each."""
+
+    def __init__(self, listed: Sequence[Labelled]) -> None:
+        self._listed = listed
+        self._by_path: dict[str, list[Labelled]] = {}
+        self._odd: set[str] = set()
+        for item in listed:
+            chain = tuple(_chain(item.path))
+            if NOT_LITERAL.search(item.path):
+                self._odd.update(chain)
+            for pattern in chain:
+                self._by_path.setdefault(pattern, []).append(item)
+
+    def use(self, pattern: _Pattern) -> Covered | None:
+        """The use with all sets that usage files would match with it; None where it mixes labels.
+
+        Patterns of a path with characters that mean something in a pattern are matched with all.
+        """
+        path, name = pattern
+        near = self._listed if path in self._odd else self._by_path[path]
+        empty = Covered(path, name, ())
+        sets = tuple(item for item in near if empty.covers(item))
+        fits = 0 < len(name) <= MAX_NAME
+        return Covered(path, name, sets) if fits and len({i.label for i in sets}) == 1 else None
 
 
 def _once(uses: Sequence[Covered]) -> Iterator[Covered]:
