@@ -24,7 +24,7 @@ def render(asking: Record) -> str:
     shown = visible_record(asking)
     parts = [*map(_situation, worth_asking(shown))]
     if idle := settled(shown):
-        parts.append([NO_ANSWER, *(f"  {heading(item)}: {standing(item)}" for item in idle)])
+        parts.append([NO_ANSWER, *map(_settled, idle)])
     if shown["searches"]:
         parts.append([f"{search(item)}\n    for {sets_of(item)}" for item in shown["searches"]])
     if shown["candidates"]:
@@ -43,6 +43,16 @@ def _situation(item: Record) -> list[str]:
     if len(item["effects"]) > MOST_EFFECTS:
         lines.append(f"  and {plural(len(item['effects']) - MOST_EFFECTS, 'more answer')}")
     return lines
+
+
+def _settled(item: Record) -> str:
+    which = examples(item)
+    return f"  {heading(item)}: {standing(item)}" + (f" ({which})" if which else "")
+
+
+def examples(item: Record) -> str:
+    """Two of several sets, and how many more; nothing for a single one, whose heading names it."""
+    return listed(places(item), most=2) if item["sets"] > 1 else ""
 
 
 def worth_asking(asking: Record) -> list[Record]:

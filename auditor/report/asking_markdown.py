@@ -55,7 +55,9 @@ def _situation(item: Record) -> str:
 
 
 def _settled(item: Record) -> str:
-    return f"- {_heading(item)}: {words.standing(item)}\n"
+    which = words.examples(item)
+    where = f" ({span(which, _SENTENCE)})" if which else ""
+    return f"- {_heading(item)}: {words.standing(item)}{where}\n"
 
 
 def _heading(item: Record) -> str:

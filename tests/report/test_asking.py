@@ -137,6 +137,30 @@ def test_sets_used_alike_are_one_paragraph() -> None:
     assert len(text.splitlines()) < 20
 
 
+def test_what_no_answer_would_change_is_told_last_and_briefly() -> None:
+    """A line for each, naming two of several sets."""
+    found = asked()
+    item = found["situations"][0]
+    place = item["members"][0]["places"][0]
+    item["effects"] = []
+    item["members"] = [item["members"][0] | {"places": [place | {"line": n} for n in (1, 2, 3)]}]
+    item["sets"] = 3
+    found["situations"] = [item]
+    where = f"{place['path']}:1 ({place['name']})"
+
+    assert asking.summary(found).startswith("No answer of the owner would change anything")
+    last = asking.render(found).split("\n\n")[0].splitlines()
+    assert last[0] == asking.NO_ANSWER
+    assert len(last) == 2
+    assert last[1].endswith(", 1 more)")
+    for document in (
+        asking.render(found),
+        asking_markdown.render(found),
+        Page.read(asking_html.render(found)).words(),
+    ):
+        assert where in document
+
+
 def effect(**changes: Any) -> dict[str, Any]:
     """An effect of the record."""
     figure = {"least": 80.0, "most": 80.0, "loose": True}
