@@ -9,6 +9,7 @@ from pathlib import Path
 import pytest
 
 from auditor.intake import inputs, tree
+from auditor.intake.inputs import InputError
 from auditor.intake.readers import NOTHING
 from auditor.intake.reading import Passed
 from auditor.intake.tree import InputResult, read_inputs
@@ -188,10 +189,13 @@ def test_text_that_begins_like_der() -> None:
 
 
 def test_files_of_too_many_bytes() -> None:
-    """Passed over with the reason, which is not the same as holding nothing."""
-    _write({"t/a.pem": b"#" * (inputs.MAX_BYTES + 1)})
-    (passed,) = read_inputs(["t"]).passed
-    assert passed.reason == "the file has more than 16777216 bytes, the most that is read"
+    """Passed over with the reason, which is not the same as holding nothing; an error where the
+    name promises parameters."""
+    _write({f"t/{name}": b"#" * (inputs.MAX_BYTES + 1) for name in ("a.txt", "b.pem")})
+    result = read_inputs(["t"])
+    reason = "the file has more than 16777216 bytes, the most that is read"
+    assert [(item.path, item.reason) for item in result.passed] == [("t/a.txt", reason)]
+    assert result.errors == (InputError("t/b.pem", 1, 1, reason),)
 
 
 def test_depth_and_number_are_bounded(monkeypatch: pytest.MonkeyPatch) -> None:
