@@ -7,6 +7,7 @@ process when the element is 0 or the modulus is not prime.
 """
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 from functools import lru_cache
 from math import isqrt, prod
 
@@ -18,37 +19,53 @@ from auditor.search.log_result import Logarithm
 LARGEST_FIELD = 2**60
 """Below 2^64 ``is_prime`` is known to be never wrong."""
 
-LARGEST_PRIME = 2**18
+LARGEST_PRIME = 2**20
 """Above it our own steps are quicker."""
 
+Factors = Sequence[tuple[int, int]]
 
-def in_small_field(n: int, g: int, h: int, factors: Sequence[tuple[int, int]]) -> Logarithm | None:
+
+def in_small_field(n: int, g: int, h: int, factors: Factors) -> Logarithm | None:
     """The logarithm of h to the base g modulo n, both reduced; None where it is not for this module
     to say: other groups, larger ones, or no logarithm.
 
     ``factors`` are those of n - 1. The operations are those of Pohlig and Hellman's method for g
     and for h to a common base: an estimate, since none were counted.
     """
-    if not (2 < n < LARGEST_FIELD and g and h) or prod(q**e for q, e in factors) != n - 1:
+    if not (2 < n < LARGEST_FIELD and g and h):
         return None
-    if max(q for q, _ in factors) > LARGEST_PRIME or not is_prime(n):
+    base = _base(int(n), int(g), tuple(factors))
+    if base is None:
         return None
-    field = _field(n)
-    order = _order(g, n, factors)
-    value = int(field(int(g)).discrete_log(field(int(h)))) % order
+    value = int(base.element.discrete_log(int(h))) % base.order
     if powmod(g, value, n) != h:
         return None
-    work = sum(e * (2 * n.bit_length() + 2 * isqrt(q)) for q, e in factors)
-    return Logarithm(value, order, 2 * work)
+    return Logarithm(value, base.order, base.operations)
+
+
+@dataclass(frozen=True, slots=True)
+class Base:
+    """An element of a field, which keeps the tables of its first logarithm; its order; and the
+    operations that a logarithm to it takes or so."""
+
+    element: flint.fmpz_mod
+    order: int
+    operations: int
 
 
 @lru_cache(maxsize=4)
-def _field(n: int) -> flint.fmpz_mod_ctx:
-    """The field, which keeps the tables of its first logarithm."""
-    return flint.fmpz_mod_ctx(n)
+def _base(n: int, g: int, factors: tuple[tuple[int, int], ...]) -> Base | None:
+    """g as a base modulo n; None where n is not prime, ``factors`` not those of n - 1, or one of
+    them too large."""
+    if prod(q**e for q, e in factors) != n - 1 or not is_prime(n):
+        return None
+    if max(q for q, _ in factors) > LARGEST_PRIME:
+        return None
+    work = sum(e * (2 * n.bit_length() + 2 * isqrt(q)) for q, e in factors)
+    return Base(flint.fmpz_mod_ctx(n)(g), _order(g, n, factors), 2 * work)
 
 
-def _order(g: int, n: int, factors: Sequence[tuple[int, int]]) -> int:
+def _order(g: int, n: int, factors: Factors) -> int:
     """The order of g modulo the prime n, from the factors of n - 1."""
     order = n - 1
     for q, e in factors:

@@ -44,7 +44,7 @@ def test_no_logarithm_is_no_answer() -> None:
         (561, 2, 4, [(2, 4), (5, 1), (7, 1)]),
         (2, 1, 1, []),
         (2**61 - 1, 37, 5, list(sympy.factorint(2**61 - 2).items())),
-        (1_000_667, 5, 25, [(2, 1), (500_333, 1)]),
+        (5_001_119, 5, 25, [(2, 1), (2_500_559, 1)]),
     ],
 )
 def test_what_is_not_for_the_library_never_reaches_it(
@@ -56,6 +56,6 @@ def test_what_is_not_for_the_library_never_reaches_it(
 ) -> None:
     """0, a part of the group, a composite modulus, a larger field or prime: it may end the process
     or take long."""
-    monkeypatch.delattr(log_small, "_field")
+    monkeypatch.setattr(log_small, "flint", None)
 
     assert in_small_field(n, g, h, factors) is None
