@@ -99,7 +99,7 @@ def test_a_worker_is_not_believed(records: list[dict[str, Any]]) -> None:
 WRONG = {
     "an order": Order(P, 2, ((7, 1),), 1, (SEVEN.id,)),
     "a membership": Membership(P, 2, 7, True),
-    "a witness": Composite(P, witness=2),
+    "a witness": Composite(P * P, witness=3),
 }
 
 
