@@ -4,19 +4,25 @@ import multiprocessing
 import os
 import sys
 import threading
+import time
 from collections.abc import Callable
-from concurrent.futures import Future
+from concurrent.futures import Future, InvalidStateError
+from contextlib import suppress
 from types import TracebackType
 from typing import Any
 
 from auditor.inquiry.work_units import MOST_DIGITS
+
+LOOK_EVERY = 0.5
+"""Seconds between looks at whether the pool still works."""
 
 
 class LocalPool:
     """``jobs`` worker processes with the submit method of an executor; none until one is needed.
 
     Workers end with this process, however it ends; one that is lost costs only what it was at
-    (pebble).
+    (pebble). A worker that is killed before its first task breaks the pool, which then forgets what
+    waits in its queue: what was handed in has failed, and the next task starts another pool.
     """
 
     lost = False
@@ -25,6 +31,7 @@ class LocalPool:
     def __init__(self, jobs: int | None = None) -> None:
         self.jobs = jobs or os.cpu_count() or 1
         self._pool: Any = None
+        self._handed_in: set[Future[Any]] = set()
 
     @property
     def started(self) -> bool:
@@ -33,17 +40,37 @@ class LocalPool:
 
     def submit(self, fn: Callable[..., Any], /, *args: Any) -> "Future[Any]":
         """Runs fn(*args) in a worker."""
+        if self._pool is not None and not self._pool.active:
+            self._end()
         if self._pool is None:
-            # Loaded here: most reviews never have enough to do for it.
-            from pebble import ProcessPool
-
-            self._pool = ProcessPool(
-                max_workers=self.jobs,
-                context=multiprocessing.get_context("spawn"),
-                initializer=_begin_worker,
-            )
+            self._begin()
         future: Future[Any] = self._pool.schedule(fn, args=args)
+        self._handed_in.add(future)
+        future.add_done_callback(self._handed_in.discard)
+        if not self._pool.active:
+            # The watch may have looked before this one was there.
+            _give_up({future})
         return future
+
+    def _begin(self) -> None:
+        # Loaded here: most reviews never have enough to do for it.
+        from pebble import ProcessPool
+
+        self._pool = ProcessPool(
+            max_workers=self.jobs,
+            context=multiprocessing.get_context("spawn"),
+            initializer=_begin_worker,
+        )
+        self._handed_in = set()
+        watch = threading.Thread(
+            target=_give_up_when_broken, args=(self._pool, self._handed_in), daemon=True
+        )
+        watch.start()
+
+    def _end(self) -> None:
+        self._pool.stop()
+        self._pool.join()
+        self._pool = None
 
     def __enter__(self) -> "LocalPool":
         return self
@@ -55,9 +82,20 @@ class LocalPool:
         traceback: TracebackType | None,
     ) -> None:
         if self._pool is not None:
-            self._pool.stop()
-            self._pool.join()
-            self._pool = None
+            self._end()
+
+
+def _give_up_when_broken(pool: Any, futures: "set[Future[Any]]") -> None:
+    """Nobody waits for an answer that cannot come any more."""
+    while pool.active:
+        time.sleep(LOOK_EVERY)
+    _give_up(set(futures))
+
+
+def _give_up(futures: "set[Future[Any]]") -> None:
+    for future in futures:
+        with suppress(InvalidStateError):
+            future.set_exception(RuntimeError("the pool of workers is broken"))
 
 
 def _begin_worker() -> None:

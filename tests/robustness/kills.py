@@ -45,6 +45,7 @@ PARENT, WORKER, EVERYBODY, DASK_WORKER, PROGRAM = VICTIMS = (
 SETS = 10
 BITS = 220
 """Long enough for curves at standard effort, short enough to run often."""
+PATIENCE, HANGS = 180, 999
 ROOT = str(Path(__file__).parents[2])
 
 
@@ -265,7 +266,13 @@ def _kill_one(process: "subprocess.Popen[bytes]", scene: Scene) -> bool:
 
 
 def _finish(process: "subprocess.Popen[bytes]") -> tuple[int, str]:
-    _, errors = process.communicate(timeout=300)
+    """Exit status and message; a review that hangs is ended, with a status that none has."""
+    try:
+        _, errors = process.communicate(timeout=PATIENCE)
+    except subprocess.TimeoutExpired:
+        os.killpg(process.pid, signal.SIGKILL)
+        process.communicate()
+        return HANGS, f"it did not end within {PATIENCE} s"
     return process.returncode, errors.decode().strip()
 
 
