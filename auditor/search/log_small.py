@@ -34,7 +34,7 @@ def in_small_field(n: int, g: int, h: int, factors: Factors) -> Logarithm | None
     """
     if not (2 < n < LARGEST_FIELD and g and h):
         return None
-    base = _base(int(n), int(g), tuple(factors))
+    base = prepared(int(n), int(g), tuple(factors))
     if base is None:
         return None
     value = int(base.element.discrete_log(int(h))) % base.order
@@ -54,9 +54,9 @@ class Base:
 
 
 @lru_cache(maxsize=4)
-def _base(n: int, g: int, factors: tuple[tuple[int, int], ...]) -> Base | None:
-    """g as a base modulo n; None where n is not prime, ``factors`` not those of n - 1, or one of
-    them too large."""
+def prepared(n: int, g: int, factors: tuple[tuple[int, int], ...]) -> Base | None:
+    """g as a base modulo n, kept for the next logarithm; None where n is not prime, ``factors`` are
+    not those of n - 1, or one of them is too large."""
     if prod(q**e for q, e in factors) != n - 1 or not is_prime(n):
         return None
     if max(q for q, _ in factors) > LARGEST_PRIME:
