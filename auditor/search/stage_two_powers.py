@@ -34,6 +34,8 @@ from auditor.search.polynomials import (
 )
 from auditor.search.stage_two import WHEELS, units
 
+LARGEST_DEGREE = 12_000
+"""Of h: about 11 KiB of memory for each root at 2048 bits."""
 LEAST_BLOCK = 4096
 """Points evaluated at a time, or twice the degree if that is more: it bounds the memory."""
 
@@ -65,9 +67,11 @@ class Powers:
 
 @lru_cache(maxsize=16)
 def cover(b1: int, b2: int) -> Powers:
-    """The cheapest way; measured at 2048 bits, a root costs as much as 2.5 points."""
-    plans = (_covering(powers, b1, b2) for powers in WHEELS)
-    return min(plans, key=lambda plan: 5 * plan.degree + 2 * plan.points)
+    """The cheapest way that memory allows; measured at 2048 bits, a root costs as much as 2.5
+    points."""
+    plans = [_covering(powers, b1, b2) for powers in WHEELS]
+    small = [plan for plan in plans if plan.degree <= LARGEST_DEGREE]
+    return min(small, key=lambda plan: 5 * plan.degree + 2 * plan.points)
 
 
 def _covering(powers: tuple[tuple[int, int], ...], b1: int, b2: int) -> Powers:
