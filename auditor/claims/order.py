@@ -16,6 +16,8 @@ from auditor.claims.base import (
     require_normal,
     require_primes,
 )
+from auditor.claims.powers import euler_decides, prime_modulus_power
+from auditor.claims.prime import Prime
 from auditor.claims.reading import natural, only, pairs, truth
 
 
@@ -26,7 +28,8 @@ class Order(Claim):
 
     With A the product and C the rest, coprime: a^(AC) = 1 and a^(AC/r) != 1 for every prime r of
     A give r^e exactly dividing the order for each r^e of A, and a^A != 1 shows that the unknown
-    divisor is not 1. No factorization of the group order is needed.
+    divisor is not 1. No factorization of the group order is needed. Where AC is a multiple of
+    (n-1)/2 and the claim that n is prime is used, powers are read off (see ``powers``).
     """
 
     kind = "order"
@@ -68,15 +71,23 @@ class Order(Claim):
         require(self.rest >= 1, "the rest is not positive")
         require_normal(self.known)
         require(gcd(known, self.rest) == 1, "a known prime still divides the rest")
-        require_primes({prime for prime, _ in self.known}, used)
-        require(len(used) == len(self.known), "a claim is used that says nothing")
-        require(gmpy2.powmod(a, known * self.rest, n) == 1, "the order does not divide this")
-        for prime, _ in self.known:
-            require(
-                gmpy2.powmod(a, known * self.rest // prime, n) != 1, "a prime factor is superfluous"
-            )
+        primes = {prime for prime, _ in self.known}
+        by_euler = self._modulus_is_prime(used)
+        require_primes(primes | ({n} if by_euler else set()), used)
+        require(len(used) == len(primes) + by_euler, "a claim is used that says nothing")
+        power = prime_modulus_power if by_euler else gmpy2.powmod
+        require(power(a, known * self.rest, n) == 1, "the order does not divide this")
+        for prime in primes:
+            require(power(a, known * self.rest // prime, n) != 1, "a prime factor is superfluous")
         if self.rest > 1:
             require(gmpy2.powmod(a, known, n) != 1, "the order is the known part alone")
+
+    def _modulus_is_prime(self, used: Mapping[str, Claim]) -> bool:
+        """Whether a claim says that the modulus is a prime, where that saves powers; the modulus
+        is no factor of the order."""
+        whole = product(self.known) * self.rest
+        named = any(isinstance(claim, Prime) and claim.n == self.modulus for claim in used.values())
+        return named and euler_decides(self.modulus, whole)
 
 
 @dataclass(frozen=True)

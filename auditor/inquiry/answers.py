@@ -27,7 +27,8 @@ from auditor.claims.origin_formula import (
 )
 from auditor.claims.origin_generator import CanonicalGenerator, generator_from_integers
 from auditor.claims.origin_recipe import Recipe
-from auditor.claims.primality_tests import DETERMINISTIC_BELOW, passes_strong_test
+from auditor.claims.powers import euler_decides, prime_modulus_power
+from auditor.claims.primality_tests import DETERMINISTIC_BELOW, is_prime_below_2_64
 from auditor.claims.prime import Prime
 from auditor.claims.public_values import (
     SharedExponents,
@@ -166,12 +167,22 @@ class Answers:
         known = self.claims.prime(n)
         if known is not None and (self.claims.perfect_power(n) or not gmpy2.is_power(n)):
             return known
-        if n < DETERMINISTIC_BELOW or not _looks_prime(n):
-            candidate = primality.candidate(n)
-            if not candidate.prime:
-                return self._composite(candidate)
-            if n < DETERMINISTIC_BELOW:
-                return self._accept(Prime(n, "below-2^64"))
+        likely = self._prime(n)
+        if likely is not None:
+            return likely
+        candidate = primality.candidate(n)
+        if candidate.prime:
+            # No quick test found it, an unpredictable base did.
+            return self._accept(Composite(n, witness=primality.least_witness(n)))
+        return self._composite(candidate)
+
+    def _prime(self, n: int) -> Prime | None:
+        """The claim that ``n`` is prime, by the best method that costs no search; None, and nothing
+        claimed of it, where it is not. Each test is run once: the check is what finds out."""
+        if n < DETERMINISTIC_BELOW:
+            return self._accept(Prime(n, "below-2^64")) if is_prime_below_2_64(n) else None
+        if any(n % prime == 0 for prime in primes_up_to(primality.TRIAL_BOUND)):
+            return None
         return self._proved_from_half(n) or self._probable(n)
 
     def _composite(self, candidate: primality.Candidate) -> Composite:
@@ -188,23 +199,20 @@ class Answers:
         """A proof of n = 2q + 1 from q, where q is a prime itself: it costs one exponentiation.
         The base 2 serves whenever n is prime, since its square less 1 is 3."""
         half = (n - 1) // 2
-        if not _looks_prime(half):
-            return None
-        support = self.settle_primality(half)
+        support = self.claims.prime(half) or self._prime(half)
         if not isinstance(support, Prime):
             return None
         proof = Prime(n, "n-1", factored=((half, 1),), witnesses=((half, 2),), uses=(support.id,))
+        return self._if_it_holds(proof)
+
+    def _probable(self, n: int) -> Prime | None:
+        return self._if_it_holds(Prime(n, "baillie-psw", rounds=self.run.rounds))
+
+    def _if_it_holds(self, claim: Kind) -> Kind | None:
         try:
-            return self._accept(proof)
+            return self._accept(claim)
         except Refuted:
             return None
-
-    def _probable(self, n: int) -> Prime | Composite:
-        try:
-            return self._accept(Prime(n, "baillie-psw", rounds=self.run.rounds))
-        except Refuted:
-            # No quick test found it, an unpredictable base did.
-            return self._accept(Composite(n, witness=primality.least_witness(n)))
 
     def _plan(self) -> Plan:
         return plan_for(self.run.effort, self.run.factor_digits)
@@ -289,20 +297,26 @@ class Answers:
         """The order of an element whose ``multiple``-th power is 1, by stripping primes from it
         (Cohen 1993, algorithm 1.4.3, from memory)."""
         factors, rest = self._known_factors(multiple)
-        whole = gmpy2.powmod(element, rest, n)
+        modulus = self.claims.prime(n)
+        power = prime_modulus_power if isinstance(modulus, Prime) else gmpy2.powmod
+        whole = power(element, rest, n)
         known: list[tuple[int, int]] = []
         for prime, exponent in factors:
             others = product(factors) // prime**exponent
-            power, steps = gmpy2.powmod(whole, others, n), 0
-            while power != 1 and steps < exponent:
+            reached, steps = power(whole, others, n), 0
+            while reached != 1 and steps < exponent:
                 # The last power is 1 if the multiple is one: the check would notice.
-                power = gmpy2.powmod(power, prime, n) if steps + 1 < exponent else 1
+                reached = gmpy2.powmod(reached, prime, n) if steps + 1 < exponent else 1
                 steps += 1
             if steps:
                 known.append((prime, steps))
         complete = rest == 1 or gmpy2.powmod(element, product(tuple(known)), n) == 1
-        uses = tuple(sorted(self.settle_primality(prime).id for prime, _ in known))
-        self._accept(Order(n, element, tuple(known), 1 if complete else rest, uses))
+        left = 1 if complete else rest
+        support = [self.settle_primality(prime) for prime, _ in known]
+        if isinstance(modulus, Prime) and euler_decides(n, product(tuple(known)) * left):
+            support.append(modulus)
+        uses = tuple(sorted(claim.id for claim in support))
+        self._accept(Order(n, element, tuple(known), left, uses))
 
     def _known_factors(self, multiple: int) -> tuple[Factors, int]:
         claim = self.claims.factorization(multiple)
@@ -322,14 +336,6 @@ class Answers:
         if worth_keeping(claim):
             self.keep([claim])
         return claim
-
-
-def _looks_prime(n: int) -> bool:
-    """Whether ``n`` has no small factor and passes the strong test to the base 2: what it costs to
-    find out that all the rounds are worth running."""
-    if any(n % prime == 0 for prime in primes_up_to(primality.TRIAL_BOUND)):
-        return False
-    return n > 1 and passes_strong_test(n, 2)
 
 
 def _membership(n: int, element: int, exponent: int) -> Membership:

@@ -11,6 +11,7 @@ declarations lead to the same claims on any number of processes.
 from collections.abc import Callable, Iterable, Mapping, Sequence
 
 from auditor.claims.base import Claim
+from auditor.claims.factorization import Factorization
 from auditor.claims.ledger import subjects
 from auditor.declaration import Declaration
 from auditor.facts import Established, establish
@@ -123,10 +124,15 @@ class _Inquiry:
         return (*cheap, *(question for question in deep if question.asks not in CHEAP))
 
     def _remember(self, numbers: Iterable[int]) -> list[Claim]:
-        """What earlier runs knew about these and is news; then it is time to look again."""
-        claims = self._answers.claims
-        new = [claim for claim in self._recall(set(numbers)) if claim.id not in claims]
-        claims.add(new)
+        """What earlier runs knew about these, and about the rests that they left unfactored, and is
+        news; then it is time to look again."""
+        claims, new, wanted = self._answers.claims, list[Claim](), set(numbers)
+        while wanted:
+            found = [claim for claim in self._recall(wanted) if claim.id not in claims]
+            claims.add(found)
+            new += found
+            factored = (claim for claim in found if isinstance(claim, Factorization))
+            wanted = {claim.rest for claim in factored if claim.rest > 1}
         return new
 
     def _ask(self, questions: set[Question]) -> list[Claim]:

@@ -331,6 +331,8 @@ def test_the_data_file_is_read() -> None:
         "adversarial_composite",
         "dh_parameters",
         "n_minus_1_proof",
+        "elliptic_chain",
+        "elliptic_forgery",
     }
     assert number("0x10") == 16
     assert yaml.__version__
