@@ -104,14 +104,18 @@ def test_the_order_of_the_sets_moves_no_claim() -> None:
     assert {claim.id for claim in reviewed(sets[::-1])[0]} == ids
 
 
-def test_a_warm_ledger_gives_the_report_of_a_cold_one(tmp_path: Path) -> None:
-    """And what is recalled is not answered again."""
+@pytest.mark.parametrize("run", [QUICK, STANDARD], ids=["quick", "standard"])
+def test_a_warm_ledger_gives_the_report_of_a_cold_one(run: RunValues, tmp_path: Path) -> None:
+    """And what is recalled is not answered again; of a rest that was searched the question is put,
+    with nothing left to do."""
     sets, statuses = mixed_sets(4), list[Status]()
-    cold = reviewed(sets, STANDARD, ledger=tmp_path / "l")[1]
-    warm = reviewed(sets, STANDARD, ledger=tmp_path / "l", progress=statuses.append)[1]
+    sets.append(declared("a rest is left", random_prime(random.Random(5), 420)))
+    claims, cold = reviewed(sets, run, ledger=tmp_path / "l")
+    warm = reviewed(sets, run, ledger=tmp_path / "l", progress=statuses.append)[1]
 
-    assert warm == cold == reviewed(sets, STANDARD)[1]
-    assert {status.question.asks for status in statuses} <= {"membership", "order"}
+    assert warm == cold == reviewed(sets, run)[1]
+    assert any(claim.kind == "searched" for claim in claims)
+    assert {status.question.asks for status in statuses} <= {"membership", "order", "factorization"}
 
 
 @pytest.mark.parametrize("after", [1, 7, 20, 33])
