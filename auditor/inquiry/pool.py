@@ -2,12 +2,14 @@
 
 import multiprocessing
 import os
+import signal
 import sys
 import threading
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from concurrent.futures import Future, InvalidStateError
-from contextlib import suppress
+from contextlib import contextmanager, suppress
+from multiprocessing import resource_tracker
 from types import TracebackType
 from typing import Any
 
@@ -56,11 +58,17 @@ class LocalPool:
         # Loaded here: most reviews never have enough to do for it.
         from pebble import ProcessPool
 
-        self._pool = ProcessPool(
-            max_workers=self.jobs,
-            context=multiprocessing.get_context("spawn"),
-            initializer=_begin_worker,
-        )
+        # It would let the signal through while it starts.
+        resource_tracker.ensure_running()
+        with _interrupts_held():
+            self._pool = ProcessPool(
+                max_workers=self.jobs,
+                context=multiprocessing.get_context("spawn"),
+                initializer=_begin_worker,
+            )
+            # Asking is what starts the workers.
+            if not self._pool.active:
+                raise RuntimeError("the pool of workers does not start")
         self._handed_in = set()
         watch = threading.Thread(
             target=_give_up_when_broken, args=(self._pool, self._handed_in), daemon=True
@@ -83,6 +91,17 @@ class LocalPool:
     ) -> None:
         if self._pool is not None:
             self._end()
+
+
+@contextmanager
+def _interrupts_held() -> Iterator[None]:
+    """What starts in here never hears of Ctrl-C, not even while its interpreter starts; this
+    process hears of it afterwards."""
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def _give_up_when_broken(pool: Any, futures: "set[Future[Any]]") -> None:

@@ -27,6 +27,19 @@ def test_workers_killed_before_their_first_task_leave_nobody_waiting() -> None:
         assert pool.submit(abs, -7).result(timeout=60) == 7
 
 
+def test_an_interrupt_while_workers_start_is_for_this_process_alone() -> None:
+    """They do not hear of it, and do their work."""
+    with LocalPool(2) as pool:
+        future = pool.submit(abs, -1)
+        found = workers(os.getpid())
+        for worker in found:
+            os.kill(worker, signal.SIGINT)
+        assert len(found) == 2
+        assert future.result(timeout=60) == 1
+        assert workers(os.getpid()) == found
+        assert signal.SIGINT not in signal.pthread_sigmask(signal.SIG_BLOCK, ())
+
+
 def test_tasks_that_a_broken_pool_has_forgotten_fail() -> None:
     """As when all workers expire: its queue is never emptied, and nobody has to wait for it."""
     with LocalPool(1) as pool:
