@@ -7,9 +7,9 @@ from difflib import get_close_matches
 from pathlib import Path
 from typing import Any
 
-from auditor.data_files import data
 from auditor.encoding import shorten
 from auditor.facts import vocabulary
+from auditor.report.templates import environment
 from auditor.report.text import visible
 from auditor.report.words import plural
 from auditor.rulebooks.examples import failures
@@ -53,23 +53,10 @@ def reference(sources: Sequence[str | Path] = ()) -> str:
     It needs no other file: no script, no request; a place ``#rule-ID`` for every rule. Raises
     RulebookError for books that cannot be used together.
     """
-    from jinja2 import Environment, FunctionLoader, StrictUndefined
-    from markupsafe import Markup
-
-    folder = data("reports")
-    environment = Environment(
-        loader=FunctionLoader(lambda name: (folder / name).read_text(encoding="utf-8")),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        keep_trailing_newline=True,
-        finalize=_shown,
-    )
     books = load_all(sources or available(), vocabulary())
     rules = [rule for book in books for rule in book.rules]
-    return environment.get_template("rules.html.j2").render(
-        style=Markup((folder / "report.css").read_text(encoding="utf-8")),
+    showing = environment().overlay(finalize=_shown)
+    return showing.get_template("rules.html.j2").render(
         books=books,
         rules=rules,
         doubtful=sum(rule.criterion.confidence != "confirmed" for rule in rules),

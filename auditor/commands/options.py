@@ -77,6 +77,15 @@ BOOKS = click.option("--rulebook", multiple=True, help="A shipped book or a file
 AS_OF = click.option(
     "--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today."
 )
+LEAST_MARKDOWN = 4_000
+"""Characters that a Markdown document has at least; what the renderers take too."""
+MARKDOWN_LIMIT = click.option(
+    "--markdown-limit",
+    type=click.IntRange(LEAST_MARKDOWN),
+    default=32_767,
+    show_default=True,
+    help="Most characters.",
+)
 POLICY = click.option(
     "--policy-from", type=click.Path(exists=True, file_okay=False), help=POLICY_HELP
 )

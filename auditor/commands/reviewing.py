@@ -8,6 +8,7 @@ import click
 from auditor.commands.options import (
     AS_OF,
     BOOKS,
+    MARKDOWN_LIMIT,
     POLICY,
     engine_of,
     policy_of,
@@ -27,7 +28,7 @@ FAIL_ON = ("hold", "open", "conditions", "never")
 @click.option("--json", "json_", type=click.Path(dir_okay=False), help="Write the full record.")
 @click.option("--json-lines", type=click.Path(dir_okay=False), help="Write it a set a line.")
 @click.option("--sarif", type=click.Path(dir_okay=False), help="Write it as SARIF 2.1.0.")
-@click.option("--markdown-limit", default=32_767, show_default=True, help="Most characters.")
+@MARKDOWN_LIMIT
 @BOOKS
 @AS_OF
 @click.option("--fail-on", type=click.Choice(FAIL_ON), default="conditions", show_default=True)

@@ -5,10 +5,7 @@ from typing import Any
 
 import click
 
-from auditor.commands.options import FILE, Command
-
-LEAST = 4_000
-"""Characters that a Markdown document has at least; what the renderers take too."""
+from auditor.commands.options import FILE, MARKDOWN_LIMIT, Command
 
 Formats = Mapping[str, Callable[[], str]]
 """The renderers by format: ``html``, ``markdown``, ``json``, and ``text`` for the terminal."""
@@ -18,13 +15,7 @@ _OPTIONS = (
     click.option("--html", type=FILE, help="Write it as HTML."),
     click.option("--markdown", type=FILE, help="Write it as Markdown."),
     click.option("--json", "json_", type=FILE, help="Write the full record."),
-    click.option(
-        "--markdown-limit",
-        type=click.IntRange(LEAST),
-        default=32_767,
-        show_default=True,
-        help="Most characters.",
-    ),
+    MARKDOWN_LIMIT,
 )
 
 

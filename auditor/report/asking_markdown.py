@@ -4,8 +4,7 @@ from collections.abc import Iterator, Mapping
 from typing import Any
 
 from auditor.report import asking as words
-from auditor.report.fitting import fitted, span
-from auditor.report.markdown import LIMIT, prose
+from auditor.report.markdown_text import LIMIT, fitted, prose, span
 from auditor.report.text import clipped, visible_record
 
 Record = Mapping[str, Any]

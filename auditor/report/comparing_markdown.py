@@ -12,8 +12,7 @@ from auditor.report.comparing import (
     summary,
     verdict,
 )
-from auditor.report.fitting import fitted, span
-from auditor.report.markdown import LIMIT, prose
+from auditor.report.markdown_text import LIMIT, fitted, prose, span
 from auditor.report.text import clipped, visible_record
 
 Record = Mapping[str, Any]

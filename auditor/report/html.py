@@ -5,10 +5,8 @@ templates' escaping, which is always on; a name that a template asks for and doe
 error and never an empty place.
 """
 
-from functools import cache
 from typing import TYPE_CHECKING
 
-from auditor.data_files import data
 from auditor.report import words
 from auditor.report.claim_words import is_small_prime, sentence
 from auditor.report.common_view import common
@@ -17,11 +15,12 @@ from auditor.report.moduli_view import moduli, moduli_picture
 from auditor.report.order_view import GroupOrders
 from auditor.report.pictures import PART_MEANING, routes_picture
 from auditor.report.shared_findings import by_sheet, shared_findings
+from auditor.report.templates import environment
 from auditor.report.text import read_integer
 from auditor.report.view import Record, View, view
 
 if TYPE_CHECKING:
-    from jinja2 import Environment
+    pass
 
 MOST_SHEETS = 250
 """Sheets written out, the worst first; the decision sheet has all sets, the JSON report all."""
@@ -40,7 +39,7 @@ def render(record: Record | View) -> str:
     shared = shared_findings(report.sheets)
     keys = sorted(claims) if len(claims) <= MOST_ENTRIES else report.claims_behind(shown)
     return (
-        _environment()
+        environment()
         .get_template("report.html.j2")
         .render(
             report=report,
@@ -74,25 +73,3 @@ def _small_primes(claims: Record) -> list[tuple[str, int]]:
         if is_small_prime(claim)
     ]
     return sorted(found, key=lambda item: item[1])
-
-
-@cache
-def _environment() -> "Environment":
-    from jinja2 import Environment, FunctionLoader, StrictUndefined
-    from markupsafe import Markup
-
-    folder = data("reports")
-
-    def source(name: str) -> str:
-        return (folder / name).read_text(encoding="utf-8")
-
-    environment = Environment(
-        loader=FunctionLoader(source),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-        keep_trailing_newline=True,
-    )
-    environment.globals["style"] = Markup(source("report.css"))
-    return environment

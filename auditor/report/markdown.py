@@ -12,6 +12,15 @@ from typing import TypeVar
 
 from auditor.report.common_view import MOST_NAMED, Common, common
 from auditor.report.findings_view import MergedFinding, Remedy
+from auditor.report.markdown_text import (
+    LIMIT,
+    MESSAGE,
+    cell,
+    prose,
+    require_room,
+    span,
+    units,
+)
 from auditor.report.questions_view import Question
 from auditor.report.shared_findings import Lines, SharedFinding, by_sheet, shared_findings
 from auditor.report.sheet_view import Sheet
@@ -21,25 +30,13 @@ from auditor.report.words import plural
 
 Item = TypeVar("Item")
 
-LIMIT = 32_767
-"""Characters that the fields of common trackers hold; counted in UTF-16 units, the most that any
-of them counts for a character."""
-
-LEAST = 4_000
-"""A limit below this leaves no room for the head and the cautions."""
-
-_NAME, _MESSAGE = 120, 400
-_ACTIVE = re.compile(r"([\\`*\[\]|~]|<(?=[A-Za-z/!?])|(?<![0-9A-Za-z])_|_(?![0-9A-Za-z]))")
-_CALLING = re.compile(r"(@|://|\b(?i:www)\.|#(?=\d)|\b(?i:GH)-(?=\d))")
-
 
 def render(record: Record | View, *, limit: int = LIMIT) -> str:
     """The report in at most ``limit`` UTF-16 units. ValueError for a limit below :data:`LEAST`."""
-    if limit < LEAST:
-        raise ValueError(f"a limit of at least {LEAST:,} characters is needed, not {limit:,}")
+    require_room(limit)
     report = view(record)
     head, foot = "\n".join(_head(report)), "\n".join(_foot(report))
-    room = _Room(limit - _units(head) - _units(foot) - _RESERVE)
+    room = _Room(limit - units(head) - units(foot) - _RESERVE)
     decisions = _fitted("set", _DECISIONS, report.sheets, _row, room.share(3))
     things = common(report.record["overview"])
     shares = _fitted("entry", "\n## In common\n\n", things, _in_common, room.share(8))
@@ -71,7 +68,7 @@ class _Room:
 
     def take(self, text: str) -> bool:
         """Whether ``text`` fits; its room is then taken."""
-        size = _units(text)
+        size = units(text)
         if size > self.left:
             return False
         self.left -= size
@@ -83,34 +80,12 @@ class _Share(_Room):
     whole: _Room
 
     def take(self, text: str) -> bool:
-        size = _units(text)
+        size = units(text)
         if size > self.left:
             return False
         self.left -= size
         self.whole.left -= size
         return True
-
-
-def _units(text: str) -> int:
-    return len(text.encode("utf-16-le")) // 2
-
-
-def code(text: str, limit: int = _NAME) -> str:
-    """Outside text as one code span, safe within a table too; nothing in it is active.
-
-    The fence is longer than any run of backticks in the text (CommonMark 0.31.2, 6.1); a pipe is
-    escaped as tables want it (GitHub Flavored Markdown 0.29, 4.10).
-    """
-    text = re.sub(r"\s+", " ", clipped(text, limit)) or " "
-    fence = "`" * (max(map(len, re.findall(r"`+", text)), default=0) + 1)
-    pad = " " if text[0] == "`" or text[-1] == "`" else ""
-    return f"{fence}{pad}{text}{pad}{fence}".replace("|", "\\|")
-
-
-def prose(text: str) -> str:
-    """A sentence with its active characters escaped and what would call somebody taken apart."""
-    text = _ACTIVE.sub(r"\\\1", re.sub(r"\s+", " ", text))
-    return _CALLING.sub(r"`\1`", text.replace("&", "&amp;"))
 
 
 def _head(report: View) -> Iterator[str]:
@@ -120,13 +95,13 @@ def _head(report: View) -> Iterator[str]:
     yield ""
     yield f"{report.size[0].upper()}{report.size[1:]}."
     yield ""
-    yield f"As of {report.as_of}, {code(report.tool)}, effort {code(report.effort)}."
-    books = ", ".join(f"{code(book.name)} ({code(book.sha256[:12])})" for book in report.books[:20])
+    yield f"As of {report.as_of}, {span(report.tool)}, effort {span(report.effort)}."
+    books = ", ".join(f"{span(book.name)} ({span(book.sha256[:12])})" for book in report.books[:20])
     yield f"Rulebooks (SHA-256): {books or 'none'}."
-    yield f"{plural(len(report.inputs), 'input')}; record SHA-256 {code(report.record_digest)}."
+    yield f"{plural(len(report.inputs), 'input')}; record SHA-256 {span(report.record_digest)}."
     for notice in report.notices[:10]:
         yield ""
-        yield f"Note: {code(notice, _MESSAGE)}"
+        yield f"Note: {span(notice, MESSAGE)}"
     yield ""
 
 
@@ -147,7 +122,7 @@ def _row(sheet: Sheet) -> str:
     cells = [
         str(sheet.number),
         f"**{sheet.position}**" if sheet.position == "hold" else sheet.position,
-        code(sheet.name, 60),
+        cell(sheet.name, 60),
         str(strength.required),
         strength.tables_text,
         strength.passive.text,
@@ -191,10 +166,10 @@ def _shared(finding: SharedFinding) -> str:
         "",
         f"- Sets: {finding.numbers}",
         f"- Where: {_where(finding.places)}",
-        *(f"- Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria),
+        *(f"- Criterion: {prose(item.source)} ({span(item.rule)})" for item in finding.criteria),
     ]
     if finding.first.outcome == "undetermined":
-        lines += [f"- Missing: {code(name)}, {prose(why)}" for name, why in finding.missing]
+        lines += [f"- Missing: {span(name)}, {prose(why)}" for name, why in finding.missing]
     for remedy in finding.remedies:
         lines.append(f"- Remedy: {prose(remedy.text)}")
         lines += [f"- It breaks: {prose(item)}" for item in remedy.breaks]
@@ -207,7 +182,7 @@ def _shared(finding: SharedFinding) -> str:
 
 def _where(places: Sequence[Lines]) -> str:
     """The first files with their lines, each within bounds, and how many more files there are."""
-    text = ", ".join(code(place.text, 400) for place in places[:8])
+    text = ", ".join(span(place.text, 400) for place in places[:8])
     return text + (f" and {plural(len(places) - 8, 'more file')}" if len(places) > 8 else "")
 
 
@@ -243,26 +218,26 @@ def _opening(sheet: Sheet) -> str:
     numbers = [("Modulus", sheet.modulus), ("Generator", sheet.generator)]
     if sheet.subgroup_order is not None:
         numbers.append(("Declared order", sheet.subgroup_order))
-    places = ", ".join(code(place) for place in sheet.places[:8])
+    places = ", ".join(span(place) for place in sheet.places[:8])
     if len(sheet.places) > 8:
         places += f" and {len(sheet.places) - 8:,} more"
     lines = [
-        f"\n### {sheet.number}. {code(sheet.name)}: {sheet.position}",
+        f"\n### {sheet.number}. {span(sheet.name)}: {sheet.position}",
         "",
         prose(sheet.meaning) if sheet.findings else prose(f"{sheet.meaning} {sheet.reason}"),
         "",
         f"- Where: {places}",
         *(f"- {name}: {_number(number)}" for name, number in numbers),
-        f"- Usage: {'; '.join(code(part, 200) for part in sheet.usage[:6])}",
-        f"- On the owner's word: {', '.join(map(code, sheet.owners_word)) or 'nothing'}",
-        *(f"- Limit: {prose(clipped(limit, _MESSAGE))}" for limit in sheet.limits),
+        f"- Usage: {'; '.join(span(part, 200) for part in sheet.usage[:6])}",
+        f"- On the owner's word: {', '.join(map(span, sheet.owners_word)) or 'nothing'}",
+        *(f"- Limit: {prose(clipped(limit, MESSAGE))}" for limit in sheet.limits),
     ]
     return "\n".join(lines) + "\n"
 
 
 def _number(number: Number) -> str:
-    text = code(number.short)
-    return f"{text}, {number.length} bits, SHA-256 {code(number.mark)}" if number.is_long else text
+    text = span(number.short)
+    return f"{text}, {number.length} bits, SHA-256 {span(number.mark)}" if number.is_long else text
 
 
 def _finding(sheet: Sheet, number: int, told: Told) -> str:
@@ -272,15 +247,15 @@ def _finding(sheet: Sheet, number: int, told: Told) -> str:
     if shared := told.get((sheet.number, number)):
         return _reference(finding, number, shared)
     if finding.grade == "observation":
-        rules = ", ".join(code(item.rule) for item in finding.criteria)
+        rules = ", ".join(span(item.rule) for item in finding.criteria)
         return f"{_stated(finding, number, finding.statements[:1])} ({rules})\n"
     lines = [_stated(finding, number, finding.statements[:1]), ""]
     lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
     lines += [
-        f"   - Criterion: {prose(item.source)} ({code(item.rule)})" for item in finding.criteria
+        f"   - Criterion: {prose(item.source)} ({span(item.rule)})" for item in finding.criteria
     ]
     for name, why in finding.missing if finding.outcome == "undetermined" else ():
-        lines.append(f"   - Missing: {code(name)}, {prose(why)}")
+        lines.append(f"   - Missing: {span(name)}, {prose(why)}")
     for remedy, first in sheet.remedies(number):
         if first != number:
             lines.append(f"   - Remedy: as for {first}.")
@@ -308,7 +283,7 @@ def _stated(finding: MergedFinding, number: int, statements: Sequence[str]) -> s
 
 
 def _remedy(remedy: Remedy) -> list[str]:
-    patch = ", ".join(code(entry, 200) for entry in remedy.patch)
+    patch = ", ".join(span(entry, 200) for entry in remedy.patch)
     declare = f" Declare {patch}." if patch else ""
     breaks = [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
     return [f"   - Remedy: {prose(remedy.text)}{declare}", *breaks]
@@ -325,13 +300,13 @@ def _question(question: Question) -> str:
 
 
 def _in_common(thing: Common) -> str:
-    names = ", ".join(code(name) for name in thing.names[:MOST_NAMED])
+    names = ", ".join(span(name) for name in thing.names[:MOST_NAMED])
     more = len(thing.names) - MOST_NAMED
     return f"- {prose(thing.sentence)}: {names}{f' and {more:,} more' if more > 0 else ''}.\n"
 
 
 def _message(text: str) -> str:
-    return f"- {code(text, _MESSAGE)}\n"
+    return f"- {span(text, MESSAGE)}\n"
 
 
 def _fitted(

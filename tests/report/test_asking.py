@@ -20,7 +20,7 @@ from auditor.intake.inputs import InputError
 from auditor.intake.tree import read_inputs
 from auditor.report import asking, asking_html, asking_markdown
 from auditor.report.asking_record import record
-from auditor.report.fitting import LEAST
+from auditor.report.markdown_text import LEAST
 from auditor.report.text import HIDDEN, visible
 from auditor.review import DEFAULT_BOOKS, Surroundings, investigate
 from auditor.rulebooks.loading import load_all

@@ -11,11 +11,11 @@ import pytest
 from click.testing import CliRunner
 
 from auditor.cli import main
-from auditor.commands import short
+from auditor.commands import options
 from auditor.compare import compare
 from auditor.data_files import data
 from auditor.report import comparing, comparing_html, comparing_markdown
-from auditor.report.fitting import LEAST
+from auditor.report.markdown_text import LEAST
 from auditor.report.text import HIDDEN, clipped, visible
 from tests.report.pages import Page
 from tests.report.records import bulky, fixture, hostile_texts, with_text
@@ -188,7 +188,7 @@ def test_the_command(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
 
 def test_the_least_limit_is_that_of_the_renderers() -> None:
     """The command refuses what they would refuse, without loading them."""
-    assert short.LEAST == LEAST
+    assert options.LEAST_MARKDOWN == LEAST
 
 
 @pytest.mark.parametrize(

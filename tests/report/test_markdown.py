@@ -8,7 +8,8 @@ from hypothesis import strategies as st
 from markdown_it import MarkdownIt
 from markdown_it.token import Token
 
-from auditor.report.markdown import LEAST, LIMIT, code, prose, render
+from auditor.report.markdown import render
+from auditor.report.markdown_text import LEAST, LIMIT, cell, prose, span
 from auditor.report.text import HIDDEN, clipped, visible
 from tests.report.records import FIXTURES, bulky, fixture, hostile_texts, with_text
 
@@ -102,9 +103,9 @@ def test_a_limit_without_room_is_refused() -> None:
 def test_a_code_span_holds_its_text_and_nothing_else(text: str) -> None:
     """One inline token, alone and in a table cell, with the text that went in."""
     shown = visible(text)
-    span = code(shown, 10_000)
-    (inline,) = PARSER.parseInline(span.replace("\\|", "|"))
-    cells = [t for t in PARSER.parse(f"| a |\n| --- |\n| {span} |\n") if t.type == "inline"]
+    alone, within = span(shown, 10_000), cell(shown, 10_000)
+    (inline,) = PARSER.parseInline(alone)
+    cells = [t for t in PARSER.parse(f"| a |\n| --- |\n| {within} |\n") if t.type == "inline"]
 
     assert [t.type for t in inline.children or []] == ["code_inline"]
     assert len(cells) == 2

@@ -6,6 +6,7 @@ from typing import Any
 import pytest
 
 from auditor.report import html, markdown
+from auditor.report.markdown_text import LEAST, span
 from auditor.report.shared_findings import FEWEST, by_sheet, ranges, shared_findings
 from auditor.report.view import view
 from tests.report.pages import Page
@@ -78,13 +79,13 @@ def test_the_ticket_tells_a_criterion_of_many_sets_once() -> None:
         assert text.count(f"\n### F{finding.number}. {finding.first.words}, 12 sets\n") == 1
         assert len(re.findall(rf"^\d+\. .* See F{finding.number}\.$", text, re.MULTILINE)) == 12
         for criterion in finding.criteria:
-            assert text.count(f"({markdown.code(criterion.rule)})") == 1
+            assert text.count(f"({span(criterion.rule)})") == 1
 
 
 def test_what_is_not_told_together_is_told_on_each_sheet() -> None:
     """A ticket too short for the common part refers to nothing that is not in it."""
     record = alike(12)
-    for limit in range(markdown.LEAST, 16_000, 500):
+    for limit in range(LEAST, 16_000, 500):
         text = markdown.render(record, limit=limit)
         headed = set(re.findall(r"^### (F\d+)\.", text, re.MULTILINE))
         assert set(re.findall(r" See (F\d+)\.$", text, re.MULTILINE)) <= headed
