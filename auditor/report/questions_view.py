@@ -10,6 +10,9 @@ Record = Mapping[str, Any]
 Waiting = list[tuple[int, str, tuple[str, ...]]]
 
 OWNERS = "key:"
+OWNERS_WORD = (
+    "the owner's word, in the declaration or in a usage file (auditor ask --draft-usage drafts one)"
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +86,7 @@ def _waiting(sheet: Sheet) -> dict[str, tuple[str, ...]]:
 def _wording(key: str, question: Record | None) -> tuple[str, str]:
     """The question in words, and what an answer costs."""
     if key.startswith(OWNERS):
-        return f"The owner has not declared {key.removeprefix(OWNERS)}.", "the owner's word"
+        return f"The owner has not declared {key.removeprefix(OWNERS)}.", OWNERS_WORD
     if question is None:
         return f"{key.rsplit('-', 1)[0].replace('-', ' ')} ({key})", "not known"
     if question["cost"] is None:
