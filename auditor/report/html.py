@@ -5,8 +5,6 @@ templates' escaping, which is always on; a name that a template asks for and doe
 error and never an empty place.
 """
 
-from typing import TYPE_CHECKING
-
 from auditor.report import words
 from auditor.report.claim_words import is_small_prime, sentence
 from auditor.report.common_view import common
@@ -18,9 +16,6 @@ from auditor.report.shared_findings import by_sheet, shared_findings
 from auditor.report.templates import environment
 from auditor.report.text import read_integer
 from auditor.report.view import Record, View, view
-
-if TYPE_CHECKING:
-    pass
 
 MOST_SHEETS = 250
 """Sheets written out, the worst first; the decision sheet has all sets, the JSON report all."""
