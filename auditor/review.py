@@ -127,12 +127,12 @@ def investigate(
             ledger.keep(batch)
 
     def recall(numbers: Iterable[int]) -> list[Claim]:
-        found: list[Claim] = []
-        if ledger is not None:
-            for n in sorted(set(numbers) - recalled):
-                found += ledger.recall(n, run.rounds, held)
-                held.add(found)
-                recalled.add(n)
+        if ledger is None:
+            return []
+        fresh = set(numbers) - recalled
+        recalled.update(fresh)
+        found = ledger.recall(fresh, run.rounds, held)
+        held.add(found)
         return found
 
     judging = Judging(books, vocabulary())
@@ -162,7 +162,8 @@ def investigate(
 def _ledger(surroundings: Surroundings, notices: list[str]) -> Ledger | None:
     if surroundings.ledger is None:
         return None
-    return Ledger(surroundings.ledger, surroundings.draw, notices.append)
+    jobs = surroundings.cores.jobs
+    return Ledger(surroundings.ledger, surroundings.draw, notices.append, jobs)
 
 
 def _reading(read: InputResult, notices: tuple[str, ...]) -> Reading:

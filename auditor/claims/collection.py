@@ -185,7 +185,7 @@ def check_all(claims: Claims, draw: Draw) -> dict[str, str]:
     """
     failed: dict[str, str] = {}
     checked: set[str] = set()
-    for claim in _used_first(claims):
+    for claim in used_first(claims):
         try:
             used = {claim_id: claims[claim_id] for claim_id in claim.uses}
             if weak := [claim_id for claim_id in claim.uses if claim_id not in checked]:
@@ -199,7 +199,7 @@ def check_all(claims: Claims, draw: Draw) -> dict[str, str]:
     return dict(sorted(failed.items()))
 
 
-def _used_first(claims: Claims) -> list[Claim]:
+def used_first(claims: Claims) -> list[Claim]:
     """Claims with the used before the user; an id is a digest, so a circle cannot be built, but a
     depth that Python cannot follow must not end in a traceback: this walk keeps its own stack."""
     order: list[Claim] = []

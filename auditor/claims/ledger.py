@@ -10,11 +10,14 @@ import os
 import sqlite3
 import time
 from collections.abc import Callable, Iterable, Mapping
+from concurrent.futures import ThreadPoolExecutor
 from contextlib import closing
 from pathlib import Path
 
+import gmpy2
+
 from auditor.claims.base import Claim, Draw, Refuted
-from auditor.claims.collection import Claims, read_claim
+from auditor.claims.collection import Claims, read_claim, used_first
 from auditor.claims.order import Membership, Order
 from auditor.claims.primality_tests import passes_strong_test
 from auditor.claims.prime import Prime
@@ -31,11 +34,13 @@ Notify = Callable[[str], None]
 
 class Ledger:
     """Claims kept in the file at ``path``. ``notify`` receives a sentence when something is wrong
-    with it; a ledger that cannot be used never stops a review."""
+    with it; a ledger that cannot be used never stops a review. What is recalled is checked by
+    ``jobs`` threads."""
 
-    def __init__(self, path: Path, draw: Draw, notify: Notify) -> None:
+    def __init__(self, path: Path, draw: Draw, notify: Notify, jobs: int = 1) -> None:
         self._draw = draw
         self._notify = notify
+        self._jobs = jobs
         self._connection = _open(path, notify)
 
     def close(self) -> None:
@@ -63,8 +68,10 @@ class Ledger:
         except sqlite3.Error as error:
             self._give_up(error)
 
-    def recall(self, number: int, rounds: int, held: Claims | None = None) -> list[Claim]:
-        """The claims about ``number`` with all that they rest on, as far as they still hold, but
+    def recall(
+        self, numbers: Iterable[int], rounds: int, held: Claims | None = None
+    ) -> list[Claim]:
+        """The claims about these numbers with all that they rest on, as far as they still hold, but
         for those that are ``held`` already: they were checked, and nothing is checked twice.
 
         Probable primes with fewer than ``rounds`` rounds, and what rests on them, are left out.
@@ -72,11 +79,14 @@ class Ledger:
         held = Claims() if held is None else held
         if self._connection is None:
             return []
+        wanted: list[str] = []
         try:
-            rows = self._connection.execute(
-                "SELECT claim FROM about WHERE number = ? ORDER BY claim", (hex(number),)
-            ).fetchall()
-            found = self._read([claim_id for (claim_id,) in rows], held)
+            for number in sorted(set(numbers)):
+                rows = self._connection.execute(
+                    "SELECT claim FROM about WHERE number = ? ORDER BY claim", (hex(number),)
+                ).fetchall()
+                wanted += [claim_id for (claim_id,) in rows]
+            found = self._read(wanted, held)
         except sqlite3.Error as error:
             self._give_up(error)
             return []
@@ -107,41 +117,57 @@ class Ledger:
         return [claims[claim_id] for claim_id in sorted(claims)]
 
     def _holding(self, found: list[Claim], held: Claims) -> list[Claim]:
-        """Claims in an order in which each comes after those it uses, failed ones left out."""
+        """The claims that hold, each after those it uses."""
+        together = Claims(found)
+        ordered = used_first(together)
+        failures = dict(
+            zip((claim.id for claim in ordered), self._failures(ordered, held), strict=True)
+        )
         holding: dict[str, Claim] = {}
-        waiting = sorted(found, key=lambda claim: claim.id)
-        while waiting:
-            ready = [
-                claim
-                for claim in waiting
-                if all(used in holding or used in held for used in claim.uses)
-            ]
-            if not ready:
-                break
-            for claim in ready:
-                waiting.remove(claim)
-                used = {id_: holding.get(id_) or held[id_] for id_ in claim.uses}
-                if self._still_holds(claim, used):
-                    holding[claim.id] = claim
+        for claim in ordered:
+            if not all(used in holding or used in held for used in claim.uses):
+                continue
+            if failure := failures[claim.id]:
+                self._notify(f"The ledger's entry {claim.id} does not hold ({failure}); left out.")
+            else:
+                holding[claim.id] = claim
         return list(holding.values())
 
-    def _still_holds(self, claim: Claim, used: Mapping[str, Claim]) -> bool:
-        try:
-            if isinstance(claim, Prime) and claim.method == "baillie-psw":
-                if passes_strong_test(claim.n, 2 + self._draw(claim.n - 3)):
-                    return True
+    def _failures(self, claims: list[Claim], held: Claims) -> list[str]:
+        """Why each of these does not hold, empty where it does, as far as it can be told without
+        the others: checked side by side, since GMP needs no lock of the interpreter."""
+        by_id = {claim.id: claim for claim in claims}
+        known = by_id.keys() | {claim.id for claim in held}
+
+        def failure(claim: Claim) -> str:
+            used = {id_: by_id.get(id_) or held[id_] for id_ in claim.uses if id_ in known}
+            if len(used) < len(claim.uses):
+                return "it rests on a claim that is not here"
+            try:
+                self._check(claim, used)
+            except Refuted as refuted:
+                return str(refuted)
+            return ""
+
+        with ThreadPoolExecutor(self._jobs, initializer=_release_the_lock) as executor:
+            return list(executor.map(failure, claims))
+
+    def _check(self, claim: Claim, used: Mapping[str, Claim]) -> None:
+        if isinstance(claim, Prime) and claim.method == "baillie-psw":
+            if not passes_strong_test(claim.n, 2 + self._draw(claim.n - 3)):
                 raise Refuted("composite")
+        else:
             claim.check(used, self._draw)
-        except Refuted as refuted:
-            self._notify(f"The ledger's entry {claim.id} does not hold ({refuted}); left out.")
-            return False
-        return True
 
     def _give_up(self, error: sqlite3.Error) -> None:
         self._notify(f"The ledger cannot be used ({error}); the review goes on without it.")
         if self._connection is not None:
             self._connection.close()
         self._connection = None
+
+
+def _release_the_lock() -> None:
+    gmpy2.get_context().allow_release_gil = True
 
 
 def subjects(claim: Claim) -> tuple[int, ...]:

@@ -129,8 +129,8 @@ def test_an_interrupted_review_keeps_what_it_found(folder: Folder, jobs: str) ->
     assert b"what was found is kept in l" in errors
     assert not still_running(folder.path)
     ledger = Ledger(folder.path / "l", secrets.randbelow, pytest.fail)
-    found = [claim for claim in ledger.recall(P - 1, 64) if isinstance(claim, Factorization)]
-    searched = [claim for claim in ledger.recall(REST, 64) if isinstance(claim, Searched)]
+    found = [claim for claim in ledger.recall([P - 1], 64) if isinstance(claim, Factorization)]
+    searched = [claim for claim in ledger.recall([REST], 64) if isinstance(claim, Searched)]
     ledger.close()
     assert any(EASY in dict(claim.factors) for claim in found)
     curves = {run for claim in searched for run in claim.runs if run[0] == "elliptic curves"}

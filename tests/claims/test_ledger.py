@@ -40,7 +40,7 @@ def recalled(path: Path, notices: list[str], number: int, rounds: int = 64) -> l
     """What an other run finds about a number."""
     store = ledger(path, notices)
     try:
-        return store.recall(number, rounds)
+        return store.recall([number], rounds)
     finally:
         store.close()
 
@@ -154,5 +154,5 @@ def test_several_writers_lose_nothing(tmp_path: Path, notices: list[str]) -> Non
     assert [worker.exitcode for worker in workers] == [0, 0, 0]
     store = ledger(tmp_path / "l", notices)
     numbers = [100 * index + offset for index in range(3) for offset in range(60)]
-    assert all(len(store.recall(number + 2, 64)) == 1 for number in numbers)
+    assert all(len(store.recall([number + 2], 64)) == 1 for number in numbers)
     store.close()
