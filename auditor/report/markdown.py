@@ -6,8 +6,8 @@ active characters defused.
 """
 
 import re
-from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
 from typing import TypeVar
 
 from auditor.report.common_view import MOST_NAMED, Common, common
@@ -187,31 +187,73 @@ def _where(places: Sequence[Lines]) -> str:
 
 
 def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
-    """Sheets with their findings, worst first, until one does not fit; then what was left out."""
-    shown, sheets = 0, 0
-    for text, finding in _pieces(report, told):
-        if not room.take(text):
+    """Sheets with their findings, worst first, until one does not fit; then what was left out.
+
+    Where not everything fits, what keeps any set from release goes before all observations.
+    """
+    pieces = list(_sheets(report.sheets, told))
+    if sum(units(piece.text) for piece in pieces) > room.left:
+        pieces = [*_sheets(_without_observations(report.sheets), told), *_observed(report.sheets)]
+    shown: list[_Piece] = []
+    for piece in pieces:
+        if not room.take(piece.text):
             break
-        yield text
-        shown, sheets = shown + finding, sheets + (text.startswith("\n#"))
-    findings = sum(len(sheet.findings) for sheet in report.sheets) - shown
-    if findings or sheets < len(report.sheets):
+        shown.append(piece)
+        yield piece.text
+    findings = sum(len(sheet.findings) for sheet in report.sheets)
+    findings -= sum(piece.findings for piece in shown)
+    sheets = len(report.sheets) - sum(piece.opens for piece in shown)
+    if findings or sheets:
         yield (
             f"\nLeft out for length: {plural(findings, 'finding')}, and the sheets of "
-            f"{plural(len(report.sheets) - sheets, 'set')}; the worst are above.\n"
+            f"{plural(sheets, 'set')}; the worst are above.\n"
         )
 
 
-def _pieces(report: View, told: Told) -> Iterator[tuple[str, int]]:
-    """What may not be cut apart, and how many findings are in it: a sheet's opening goes with its
-    first finding."""
+@dataclass(frozen=True, slots=True)
+class _Piece:
+    """What may not be cut apart: how many findings are in it, and whether it opens a sheet."""
+
+    text: str
+    findings: int
+    opens: bool = False
+
+
+def _sheets(sheets: Iterable[Sheet], told: Told) -> Iterator[_Piece]:
+    """Sheet by sheet; an opening goes with its first finding."""
     title = "\n## Findings\n"
-    for sheet in report.sheets:
+    for sheet in sheets:
         first = _finding(sheet, 1, told) if sheet.findings else ""
-        yield title + _opening(sheet) + first, len(sheet.findings[:1])
+        yield _Piece(title + _opening(sheet) + first, len(sheet.findings[:1]), opens=True)
         title = ""
         for number in range(2, len(sheet.findings) + 1):
-            yield _finding(sheet, number, told), 1
+            yield _Piece(_finding(sheet, number, told), 1)
+
+
+def _without_observations(sheets: Iterable[Sheet]) -> Iterator[Sheet]:
+    """The sheets with a finding of weight, and these findings alone, which stand first on them."""
+    for sheet in sheets:
+        weighty = tuple(item for item in sheet.findings if item.grade != "observation")
+        if weighty:
+            yield replace(sheet, findings=weighty)
+
+
+def _observed(sheets: Iterable[Sheet]) -> Iterator[_Piece]:
+    """The titles of the observations, a line for each sheet."""
+    title = "\n## Observations\n\n"
+    for sheet in sheets:
+        found = [item for item in sheet.findings if item.grade == "observation"]
+        if found:
+            titles = "; ".join(prose(_observation(item)) for item in found)
+            yield _Piece(
+                f"{title}- {sheet.number}. {span(sheet.name, 60)}: {titles}.\n", len(found)
+            )
+            title = ""
+
+
+def _observation(finding: MergedFinding) -> str:
+    undecided = "not decided: " if finding.outcome == "undetermined" else ""
+    return f"{undecided}{finding.title.rstrip('.')}"
 
 
 def _opening(sheet: Sheet) -> str:

@@ -135,3 +135,25 @@ def test_outside_text_stays_text(text: str) -> None:
     assert not re.search(HIDDEN, source.replace("\n", ""))
     assert any(" ".join(clipped(visible(text), 60).split()) in span for span in spans)
     source.encode("utf-8")
+
+
+def test_what_weighs_goes_before_all_observations() -> None:
+    """Of a report that does not fit, findings that keep a set from release are told first, of
+    whatever set; then the titles of observations."""
+    record = bulky(3)
+    weighty, observation = record["parameter_sets"][0]["findings"][0], "observation"
+    assert weighty["grade"] != observation
+    for item in record["parameter_sets"]:
+        item["findings"] = [
+            weighty,
+            weighty | {"grade": observation, "defect": "seen", "statement": 300 * "Much. "},
+        ]
+    whole = render(record, limit=10**6)
+    text = render(record, limit=len(whole.encode("utf-16-le")) // 2 - 500)
+    told, observed = text.split("\n## Observations\n")
+
+    assert "## Observations" not in whole
+    assert told.count("nonconformity:**") == 3
+    assert "observation:**" not in told
+    assert observed.count(weighty["title"]) == 3
+    assert "Left out" not in text
