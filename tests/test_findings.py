@@ -140,8 +140,8 @@ def test_an_undetermined_finding_asserts_nothing(book):
     found = judged(books, facts, {"usage.purpose": UNDECLARED}).findings[0]
 
     assert found.statement == (
-        "Not decided yet: “The r is wrong”. The declaration does not say: usage.purpose "
-        f"({VOCABULARY['usage.purpose'].meaning}). Search may still move: "
+        "Not decided yet: “The r is wrong”. The declaration does not say: purpose. "
+        "Search may still move: "
         "strength.work_bits_at_most, at most 113.00."
     )
     assert found.missing == {
@@ -228,7 +228,7 @@ def test_gates(book):
     left_out = judged([gated], {"generator.unit": FALSE}, absent)
     assert left_out.outcomes == {}
     assert left_out.books_left_out[0].name == "book"
-    assert "The declaration does not say: usage.protocol" in left_out.books_left_out[0].why
+    assert "The declaration does not say: protocol" in left_out.books_left_out[0].why
     assert left_out.books_left_out[0].missing == absent
     shut = judged([gated], {"generator.unit": FALSE, "usage.protocol": fact("cms")})
     assert (shut.outcomes, shut.books_left_out) == ({"r": "not applicable"}, ())

@@ -16,6 +16,7 @@ from auditor.routes.standard_tables import modulus_strength
 PEERS = "All parties must change over at the same time; those that do not cannot connect."
 KEYS = "Public values and keys made under the old parameters are void."
 REDRAWN = "Keys that are kept have to be drawn again; peers notice nothing else."
+OLD_VALUES = "Public values of the old exponents, and certificates for them, have to be withdrawn."
 STORED = "What is stored encrypted has to be encrypted again before the old keys are discarded."
 
 REPEATED = ("reused", "static")
@@ -234,7 +235,16 @@ def _membership(draft: Draft, wanted: Callable[[Party], bool]) -> Draft | None:
         f"where q is the prime order of the generator, of {order.bit_length()} bits. That costs "
         "one more exponentiation for each received value and refuses no correct peer."
     )
-    return _unless_signing(draft, parties, text, subgroup_order=order)
+    if not any(_met_anything(party) for party in draft.parties):
+        return _unless_signing(draft, parties, text, subgroup_order=order)
+    text += " Once the check is in, draw new exponents in place of those that were used without it."
+    return _unless_signing(draft, parties, text, OLD_VALUES, subgroup_order=order)
+
+
+def _met_anything(party: Party) -> bool:
+    """Whether an exponent was used again on values that nothing kept inside the group."""
+    closed = {"membership", "cofactor"} & set(party.peer_check or ())
+    return party.exponent_use in REPEATED and not closed
 
 
 def _who(draft: Draft, parties: tuple[Party, ...]) -> str:
@@ -247,11 +257,12 @@ def _unless_signing(
     draft: Draft,
     parties: tuple[Party, ...],
     text: str,
+    *breaks: str,
     subgroup_order: int | None = None,
 ) -> Draft | None:
     if draft.declaration.purpose == "signature":
         return None
-    changed = _with_parties(draft, parties, text)
+    changed = _with_parties(draft, parties, text, *breaks)
     if changed is None or subgroup_order is None:
         return changed
     declaration = replace(changed.declaration, subgroup_order=subgroup_order)

@@ -7,10 +7,10 @@ known of the same modulus is taken from the claims of the set, what is known of 
 from the registry that prints it.
 """
 
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import cache
-from itertools import product
+from itertools import chain, product
 from types import MappingProxyType
 from typing import Any
 
@@ -28,6 +28,7 @@ from auditor.facts import Established, establish, subgroup
 from auditor.facts import parts as group_parts
 from auditor.facts.base import Absent
 from auditor.facts.given import Given, Shared
+from auditor.facts.registry import establish as fact_of
 from auditor.intake.standard_groups import StandardGroup, standard_groups
 from auditor.rulebooks.findings import Finding
 from auditor.rulebooks.judging import Judgement, Judging, Position
@@ -40,6 +41,7 @@ MOST_GROUPS = 2
 """Standard groups tried: the smallest that reaches the requirement, and the next for rules that ask
 for more."""
 
+GRADES = ("major", "minor", "observation")
 HELD = ("conforming", "not applicable")
 
 
@@ -51,11 +53,18 @@ class Remedy:
     text: str
     breaks: tuple[str, ...] = ()
     patch: Mapping[str, Any] | None = None
+    position: Position | None = None
+    """What the set would come to, where the remedy was judged."""
 
     def record(self) -> dict[str, Any]:
         """The remedy as it stands in reports."""
         patch = None if self.patch is None else plain(dict(self.patch))
-        return {"text": self.text, "breaks": list(self.breaks), "patch": patch}
+        return {
+            "text": self.text,
+            "breaks": list(self.breaks),
+            "patch": patch,
+            "position": self.position,
+        }
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,7 +105,7 @@ class Remedies:
             here, majors = _Here(self, known), _majors(judgement)
             self._found[same] = {
                 finding.rule: here.remedy(finding, majors, judgement.position)
-                for finding in judgement.findings
+                for finding in sorted(judgement.findings, key=_weight(judgement))
             }
         return self._found[same]
 
@@ -124,6 +133,12 @@ class _Bench:
         self._judging = judging
         self._judged: dict[Declaration, _Effect] = {}
 
+    def meets(self, declaration: Declaration, rule: str) -> bool:
+        """Whether the declaration meets one rule, or the rule does not apply to it."""
+        shared = self.shared
+        given = Given(declaration, shared.claims, shared.run, shared)
+        return self._judging.outcome(rule, lambda name: fact_of(name, given)) in HELD
+
     def effect(self, declaration: Declaration) -> _Effect:
         """What the books say of the declaration."""
         if declaration not in self._judged:
@@ -150,9 +165,9 @@ class _SameNumbers:
         shared = self._bench(()).shared
         return Given(declaration, shared.claims, shared.run, shared)
 
-    def effect(self, draft: Draft) -> _Effect:
-        """What the books say of a draft that stays with the modulus."""
-        return self._bench(tuple(_orders(draft, self._support))).effect(draft.declaration.nameless)
+    def bench(self, draft: Draft) -> _Bench:
+        """Where a draft that stays with the modulus is judged."""
+        return self._bench(tuple(_orders(draft, self._support)))
 
     def _bench(self, orders: tuple[Claim, ...]) -> _Bench:
         ids = tuple(claim.id for claim in orders)
@@ -160,6 +175,11 @@ class _SameNumbers:
             claims = Claims([*self._support, *orders])
             self._benches[ids] = _Bench(claims, self._run, self._judging)
         return self._benches[ids]
+
+
+def _weight(judgement: Judgement) -> Callable[[Finding], tuple[bool, int]]:
+    """What decides the position first, then by grade."""
+    return lambda finding: (finding is not judgement.decided_by, GRADES.index(finding.grade))
 
 
 def _majors(judgement: Judgement) -> frozenset[str]:
@@ -174,29 +194,37 @@ class _Here:
         self._group = remedies.group(known.declaration)
         self._document = known.declaration.document()
         self._drafts = _drafts(_start(known.declaration, self._group))
-        self._judged: list[tuple[Draft, _Effect]] = []
+        self._made: list[Draft] = []
+        self._chosen: list[Draft] = []
         self._written: dict[Declaration, Remedy] = {}
 
     def remedy(self, finding: Finding, majors: frozenset[str], position: Position) -> Remedy:
-        """The first draft that removes the finding; otherwise the rule's own words."""
+        """The first draft that removes the finding; otherwise the rule's own words.
+
+        What was chosen for a finding before comes first, so that the remedies of one set are few
+        and none undoes another.
+        """
         if finding.outcome == "nonconforming":
-            for draft, effect in self._effects():
-                met = effect.outcomes.get(finding.rule) in HELD
-                if met and effect.majors <= majors - {finding.rule}:
+            for draft in chain(list(self._chosen), self._all()):
+                bench, declaration = self._bench(draft), draft.declaration.nameless
+                if not bench.meets(declaration, finding.rule):
+                    continue
+                effect = bench.effect(declaration)
+                if effect.majors <= majors - {finding.rule}:
+                    self._chosen.append(draft)
                     return self._remedy(draft, effect.position, position)
         return Remedy(finding.remedy)
 
-    def _effects(self) -> Iterator[tuple[Draft, _Effect]]:
-        yield from self._judged
+    def _all(self) -> Iterator[Draft]:
+        yield from list(self._made)
         for draft in self._drafts:
-            item = draft, self._effect(draft)
-            self._judged.append(item)
-            yield item
+            self._made.append(draft)
+            yield draft
 
-    def _effect(self, draft: Draft) -> _Effect:
+    def _bench(self, draft: Draft) -> _Bench:
         if draft.group is None:
-            return self._group.effect(draft)
-        return self._remedies.moved(draft.group).effect(draft.declaration.nameless)
+            return self._group.bench(draft)
+        return self._remedies.moved(draft.group)
 
     def _remedy(self, draft: Draft, after: Position, before: Position) -> Remedy:
         if draft.declaration not in self._written:
@@ -204,7 +232,7 @@ class _Here:
             if after != before:
                 texts = (*texts, f"With this alone the position becomes '{after}'.")
             changed = MappingProxyType(_patch(self._document, draft))
-            self._written[draft.declaration] = Remedy(" ".join(texts), draft.breaks, changed)
+            self._written[draft.declaration] = Remedy(" ".join(texts), draft.breaks, changed, after)
         return self._written[draft.declaration]
 
 

@@ -30,6 +30,9 @@ class LocalPool:
     lost = False
     """A machine that runs this has its cores."""
 
+    here = True
+    """The workers are this program on this machine."""
+
     def __init__(self, jobs: int | None = None) -> None:
         self.jobs = jobs or os.cpu_count() or 1
         self._pool: Any = None

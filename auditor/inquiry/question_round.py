@@ -176,7 +176,8 @@ def _work_elsewhere(tasks: Sequence[_Task], answers: Answers, tally: _Tally) -> 
         task = by_place[place]
         if not isinstance(result, Step):
             known = type(answers.claims)([*task.known, *task.made])
-            result = taken_over(result, known, answers.draw)  # type: ignore[arg-type]
+            here = getattr(cores.executor, "here", False)
+            result = taken_over(result, known, answers.draw, here)  # type: ignore[arg-type]
             answers.keep(claim for claim in result.claims if worth_keeping(claim))
         return None if _take(task, result, tally) else place
 

@@ -133,17 +133,21 @@ def step_elsewhere(unit: Unit) -> tuple[list[dict[str, Any]], bool, str | None]:
 
 
 def taken_over(
-    fields: tuple[list[dict[str, Any]], bool, str | None], known: Claims, draw: Draw
+    fields: tuple[list[dict[str, Any]], bool, str | None],
+    known: Claims,
+    draw: Draw,
+    here: bool = False,
 ) -> Step:
-    """The step that a worker reports. Its claims are read strictly and checked as far as
-    :func:`_check_again` goes; a step with a claim that fails is refused as a whole."""
+    """The step that a worker reports, on this machine where ``here`` says so. Its claims are read
+    strictly and checked as far as :func:`_check_again` goes; a step with a claim that fails is
+    refused as a whole."""
     records, finished, refused = fields
     try:
         claims = [read_claim(record) for record in records]
         by_id = {claim.id: claim for claim in claims}
         for claim in claims:
             used = {id_: by_id[id_] if id_ in by_id else known[id_] for id_ in claim.uses}
-            _check_again(claim, used, draw)
+            _check_again(claim, used, draw, here)
     except KeyError as missing:
         return Step(refused=f"it rests on {missing.args[0]}, which is not here")
     except ValueError as reason:
@@ -151,14 +155,16 @@ def taken_over(
     return Step(tuple(claims), finished, refused)
 
 
-def _check_again(claim: Claim, used: dict[str, Claim], draw: Draw) -> None:
+def _check_again(claim: Claim, used: dict[str, Claim], draw: Draw, here: bool) -> None:
     """What a worker has checked, as far as that costs little beside its work: claims without an
-    exponentiation in full; a large prime by one strong test to a base that the worker could not
-    foresee; of claims with a few exponentiations some that are drawn. What is made again to be
-    checked (an origin, a formula) is left to the verifier, which checks everything.
+    exponentiation in full; of claims with a few exponentiations some that are drawn. A large prime
+    gets one strong test to a base that the worker could not foresee: every one that another
+    machine reports, and a drawn one of those that this program found on this machine. What is made
+    again to be checked (an origin, a formula) is left to the verifier, which checks everything.
     """
     if isinstance(claim, Prime) and claim.n >= DETERMINISTIC_BELOW:
-        if not passes_strong_test(claim.n, 2 + draw(claim.n - 3)):
+        drawn = not here or draw(ONE_IN) == 0
+        if drawn and not passes_strong_test(claim.n, 2 + draw(claim.n - 3)):
             raise Refuted("composite")
         return
     by_witness = isinstance(claim, Composite) and claim.factor is None

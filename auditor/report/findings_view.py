@@ -27,6 +27,7 @@ class Remedy:
     text: str
     breaks: tuple[str, ...]
     patch: tuple[str, ...]
+    position: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,11 +133,12 @@ def remedy(record: Record) -> Remedy:
         record["text"],
         tuple(record["breaks"]),
         tuple(_entry(key, value) for key, value in patch.items()),
+        record.get("position"),
     )
 
 
 def _entry(key: str, value: Any) -> str:
-    return f"no {key}" if value is None else f"{key}: {_flow(value)}"
+    return f"delete {key}" if value is None else f"{key}: {_flow(value)}"
 
 
 def _flow(value: Any) -> str:

@@ -143,7 +143,8 @@ def _apart(marks: Iterable[tuple[int, float]]) -> Iterator[tuple[int, float]]:
 
 
 def _words(modulus: Modulus) -> str:
+    bits = "nothing" if modulus.bits is None else math.floor(modulus.bits)
     return (
-        f"{modulus.number.length} bits, judged by {modulus.bits:.0f}, "
+        f"{modulus.number.length} bits, judged by {bits}, "
         f"{plural(modulus.uses, 'use')}, {modulus.position}"
     )

@@ -80,8 +80,13 @@ class Sheet:
 
     @property
     def remedy(self) -> Remedy | None:
-        """The remedy of the deciding finding."""
-        return next(iter(self.deciding.remedies), None) if self.deciding else None
+        """What brings the set furthest among the remedies of findings that keep it from release;
+        that of the deciding finding where none brings it further."""
+        if self.deciding is None:
+            return None
+        weighty = (item for item in self.findings if item.grade != "observation")
+        found = [remedy for finding in weighty for remedy in finding.remedies]
+        return max(found, key=_reach, default=None)
 
     @property
     def concessions(self) -> tuple[Concession, ...]:
@@ -171,6 +176,11 @@ def sheet(number: int, group: list[Record], rules: Mapping[str, Record]) -> Shee
     )
 
 
+def _reach(remedy: Remedy) -> int:
+    """How far a remedy brings a set; one that was not judged is no worse than staying."""
+    return words.POSITIONS.index(remedy.position) if remedy.position else -1
+
+
 def _place(place: Record, name: str) -> str:
     text = f"{place['path']}:{place['line']}"
     return f"{text} ({place['name']})" if place.get("name", name) != name else text
@@ -190,8 +200,9 @@ def _limits(record: Record) -> Iterator[str]:
         )
     if risk := facts.get("group.missed_factor_risk_at_most"):
         yield (
-            f"The chance that a factor was missed that matters is at most {risk['value']:g}, "
-            "provided the number was not chosen to hide one."
+            "By the model of the search the chance that it missed a factor that would lower a "
+            f"figure further is at most {risk['value']:.2g}: an upper bound, no estimate, and only "
+            "if the number was not chosen to hide one."
         )
     undeclared = {key for a in absent.values() if a["reason"] == "undeclared" for key in a["keys"]}
     if undeclared:

@@ -6,6 +6,7 @@ One table for each closed list of words; a test holds them against the published
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from auditor.declaration import DEFAULT_STRENGTH
 from auditor.report.text import Number
 
 POSITIONS = ("hold", "open", "conditions", "no objection")
@@ -53,7 +54,7 @@ REASON_MEANING: Mapping[str, str] = {
 
 CONFIDENCE_MEANING: Mapping[str, str] = {
     "confirmed": "",
-    "secondary": "as restated elsewhere",
+    "secondary": "cited as other documents restate it",
     "memory": "from memory, to be confirmed in the document",
 }
 
@@ -102,7 +103,15 @@ def usage(declaration: Mapping[str, Any]) -> tuple[str, ...]:
         parties = tuple(f"{item['role']}: {_party(item)}" for item in declaration["parties"])
     else:
         parties = (_party(declaration),)
-    return (", ".join(purpose), *parties)
+    return (", ".join(purpose), *parties, _requirement(declaration))
+
+
+def _requirement(declaration: Mapping[str, Any]) -> str:
+    """The strength that is asked for, and until when, where that is said."""
+    bits = declaration.get("required_strength")
+    required = f"{DEFAULT_STRENGTH} bits by default" if bits is None else f"{bits} bits as declared"
+    until = declaration.get("protect_until")
+    return f"required: {required}" + ("" if until is None else f", until {until}")
 
 
 def _party(record: Mapping[str, Any]) -> str:

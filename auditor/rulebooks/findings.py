@@ -85,7 +85,7 @@ def _item(value: Any) -> str:
 def facts_shown(rule: Rule) -> tuple[str, ...]:
     """The facts whose values a finding of this rule shows."""
     names = (*rule.requires.names, *rule.shows, *PLACEHOLDER.findall(rule.statement))
-    return tuple(dict.fromkeys(names))
+    return tuple(dict.fromkeys(name for name in names if not name.startswith("values.")))
 
 
 def finding_of(book: Rulebook, rule: Rule, missing: tuple[str, ...], view: View) -> Finding:
@@ -143,10 +143,13 @@ def reasons(missing: Mapping[str, Absent], view: View) -> str:
     told: dict[str, list[str]] = {}
     for name, absent in missing.items():
         if name in view.facts:
-            told.setdefault("Search may still move", []).append(f"{name}, {_bound(name, view)}")
+            why, words = "Search may still move", [f"{name}, {_bound(name, view)}"]
+        elif absent.reason == "undeclared" and absent.keys:
+            why, words = _WHY_MISSING["undeclared"], sorted(absent.keys)
         else:
-            told.setdefault(_WHY_MISSING[absent.reason], []).append(_named(name, view))
-    return ". ".join(f"{why}: {'; '.join(names)}" for why, names in told.items())
+            why, words = _WHY_MISSING[absent.reason], [_named(name, view)]
+        told.setdefault(why, []).extend(word for word in words if word not in told.get(why, ()))
+    return ". ".join(f"{why}: {'; '.join(words)}" for why, words in told.items())
 
 
 def _named(name: str, view: View) -> str:

@@ -111,6 +111,7 @@ class Judging:
         self._vocabulary = vocabulary
         self._remembered = _Remembered()
         self._named = {rule.id: facts_of(rule) for book in books for rule in book.rules}
+        self._book_of = {rule.id: book for book in books for rule in book.rules}
 
     def judge(self, facts: Mapping[str, Fact], absent: Mapping[str, Absent]) -> Judgement:
         """The judgement of one set; ValueError for facts outside the vocabulary."""
@@ -133,6 +134,22 @@ class Judging:
                     findings.append(ruled.finding)
         position, decided_by = _position(findings, [book.name for book in self.books])
         return Judgement(outcomes, tuple(findings), tuple(left_out), position, decided_by)
+
+    def outcome(self, rule: str, given: Callable[[str], Fact | Absent]) -> Outcome:
+        """What one rule says, looking at nothing but the facts that decide it; ``given`` tells
+        each. A rule of a book that is left out is not applicable."""
+        book = self._book_of[rule]
+        names = (*(book.gate.names if book.gate else ()), *self._named[rule])
+        known = {name: given(name) for name in names}
+        look = _Look(
+            {name: item for name, item in known.items() if isinstance(item, Fact)},
+            {name: item for name, item in known.items() if isinstance(item, Absent)},
+            self._vocabulary,
+        )
+        if self._gate(book, look).verdict is not Verdict.TRUE:
+            return "not applicable"
+        (found,) = (item for item in book.rules if item.id == rule)
+        return self._ruled(book, found, look).outcome
 
     def facts_in_use(
         self, facts: Mapping[str, Fact], absent: Mapping[str, Absent]

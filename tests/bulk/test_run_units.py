@@ -26,7 +26,7 @@ from auditor.inquiry.work_units import (
 )
 from auditor.questions import Asks, Question
 from auditor.search.plan import EcmLevel, Plan
-from auditor.search.plan_steps import next_part
+from auditor.search.plan_steps import STEP, next_part
 from auditor.search.work import Work
 from tests.bulk.reviews import QUICK
 
@@ -175,13 +175,13 @@ def test_an_executor_that_is_lost_ends_the_work() -> None:
 
 def test_the_parts_of_a_plan_amount_to_it() -> None:
     """Each goes further by a bounded number of curves, the last one is the plan."""
-    plan = Plan(10, 10, levels=(EcmLevel(15, 300_000, 1, 7), EcmLevel(20, 2_000_000, 2, 3)))
+    plan = Plan(10, 10, levels=(EcmLevel(15, STEP // 3, 1, 7), EcmLevel(20, 2 * STEP, 2, 3)))
     work, seen = Work(), []
     for _ in range(20):
         part = next_part(plan, work, 100)
         for level in part.levels:
             work = work.with_curves(level.b1, level.b2, level.curves, "x")
-        seen.append((work.count(300_000, 1), work.count(2_000_000, 2)))
+        seen.append((work.count(STEP // 3, 1), work.count(2 * STEP, 2)))
         if part.levels == plan.levels:
             break
 
