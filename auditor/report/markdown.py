@@ -6,12 +6,19 @@ active characters defused.
 """
 
 import re
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
 from typing import TypeVar
 
 from auditor.report.common_view import MOST_NAMED, Common, common
-from auditor.report.findings_view import MergedFinding, Remedy
+from auditor.report.markdown_sheets import (
+    Piece,
+    Told,
+    in_brief,
+    in_full,
+    observed,
+    without_observations,
+)
 from auditor.report.markdown_text import (
     LIMIT,
     MESSAGE,
@@ -24,7 +31,7 @@ from auditor.report.markdown_text import (
 from auditor.report.questions_view import Question
 from auditor.report.shared_findings import Lines, SharedFinding, by_sheet, shared_findings
 from auditor.report.sheet_view import Sheet
-from auditor.report.text import Number, clipped
+from auditor.report.text import clipped
 from auditor.report.view import Record, View, view
 from auditor.report.words import plural
 
@@ -51,9 +58,6 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
 
 _RESERVE = 600
 """Kept free for the sentences that say what was left out: seven, none above 85 characters."""
-
-Told = Mapping[tuple[int, int], SharedFinding]
-"""What is told of several sets together, by number of the sheet and place on it."""
 
 
 @dataclass(slots=True)
@@ -189,12 +193,14 @@ def _where(places: Sequence[Lines]) -> str:
 def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
     """Sheets with their findings, worst first, until one does not fit; then what was left out.
 
-    Where not everything fits, what keeps any set from release goes before all observations.
+    Where not everything fits, what keeps any set from release is told in few words, before all
+    observations.
     """
-    pieces = list(_sheets(report.sheets, told))
+    pieces = list(in_full(report.sheets, told))
     if sum(units(piece.text) for piece in pieces) > room.left:
-        pieces = [*_sheets(_without_observations(report.sheets), told), *_observed(report.sheets)]
-    shown: list[_Piece] = []
+        weighty = list(without_observations(report.sheets))
+        pieces = [*in_brief(weighty, told), *observed(report.sheets)]
+    shown: list[Piece] = []
     for piece in pieces:
         if not room.take(piece.text):
             break
@@ -208,127 +214,6 @@ def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
             f"\nLeft out for length: {plural(findings, 'finding')}, and the sheets of "
             f"{plural(sheets, 'set')}; the worst are above.\n"
         )
-
-
-@dataclass(frozen=True, slots=True)
-class _Piece:
-    """What may not be cut apart: how many findings are in it, and whether it opens a sheet."""
-
-    text: str
-    findings: int
-    opens: bool = False
-
-
-def _sheets(sheets: Iterable[Sheet], told: Told) -> Iterator[_Piece]:
-    """Sheet by sheet; an opening goes with its first finding."""
-    title = "\n## Findings\n"
-    for sheet in sheets:
-        first = _finding(sheet, 1, told) if sheet.findings else ""
-        yield _Piece(title + _opening(sheet) + first, len(sheet.findings[:1]), opens=True)
-        title = ""
-        for number in range(2, len(sheet.findings) + 1):
-            yield _Piece(_finding(sheet, number, told), 1)
-
-
-def _without_observations(sheets: Iterable[Sheet]) -> Iterator[Sheet]:
-    """The sheets with a finding of weight, and these findings alone, which stand first on them."""
-    for sheet in sheets:
-        weighty = tuple(item for item in sheet.findings if item.grade != "observation")
-        if weighty:
-            yield replace(sheet, findings=weighty)
-
-
-def _observed(sheets: Iterable[Sheet]) -> Iterator[_Piece]:
-    """The titles of the observations, a line for each sheet."""
-    title = "\n## Observations\n\n"
-    for sheet in sheets:
-        found = [item for item in sheet.findings if item.grade == "observation"]
-        if found:
-            titles = "; ".join(prose(_observation(item)) for item in found)
-            yield _Piece(
-                f"{title}- {sheet.number}. {span(sheet.name, 60)}: {titles}.\n", len(found)
-            )
-            title = ""
-
-
-def _observation(finding: MergedFinding) -> str:
-    undecided = "not decided: " if finding.outcome == "undetermined" else ""
-    return f"{undecided}{finding.title.rstrip('.')}"
-
-
-def _opening(sheet: Sheet) -> str:
-    numbers = [("Modulus", sheet.modulus), ("Generator", sheet.generator)]
-    if sheet.subgroup_order is not None:
-        numbers.append(("Declared order", sheet.subgroup_order))
-    places = ", ".join(span(place) for place in sheet.places[:8])
-    if len(sheet.places) > 8:
-        places += f" and {len(sheet.places) - 8:,} more"
-    lines = [
-        f"\n### {sheet.number}. {span(sheet.name)}: {sheet.position}",
-        "",
-        prose(sheet.meaning) if sheet.findings else prose(f"{sheet.meaning} {sheet.reason}"),
-        "",
-        f"- Where: {places}",
-        *(f"- {name}: {_number(number)}" for name, number in numbers),
-        f"- Usage: {'; '.join(span(part, 200) for part in sheet.usage[:6])}",
-        f"- On the owner's word: {', '.join(map(span, sheet.owners_word)) or 'nothing'}",
-        *(f"- Limit: {prose(clipped(limit, MESSAGE))}" for limit in sheet.limits),
-    ]
-    return "\n".join(lines) + "\n"
-
-
-def _number(number: Number) -> str:
-    text = span(number.short)
-    return f"{text}, {number.length} bits, SHA-256 {span(number.mark)}" if number.is_long else text
-
-
-def _finding(sheet: Sheet, number: int, told: Told) -> str:
-    """A finding with its criteria and remedies; an observation in one paragraph. Of what is told
-    of several sets together only what is this sheet's own."""
-    finding = sheet.findings[number - 1]
-    if shared := told.get((sheet.number, number)):
-        return _reference(finding, number, shared)
-    if finding.grade == "observation":
-        rules = ", ".join(span(item.rule) for item in finding.criteria)
-        return f"{_stated(finding, number, finding.statements[:1])} ({rules})\n"
-    lines = [_stated(finding, number, finding.statements[:1]), ""]
-    lines += [f"   Also: {prose(statement)}" for statement in finding.statements[1:]]
-    lines += [
-        f"   - Criterion: {prose(item.source)} ({span(item.rule)})" for item in finding.criteria
-    ]
-    for name, why in finding.missing if finding.outcome == "undetermined" else ():
-        lines.append(f"   - Missing: {span(name)}, {prose(why)}")
-    for remedy, first in sheet.remedies(number):
-        if first != number:
-            lines.append(f"   - Remedy: as for {first}.")
-        else:
-            lines += _remedy(remedy)
-    lines += [f"   - Caution: {prose(caution)}" for caution in finding.cautions]
-    lines += [f"   - Concession: {prose(item.text)}" for item in finding.concessions]
-    return "\n".join(lines) + "\n"
-
-
-def _reference(finding: MergedFinding, number: int, shared: SharedFinding) -> str:
-    """What a sheet adds to a finding that it shares with others."""
-    said = () if shared.same_words else finding.statements
-    lines = [f"{_stated(finding, number, said)} See F{shared.number}."]
-    if finding.grade != "observation":
-        own = [remedy for remedy in finding.remedies if remedy not in shared.remedies]
-        lines += [line for remedy in own for line in _remedy(remedy)]
-    lines += [f"   - Concession: {prose(item.text)}" for item in finding.concessions]
-    return "\n".join([*lines[:1], *([""] if lines[1:] else []), *lines[1:]]) + "\n"
-
-
-def _stated(finding: MergedFinding, number: int, statements: Sequence[str]) -> str:
-    parts = [prose(part) for part in (finding.heading, *statements) if part]
-    return " ".join([f"\n{number}. **{finding.words}:**", *parts])
-
-
-def _remedy(remedy: Remedy) -> list[str]:
-    patch = ", ".join(span(entry, 200) for entry in remedy.patch)
-    declare = f" Declare {patch}." if patch else ""
-    breaks = [f"   - It breaks: {prose(item)}" for item in remedy.breaks]
-    return [f"   - Remedy: {prose(remedy.text)}{declare}", *breaks]
 
 
 def _question(question: Question) -> str:

@@ -47,6 +47,12 @@ class Sheet:
         return str(self.record["name"])
 
     @property
+    def group(self) -> str | None:
+        """The published group that has this modulus, whatever the generator."""
+        fact = self.record["facts"].get("modulus.standard_group")
+        return str(fact["value"]) if fact and fact["value"] != "none" else None
+
+    @property
     def digest(self) -> str:
         """Over all values, usage included."""
         return str(self.record["digest"])

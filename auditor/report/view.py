@@ -89,6 +89,12 @@ class View:
         return tuple((name, counts[name]) for name in words.POSITIONS)
 
     @property
+    def by_position(self) -> tuple[tuple[str, tuple[Sheet, ...]], ...]:
+        """The sheets that something keeps from release, by position, worst first."""
+        found = {name: [s for s in self.sheets if s.position == name] for name in words.POSITIONS}
+        return tuple((name, tuple(found[name])) for name in words.POSITIONS[:-1] if found[name])
+
+    @property
     def worst(self) -> str | None:
         """The worst position of any set; None without a set."""
         return next((name for name, count in self.positions if count), None)

@@ -14,8 +14,8 @@ POSITIONS = ("hold", "open", "conditions", "no objection")
 
 POSITION_MEANING: Mapping[str, str] = {
     "hold": "Do not release: a major requirement is not met.",
-    "open": "Not decided: whether a major requirement is met could not be established.",
-    "conditions": "Release with conditions: only minor points stand.",
+    "open": "Do not release yet: whether a major requirement is met is not established.",
+    "conditions": "May be released once the minor points listed are settled or accepted.",
     "no objection": "No objection: no major or minor requirement is unmet or undecided.",
 }
 

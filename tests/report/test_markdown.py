@@ -60,7 +60,9 @@ def test_the_ticket_holds_what_decides() -> None:
                 assert prose(finding["remedy"]["text"]) in text
                 assert all(prose(cost) in text for cost in finding["remedy"]["breaks"])
                 for key in finding["remedy"]["patch"] or ():
-                    assert re.search(rf"Remedy: .* Declare .*`(no )?{key}\b", text), key
+                    assert re.search(
+                        rf"Remedy: .* In the declaration then: .*`(delete )?{key}\b", text
+                    ), key
     for caution in record["cautions"]:
         assert prose(caution) in text
 
