@@ -321,7 +321,7 @@ def _cost(question: Question) -> tuple[float | None, str]:
     match question.asks:
         case Asks.FACTORIZATION | Asks.MODULUS_FACTORS:
             level = LEVELS[2]
-            return level.curves, f"elliptic curves for factors of {level.digits} digits"
+            return level.curves, f"elliptic curves (--factor-digits {level.digits})"
         case Asks.LEAST_OFFSET:
             return question.integers[-1], "offsets to exclude"
         case Asks.SPECIAL_FORM:
