@@ -5,6 +5,7 @@ nothing recognised, or wrong usage, which outranks 1; 3 an internal fault; 130 i
 reader of standard output went away.
 """
 
+import gc
 import os
 import sys
 
@@ -20,6 +21,10 @@ from auditor.commands.reviewing import review
 
 MOST_DIGITS = 20_000
 """Decimal digits that Python may read and write: enough for integers of 65,536 bits."""
+
+
+RARELY = (100_000, 20, 100)
+"""Thresholds of the collector of cycles: large reports are frozen data and have none."""
 
 
 @click.group(context_settings={"help_option_names": ["-h", "--help"]})
@@ -41,6 +46,7 @@ for command in (review, ask, verify, compare, structure, demonstrate, declare, r
 def run() -> int:
     """The entry point: every way to end has its exit status, and none shows a traceback."""
     sys.set_int_max_str_digits(MOST_DIGITS)
+    gc.set_threshold(*RARELY)
     try:
         status = main(standalone_mode=False) or 0
         sys.stdout.flush()

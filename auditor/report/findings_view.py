@@ -105,11 +105,20 @@ def _merged(
         criteria=_once(_criterion(finding, rules) for finding in group),
         values=tuple((name, plain_value(value)) for name, value in values.items()),
         missing=tuple((name, _why_missing(name, parameter_set)) for name in missing),
-        remedies=_once(remedy(f["remedy"]) for f in group if f["remedy"]),
+        remedies=tuple(remedy(item) for item in _different(group)),
         cautions=_once(caution for finding in group for caution in finding["cautions"]),
         concessions=_once(_concession(f["concession"]) for f in group if f["concession"]),
         waits_for=_waits_for(first["outcome"], missing, parameter_set),
     )
+
+
+def _different(group: Iterable[Record]) -> list[Record]:
+    """The remedies of the findings, equal ones once."""
+    found: list[Record] = []
+    for finding in group:
+        if finding["remedy"] and finding["remedy"] not in found:
+            found.append(finding["remedy"])
+    return found
 
 
 def _once(items: Iterable[Any]) -> tuple[Any, ...]:

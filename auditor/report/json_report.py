@@ -54,6 +54,8 @@ def _compact(value: Any) -> str:
     text = json.dumps(value, ensure_ascii=False, allow_nan=False)
     if text.isascii() and "\x7f" not in text:
         return text  # the encoder itself escapes the other control characters of ASCII
+    if not _HIDDEN.search("".join(set(text))):
+        return text  # looked at a character once: texts are long and have few
     return _HIDDEN.sub(lambda found: json.dumps(found.group())[1:-1], text)
 
 

@@ -6,8 +6,9 @@ active characters defused.
 """
 
 import re
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
+from itertools import chain
 from typing import TypeVar
 
 from auditor.report.common_view import MOST_NAMED, Common, common
@@ -196,10 +197,10 @@ def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
     Where not everything fits, what keeps any set from release is told in few words, before all
     observations.
     """
-    pieces = list(in_full(report.sheets, told))
-    if sum(units(piece.text) for piece in pieces) > room.left:
-        weighty = list(without_observations(report.sheets))
-        pieces = [*in_brief(weighty, told), *observed(report.sheets)]
+    pieces: Iterable[Piece] | None = _all_that_fit(in_full(report.sheets, told), room.left)
+    if pieces is None:
+        weighty = without_observations(report.sheets)
+        pieces = chain(in_brief(weighty, told), observed(report.sheets))
     shown: list[Piece] = []
     for piece in pieces:
         if not room.take(piece.text):
@@ -214,6 +215,17 @@ def _findings(report: View, room: _Room, told: Told) -> Iterator[str]:
             f"\nLeft out for length: {plural(findings, 'finding')}, and the sheets of "
             f"{plural(sheets, 'set')}; the worst are above.\n"
         )
+
+
+def _all_that_fit(pieces: Iterable[Piece], room: int) -> list[Piece] | None:
+    """The pieces where there is room for all of them."""
+    taken = []
+    for piece in pieces:
+        room -= units(piece.text)
+        if room < 0:
+            return None
+        taken.append(piece)
+    return taken
 
 
 def _question(question: Question) -> str:
