@@ -47,7 +47,35 @@ def _member(key: str, value: Any) -> str:
     if isinstance(value, Mapping):
         entries = (f"{_compact(name)}: {_compact(entry)}" for name, entry in value.items())
         return "{\n" + ",\n".join(entries) + "}"
-    return "[\n" + ",\n".join(map(_compact, value)) + "]"
+    text_of = _Texts()
+    return "[\n" + ",\n".join(map(text_of.entry, value)) + "]"
+
+
+class _Texts:
+    """Texts of the members of entries, each written once where entries have the very same one."""
+
+    MOST = 4_000
+    """Texts kept at a time."""
+
+    def __init__(self) -> None:
+        self._known: dict[int, tuple[object, str]] = {}
+
+    def entry(self, value: Any) -> str:
+        """What :func:`_compact` gives for the entry."""
+        if not isinstance(value, Mapping):
+            return _compact(value)
+        members = (f"{_compact(key)}: {self._text(member)}" for key, member in value.items())
+        return "{" + ", ".join(members) + "}"
+
+    def _text(self, member: Any) -> str:
+        if not isinstance(member, dict | list):
+            return _compact(member)
+        known = self._known.get(id(member))
+        if known is None:
+            if len(self._known) >= self.MOST:
+                self._known.clear()
+            known = self._known[id(member)] = member, _compact(member)
+        return known[1]
 
 
 def _compact(value: Any) -> str:

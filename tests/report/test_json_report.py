@@ -78,3 +78,14 @@ def test_what_json_cannot_say_is_refused() -> None:
 def test_a_lone_surrogate_survives() -> None:
     """A name that is no Unicode text is written as the escape it is."""
     assert json.loads(dumps({"x": SURROGATE})) == {"x": SURROGATE}
+
+
+def test_members_that_entries_share_are_written_alike() -> None:
+    """Whether entries have the very same member or an equal one makes no difference to the text."""
+    shared = {"“a”": [1, 2], "b": "\u202e"}
+    one = {"parameter_sets": [{"id": "x", "facts": shared}, {"id": "y", "facts": shared}]}
+    two = {"parameter_sets": [{"id": "x", "facts": {**shared}}, {"id": "y", "facts": {**shared}}]}
+
+    assert dumps(one) == dumps(two)
+    assert json.loads(dumps(one)) == two
+    assert "\u202e" not in dumps(one)
