@@ -2,6 +2,7 @@
 
 from dataclasses import replace
 from itertools import pairwise
+from pathlib import Path
 
 import pytest
 
@@ -9,8 +10,11 @@ from auditor.advice.exposure import CHECKS, Exposure, Exposures
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration, Party, Place
 from auditor.facts import establish
+from auditor.intake.tree import read_inputs
+from tests.facts.knowledge import settled
 from tests.facts.test_worked_numbers import GROUP_23, GROUP_24, QUICK, claims, group
 
+ROOT = Path(__file__).parents[1]
 USAGES = [(check, use) for check in CHECKS for use in ("single", "static")]
 
 
@@ -140,3 +144,23 @@ def test_sets_that_differ_in_name_and_place_only_are_worked_out_once() -> None:
     assert len(rows) == len(again) > 0
     assert all(one is other for one, other in zip(rows, again, strict=True))
     assert worked.consulted(second) == worked.consulted(first) != frozenset()
+
+
+def test_a_peer_who_could_still_do_better_is_listed() -> None:
+    """While a rest of the order is unfactored the figure of a static exponent is a bound, also
+    where a peer does no better with what is known; with a membership check it is exact."""
+    (declaration,) = (
+        item
+        for item in read_inputs([str(ROOT / "samples" / "situations.yaml")]).declarations
+        if item.name == "dockside tunnel"
+    )
+    rows = [row for row in exposure(declaration, settled(declaration, QUICK)) if row.width == 256]
+    bounds = {
+        (row.check, row.attacker): (round(row.bits, 2), row.bound)
+        for row in rows
+        if row.use == "static"
+    }
+
+    assert bounds["range", "passive"] == (110.11, "exact")
+    assert bounds["range", "peer"] == (110.11, "at most")
+    assert ("membership", "peer") not in bounds

@@ -298,14 +298,15 @@ def seconds_per_curve(length: int, level: EcmLevel) -> float:
 
     Stage 1 is taken as proportional to B1, stage 2 to the square root of B2, and both to
     length^1.6, the time of a product. The two factors were fitted to what ``curve_time`` printed
-    for 2048 bits (``tests/benchmarks/README.md``: 82 ms at B1 = 3,000, 274 ms at 11,000, 1,092 ms
-    at 50,000), on one core of an AMD EPYC with CPython 3.11 and gmpy2 2.3.2; on the same machine a
-    curve at B1 = 3,000 took 30, 84, 270 and 766 ms at 1024, 2048, 4096 and 8192 bits. GMP-ECM came
-    within 10 % there. Beyond B1 = 50,000 nothing was measured. A hint for planning, no promise.
+    for 2048 bits (``tests/benchmarks/README.md``: 105 ms at B1 = 3,000, 359 ms at 11,000, 1,285
+    ms at 50,000, within a tenth), on one core of an AMD EPYC with CPython 3.11 and gmpy2 2.3.2; on
+    the same machine, a fifth faster that time, a curve at B1 = 3,000 took 30, 84, 270 and 766 ms
+    at 1024, 2048, 4096 and 8192 bits. GMP-ECM came within 10 % there. Beyond B1 = 50,000 nothing
+    was measured. A hint for planning, no promise.
     """
     at_2048 = STAGE_1_SECONDS * level.b1 + STAGE_2_SECONDS * sqrt(level.b2)
     return float(at_2048 * (length / 2048) ** 1.6)
 
 
-STAGE_1_SECONDS, STAGE_2_SECONDS = 1.83e-5, 4.97e-5
+STAGE_1_SECONDS, STAGE_2_SECONDS = 2.2e-5, 6.0e-5
 """For each unit of B1, and of the square root of B2, at 2048 bits."""

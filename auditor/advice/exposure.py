@@ -8,6 +8,7 @@ that differ in nothing else.
 
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from math import inf
 
 from auditor.claims.collection import Claims
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
@@ -39,9 +40,10 @@ NOWHERE = Place("", 1)
 class Exposure:
     """The least work, in bits, under one usage for one attacker, and the route that gives it.
 
-    An attacker is listed only where it does better than the one before it: a peer than somebody
-    who only listens, the designer than a peer. ``bound`` is ``at most`` while something unknown
-    could lower the figure; ``declared`` says that a party of the set declares this usage.
+    An attacker is listed only where it does better than the one before it, or still could: a peer
+    than somebody who only listens, the designer than a peer. ``bound`` is ``at most`` while
+    something unknown could lower the figure; ``declared`` says that a party of the set declares
+    this usage.
     """
 
     check: str
@@ -195,15 +197,17 @@ def _check(party: Party) -> str | None:
 
 
 def _figures(given: Given) -> Iterator[_Figure]:
-    """The least work for each attacker who does better than the one before."""
-    least: float | None = None
+    """The least work for each attacker who does better than the one before, or still could."""
+    least, least_is_loose = inf, False
     attackers: tuple[Attacker, ...] = ("passive", "peer", "designer")
     for attacker in attackers:
         part = strength.LEAST[attacker]
         work = given.peek(part)
-        if isinstance(work, Absent) or (least is not None and work.bits >= least):
+        if isinstance(work, Absent):
             continue
-        least = work.bits
         loose = given.trace(part).loose or work.bound == "at most"
+        if work.bits >= least and (least_is_loose or not loose):
+            continue
+        least, least_is_loose = work.bits, loose
         bound = "at most" if loose else "exact"
         yield _Figure(floor_bits(work.bits), bound, work.route, attacker)

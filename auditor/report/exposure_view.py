@@ -53,6 +53,11 @@ class ExposureTable:
     rows: tuple[Row, ...]
 
 
+def _least(entry: Record) -> tuple[float, bool]:
+    """The least figure; of equal ones that which could still fall."""
+    return entry["bits"], entry["bound"] == "exact"
+
+
 def exposure_table(exposure: Iterable[Record]) -> ExposureTable | None:
     """The table of a set; None where nothing was computed."""
     entries = [entry for entry in exposure if entry["attacker"] != "designer"]
@@ -64,8 +69,8 @@ def exposure_table(exposure: Iterable[Record]) -> ExposureTable | None:
     for entry in entries:
         usage = entry["use"], entry["check"]
         cells = least.setdefault(usage, {})
-        if entry["width"] not in cells or entry["bits"] < cells[entry["width"]]["bits"]:
-            cells[entry["width"]] = entry
+        before = cells.setdefault(entry["width"], entry)
+        cells[entry["width"]] = min(before, entry, key=_least)
         if entry["declared"]:
             declared[usage] = entry["width"]
     by_use: dict[tuple[str, tuple[Cell | None, ...]], list[str]] = {}

@@ -68,9 +68,15 @@ def strength(parameter_set: Record) -> Strength:
     facts, routes = parameter_set["facts"], parameter_set["routes"]
     required = _value(facts, "strength.required_bits", 112)
     designer = facts.get("strength.designer_bits_at_most")
+    listening = [
+        entry["bound"]
+        for entry in parameter_set.get("exposure", ())
+        if entry["declared"] and entry["attacker"] == "passive"
+    ]
+    unsettled = "strength.work_bits" not in facts
     loose = {
-        "passive": "strength.work_bits" not in facts,
-        "peer": "strength.work_bits" not in facts,
+        "passive": unsettled and (not listening or "at most" in listening),
+        "peer": unsettled,
         "designer": designer is None or not designer["tight"],
     }
     figures = {name: _figure(_open_to(routes, name), required, loose[name]) for name in ATTACKERS}
