@@ -265,9 +265,10 @@ class Answers:
         return work if work.curves else replace(work, engines=())
 
     def _keep_factorization(self, number: int, result: SearchResult) -> None:
-        self._keep_factors(number, result.pairs, result.rest)
+        # The record first: factors without it would make the next run search from the beginning.
         if result.rest > 1:
             self._accept(Searched(result.rest, result.engine or "built-in", result.work.runs()))
+        self._keep_factors(number, result.pairs, result.rest)
 
     def _keep_factors(self, number: int, pairs: Factors, rest: int) -> None:
         claims = [self.settle_primality(prime) for prime, _ in pairs]

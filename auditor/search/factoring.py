@@ -222,8 +222,10 @@ class _Search:
             while self.parts.open > 1 and count < level.curves:
                 task = Task(self.m, self.parts.open, level.b1, level.b2, count, level.curves)
                 for outcome in outcomes(task, engine, executor, jobs):
+                    # Taken up first: a curve whose find was lost must not count as run.
+                    found = self.found(outcome.divisor, "elliptic curves")
                     count = outcome.next
                     self.work = self.work.with_curves(level.b1, level.b2, count, outcome.engine)
-                    if self.found(outcome.divisor, "elliptic curves"):
+                    if found:
                         break
                     self.did()
