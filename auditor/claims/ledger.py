@@ -174,6 +174,7 @@ def subjects(claim: Claim) -> tuple[int, ...]:
     """The integers under which a claim is looked up."""
     if isinstance(claim, Order | Membership):
         return (claim.modulus,)
+    # Every kind but the two above is about one number, its field n.
     n: int = claim.n  # type: ignore[attr-defined]
     return (n,)
 

@@ -184,6 +184,7 @@ class Given:
         if isinstance(seen.value, Absent):
             raise Missing(seen.value)
         self._traces[-1].merge(seen.trace)
+        # Outcomes of all parts are kept together; this one is of the part that makes a Value.
         return seen.value  # type: ignore[return-value]
 
     def outcome(self, part: Part) -> Seen:
@@ -243,6 +244,7 @@ class Given:
     def peek(self, part: Callable[["Given"], Value]) -> Value | Absent:
         """The value of ``part`` or its absence, without resting on it; :meth:`see` it if it
         decides."""
+        # As in :meth:`see`: the outcome is of the part that makes a Value.
         return self.outcome(part).value  # type: ignore[return-value]
 
     def trace(self, part: Part) -> Trace:

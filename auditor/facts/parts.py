@@ -10,7 +10,7 @@ from math import gcd
 import gmpy2
 
 from auditor.claims.base import Factors, product
-from auditor.facts.given import Given
+from auditor.facts.given import Given, Part
 from auditor.questions import Asks, Question
 from auditor.structure import FactoredModulus
 
@@ -146,8 +146,8 @@ def complete_generator_order(given: Given) -> Factors:
     return order.factors
 
 
-def _raise_open(given: Given, part: object) -> None:
-    questions = tuple(sorted(given.trace(part).questions))  # type: ignore[arg-type]
+def _raise_open(given: Given, part: Part) -> None:
+    questions = tuple(sorted(given.trace(part).questions))
     given.unsettled(*questions)
 
 

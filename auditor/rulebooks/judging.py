@@ -99,6 +99,7 @@ class _Remembered:
         known = self._results.get(key)
         if known is None:
             known = self._results[key] = drawn_from, make()
+        # Results of all kinds are kept together; under this name there is only what ``make`` makes.
         return known[1]  # type: ignore[return-value]
 
 
