@@ -17,6 +17,8 @@ from auditor.search.gmp_ecm import GmpEcm
 
 STAND_IN = Path(__file__).parents[1] / "search" / "ecm_stand_in.py"
 INSTALLED = gmp_ecm.installed()
+_WAIT = "import pathlib, sys, time; pathlib.Path(sys.argv[1]).touch(); time.sleep(600)"
+"""Said by the one who waits: while a process turns into another, /proc shows no command line."""
 
 
 def stand_in(directory: Path, numbers: Iterable[int] = (), **behaviour: Any) -> GmpEcm:
@@ -34,13 +36,12 @@ def held_at(directory: Path, b1: int, number: int) -> GmpEcm:
         work = f'exec {shlex.quote(str(directory / "ecm-itself"))} "$@"'
     else:
         work = Path(engine.path).read_text(encoding="utf-8").splitlines()[-1]
-    hold = shlex.quote(str(directory / "hold"))
-    reached, ran = (shlex.quote(str(directory / name)) for name in ("reached", "ran"))
-    wait = shlex.join([sys.executable, "-c", "import time; time.sleep(600)", str(directory)])
+    hold, ran = (shlex.quote(str(directory / name)) for name in ("hold", "ran"))
+    wait = shlex.join([sys.executable, "-c", _WAIT, str(directory / "reached")])
     return _script(
         directory,
         f'[ $# -gt 1 ] && echo "$4" >> {ran}',
-        f'if [ -e {hold} ] && [ "$4" = {b1} ]; then touch {reached}; exec {wait}; fi',
+        f'if [ -e {hold} ] && [ "$4" = {b1} ]; then exec {wait}; fi',
         work,
     )
 
