@@ -9,14 +9,19 @@ from auditor.inquiry.answers import Answers, Cores
 from auditor.inquiry.unit_groups import ElementOrder, Structure, isomorphic, order_of, structure
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
+from auditor.search.curves import BuiltIn
+from auditor.search.gmp_ecm import GmpEcm
+from auditor.search.gmp_ecm import installed as installed_gmp_ecm
 from auditor.structure import PartlyFactoredGroup, UnitGroup, UnsplitGroup
 from auditor.verify import Verification, verify
 
 __all__ = [
     "Answers",
+    "BuiltIn",
     "Claims",
     "Cores",
     "ElementOrder",
+    "GmpEcm",
     "PartlyFactoredGroup",
     "RunValues",
     "Structure",
@@ -24,6 +29,7 @@ __all__ = [
     "UnitGroup",
     "UnsplitGroup",
     "Verification",
+    "installed_gmp_ecm",
     "isomorphic",
     "order_of",
     "review",

@@ -1,5 +1,6 @@
 """The whole way through the house, as one short function: bytes in, the record of a review out."""
 
+from collections import Counter
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -69,7 +70,7 @@ def review(
     rulebooks = load_all(books, vocabulary())
     governed = read_under(policy, paths, stdin)
     read = governed.result
-    run = replace(run, census=census(read.declarations))
+    run = situated(run, read.declarations, surroundings)
     claims, notices = investigate(read.declarations, run, rulebooks, surroundings)
     reading = _reading(read, (*governed.notices, *notices))
     record = build(reading, claims, run, rulebooks, fail_on)
@@ -99,12 +100,16 @@ def _with_policy(
     return {**record, "inputs": [*record["inputs"], *named]}
 
 
+def situated(
+    run: RunValues, declarations: Iterable[Declaration], surroundings: Surroundings
+) -> RunValues:
+    """The run values with what follows from the inputs and from the surroundings."""
+    return replace(run, census=census(declarations), engine=surroundings.cores.engine.name)
+
+
 def census(declarations: Iterable[Declaration]) -> MappingProxyType[int, int]:
     """How many of the sets have each modulus."""
-    counts: dict[int, int] = {}
-    for declaration in declarations:
-        counts[declaration.modulus] = counts.get(declaration.modulus, 0) + 1
-    return MappingProxyType(counts)
+    return MappingProxyType(Counter(item.modulus for item in declarations))
 
 
 def investigate(

@@ -12,8 +12,9 @@ EFFORTS: tuple[Effort, ...] = ("quick", "standard", "thorough")
 @dataclass(frozen=True, slots=True)
 class RunValues:
     """``as_of`` is an ISO date; ``factor_digits`` overrides the depth of the factor search that
-    ``effort`` implies; ``engine`` is what was to run elliptic curves, program and version (a search
-    names what did run them); ``census`` counts the parameter sets of this run by modulus."""
+    ``effort`` implies. A review fills in the rest: ``engine`` is what was to run elliptic curves,
+    program and version (a search names what did run them); ``census`` counts the parameter sets of
+    this run by modulus."""
 
     as_of: str
     effort: Effort = "standard"

@@ -6,7 +6,6 @@ of search effort, which nobody can check. The verifier draws its own bases.
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from types import MappingProxyType
 from typing import Any
 
 from auditor import __version__
@@ -105,7 +104,7 @@ def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> d
         effort=run["effort"],
         factor_digits=run["factor_digits"],
         engine=run["engine"],
-        census=MappingProxyType(dict(census(declarations))),
+        census=census(declarations),
     )
     rulebooks = _rulebooks([book["name"] for book in report["rulebooks"]], books)
     reading = Reading(

@@ -30,6 +30,17 @@ def test_review_and_verify(tmp_path: Path) -> None:
     assert api.verify(record, secrets.randbelow).status == 0
 
 
+def test_the_engine_that_runs_is_the_one_that_is_reported(tmp_path: Path) -> None:
+    """There is one place to say it."""
+    document = tmp_path / "d.yaml"
+    document.write_text("auditor: 1\nparameter_sets: [{name: x, modulus: 23}]\n")
+    engine = api.GmpEcm("/nowhere/ecm", "7.0.5")
+    surroundings = api.Surroundings(secrets.randbelow, cores=api.Cores(engine=engine))
+    record = api.review([str(document)], api.RunValues("2026-12-01", engine="other"), surroundings)
+
+    assert record["run"]["engine"] == "GMP-ECM 7.0.5"
+
+
 def test_structure() -> None:
     """A number in, its unit group out."""
     run = api.RunValues("2026-12-01")

@@ -687,6 +687,19 @@ class TestCommands:
             "head/auditor-usage.yaml: a usage file, not used: policy is taken from base."
         ]
 
+    def test_what_is_asked_follows_the_policy(self, branches: Any) -> None:
+        """The same usage files and the same notices as in a review."""
+        words = ("ask", "head", "--effort", "quick", "--as-of", "2026-12-01", "--json", "a.json")
+        found = {}
+        for policy in ("base", "head"):
+            result = branches(*words, "--policy-from", policy)
+            asked = json.loads(Path("a.json").read_text())
+            found[policy] = asked["situations"][0]["usage"]
+            assert all(line in result.err.splitlines() for line in asked["notices"])
+
+        assert any("200" in part for part in found["base"])
+        assert any("40" in part for part in found["head"])
+
     def test_a_broken_usage_file_there_is_an_error(self, branches: Any) -> None:
         """With its own place."""
         Path("base/auditor-usage.yaml").write_text("auditor-usage: 1\nuses: [{path: 7}]\n")

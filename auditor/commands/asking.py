@@ -9,6 +9,7 @@ from auditor.commands.options import (
     AS_OF,
     BOOKS,
     FILE,
+    POLICY,
     books_of,
     investigated_inputs,
     search_options,
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
 @click.option("--overwrite", is_flag=True, help="Let --draft-usage replace a file.")
 @format_options
 @BOOKS
+@POLICY
 @AS_OF
 @search_options()
 def ask(paths: tuple[str, ...], **options: Any) -> int:
@@ -44,15 +46,16 @@ def ask(paths: tuple[str, ...], **options: Any) -> int:
     from auditor.report import asking, asking_html, asking_markdown
     from auditor.report.asking_record import record
     from auditor.report.json_report import dumps
+    from auditor.report.text import visible
     from auditor.usage_draft import draft
 
     target = options["draft_usage"]
     check(options, target)
     _spare(target, options["overwrite"])
     books = books_of(options)
-    read, claims, run = investigated_inputs(paths, options)
+    read, claims, run, notices = investigated_inputs(paths, options)
     inquiry = inquire(read.declarations, Asker(claims, run, books))
-    found = record(inquiry, run, books, read.waiting, read.errors)
+    found = record(inquiry, run, books, read.waiting, read.errors, notices)
     limit = options["markdown_limit"]
     write(
         options,
@@ -66,8 +69,8 @@ def ask(paths: tuple[str, ...], **options: Any) -> int:
     )
     if target:
         _write_draft(target, draft(target, inquiry, read.waiting, read.documents))
-    for line in asking.lines_of_errors(found):
-        click.echo(line, err=True)
+    for line in (*notices, *asking.lines_of_errors(found)):
+        click.echo(visible(line), err=True)
     return 2 if found["errors"] or not (found["sets"] or found["candidates"]) else 0
 
 

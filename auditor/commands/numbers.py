@@ -52,7 +52,7 @@ def structure(
     from auditor.inquiry.unit_groups import structure as structure_of
 
     engine, values = engine_of(options), [_number(number) for number in numbers]
-    run = run_values_of({**options, "as_of": None}, engine)
+    run = run_values_of({**options, "as_of": None})
     found: list[Structure] = []
     interrupted = False
     with LocalPool(options["jobs"]) as pool:

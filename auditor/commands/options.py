@@ -97,11 +97,9 @@ def policy_of(options: dict[str, Any]) -> dict[str, Any]:
     from auditor.facts import vocabulary
     from auditor.intake.policy import NoSuchPolicy, concessions_file, named
 
-    folder, file, books = options["policy_from"], options["concessions"], options["rulebook"]
+    folder, file = options["policy_from"], options["concessions"]
     try:
         if folder:
-            files = (".yaml", ".yml")
-            books = [named(folder, book) if book.endswith(files) else book for book in books]
             file = named(folder, file) if file else concessions_file(folder)
         granted = load(file, vocabulary()) if file else None
     except NoSuchPolicy as error:
@@ -110,10 +108,24 @@ def policy_of(options: dict[str, Any]) -> dict[str, Any]:
         click.echo(str(error), err=True)
         raise click.exceptions.Exit(2) from error
     return {
-        "books": books,
+        "books": named_books(options),
         "concessions": granted,
         "policy": Path(folder) if folder else None,
     }
+
+
+def named_books(options: dict[str, Any]) -> list[str]:
+    """The books that are asked for, files below the directory of policy where there is one."""
+    from auditor.intake.policy import NoSuchPolicy, named
+
+    folder, books = options.get("policy_from"), list(options.get("rulebook") or ())
+    if not folder:
+        return books
+    files = (".yaml", ".yml")
+    try:
+        return [named(folder, book) if book.endswith(files) else book for book in books]
+    except NoSuchPolicy as error:
+        raise click.ClickException(str(error)) from error
 
 
 def engine_of(options: dict[str, Any]) -> "BuiltIn | GmpEcm":
@@ -136,9 +148,7 @@ def engine_of(options: dict[str, Any]) -> "BuiltIn | GmpEcm":
 
 
 @contextmanager
-def surroundings_of(
-    options: dict[str, Any], engine: "BuiltIn | GmpEcm"
-) -> "Iterator[Surroundings]":
+def surroundings_of(options: dict[str, Any]) -> "Iterator[Surroundings]":
     """What a review needs from outside, for as long as it runs; books that cannot be used become a
     usage error."""
     import secrets
@@ -149,6 +159,7 @@ def surroundings_of(
     from auditor.review import Surroundings
     from auditor.rulebooks.rulebook import RulebookError
 
+    engine = engine_of(options)
     progress = Progress(sys.stderr, is_live(os.environ, sys.stderr))
     with _workers(options) as pool:
         try:
@@ -188,12 +199,13 @@ def _workers(options: dict[str, Any]) -> "LocalPool | Cluster":
         raise click.ClickException(str(error)) from error
 
 
-def run_values_of(options: dict[str, Any], engine: "BuiltIn | GmpEcm") -> "RunValues":
+def run_values_of(options: dict[str, Any]) -> "RunValues":
+    """What the options say of them; a review fills in the rest."""
     from auditor.run_values import RunValues
 
     effort: Effort = options["effort"]
     day = options["as_of"].date() if options["as_of"] else date.today()
-    return RunValues(day.isoformat(), effort, options["factor_digits"], engine.name)
+    return RunValues(day.isoformat(), effort, options["factor_digits"])
 
 
 def ledger_path(options: dict[str, Any]) -> Path | None:
@@ -218,30 +230,32 @@ def books_of(options: dict[str, Any]) -> Any:
     from auditor.facts import vocabulary
     from auditor.review import DEFAULT_BOOKS
     from auditor.rulebooks.loading import load_all
+    from auditor.rulebooks.rulebook import RulebookError
 
-    return load_all(options.get("rulebook") or DEFAULT_BOOKS, vocabulary())
+    try:
+        return load_all(named_books(options) or DEFAULT_BOOKS, vocabulary())
+    except RulebookError as error:
+        raise click.ClickException(str(error)) from error
 
 
 def investigated(
     paths: tuple[str, ...], options: dict[str, Any]
 ) -> tuple[Any, Any, Any, list[Any]]:
     """The declarations at these paths, the claims about them, the run values, the errors."""
-    read, claims, run = investigated_inputs(paths, options)
+    read, claims, run, _ = investigated_inputs(paths, options)
     return read.declarations, claims, run, list(read.errors)
 
 
 def investigated_inputs(
     paths: tuple[str, ...], options: dict[str, Any]
-) -> "tuple[InputResult, Claims, RunValues]":
-    """All that was read at these paths, the claims about it, the run values."""
-    from dataclasses import replace
+) -> "tuple[InputResult, Claims, RunValues, list[str]]":
+    """All that was read at these paths, the claims about it, the run values, what to notice."""
+    from auditor.review import investigate, read_under, situated
 
-    from auditor.intake.tree import read_inputs
-    from auditor.review import census, investigate
-
-    engine = engine_of(options)
-    read = read_inputs(paths, sys.stdin.buffer)
-    run = replace(run_values_of(options, engine), census=census(read.declarations))
-    with surroundings_of(options, engine) as surroundings:
-        claims, _ = investigate(read.declarations, run, books_of(options), surroundings)
-    return read, claims, run
+    folder = options.get("policy_from")
+    governed = read_under(Path(folder) if folder else None, paths, sys.stdin.buffer)
+    read = governed.result
+    with surroundings_of(options) as surroundings:
+        run = situated(run_values_of(options), read.declarations, surroundings)
+        claims, told = investigate(read.declarations, run, books_of(options), surroundings)
+    return read, claims, run, [*map(str, read.notices), *governed.notices, *told]

@@ -10,7 +10,6 @@ from auditor.commands.options import (
     BOOKS,
     MARKDOWN_LIMIT,
     POLICY,
-    engine_of,
     policy_of,
     run_values_of,
     search_options,
@@ -71,11 +70,11 @@ def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]
     from auditor.review import DEFAULT_BOOKS
     from auditor.review import review as review_inputs
 
-    policy, engine = policy_of(options), engine_of(options)
-    with surroundings_of(options, engine) as surroundings:
+    policy = policy_of(options)
+    with surroundings_of(options) as surroundings:
         return review_inputs(
             paths,
-            run_values_of(options, engine),
+            run_values_of(options),
             surroundings,
             books=policy.pop("books") or DEFAULT_BOOKS,
             fail_on=options["fail_on"],

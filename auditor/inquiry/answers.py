@@ -42,7 +42,7 @@ from auditor.claims.subgroup_generator import subgroup_generator
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
 from auditor.search import primality
-from auditor.search.curves import Engine, Executor
+from auditor.search.curves import BUILT_IN, Engine, Executor
 from auditor.search.factoring import SearchInterrupted, SearchResult, search
 from auditor.search.plan import QUICK, Plan, plan_for
 from auditor.search.plan_steps import next_part
@@ -57,11 +57,12 @@ Keep = Callable[[Iterable[Claim]], None]
 
 @dataclass(frozen=True, slots=True)
 class Cores:
-    """Where the units of a deep search run; moves no answer, except that ``engine`` is recorded."""
+    """Where the units of a deep search run, and what runs elliptic curves: moves no answer, except
+    that the engine is recorded."""
 
     executor: Executor | None = None
     jobs: int = 1
-    engine: Engine | None = None
+    engine: Engine = BUILT_IN
 
 
 ALONE = Cores()

@@ -63,7 +63,7 @@ class Unit:
     known: tuple[dict[str, Any], ...]
     effort: Effort
     factor_digits: int | None
-    engine: Engine | None
+    engine: Engine
 
 
 @dataclass(frozen=True, slots=True)
@@ -108,9 +108,7 @@ def step_here(
     return Step(tuple(answers.claims)[before:], finished, refused)
 
 
-def unit_of(
-    question: Question, known: Iterable[Claim], run: RunValues, engine: Engine | None
-) -> Unit:
+def unit_of(question: Question, known: Iterable[Claim], run: RunValues, engine: Engine) -> Unit:
     """The step that is next, ready to travel."""
     records = tuple(claim.record() for claim in known)
     return Unit(

@@ -11,7 +11,7 @@ Record = Mapping[str, Any]
 
 _SENTENCE = 400
 _MOST_SETTLED = 40
-_MOST_SEARCHES, _MOST_CANDIDATES, _MOST_ERRORS = 20, 20, 10
+_MOST_SEARCHES, _MOST_CANDIDATES, _MOST_LINES = 20, 20, 10
 
 
 def render(asking: Record, *, limit: int = LIMIT) -> str:
@@ -22,7 +22,8 @@ def render(asking: Record, *, limit: int = LIMIT) -> str:
         *_part(words.NO_ANSWER.rstrip(":"), map(_settled, words.settled(shown)[:_MOST_SETTLED])),
         *_part("More search", map(_search, shown["searches"][:_MOST_SEARCHES])),
         *_part("Not reviewed", map(_candidate, shown["candidates"][:_MOST_CANDIDATES])),
-        *_part("Not read", map(_error, list(words.lines_of_errors(shown))[:_MOST_ERRORS])),
+        *_part("Not read", map(_line, list(words.lines_of_errors(shown))[:_MOST_LINES])),
+        *_part("Notices", map(_line, shown["notices"][:_MOST_LINES])),
     ]
     return fitted("\n".join(_head(shown)), pieces, "\n", limit=limit, kind="part")
 
@@ -76,7 +77,7 @@ def _candidate(item: Record) -> str:
     return f"- {span(item['name'])} in {where}, {item['length']} bits\n"
 
 
-def _error(text: str) -> str:
+def _line(text: str) -> str:
     return f"- {span(text, _SENTENCE)}\n"
 
 

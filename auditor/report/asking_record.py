@@ -25,6 +25,7 @@ def record(
     books: Sequence[Rulebook],
     waiting: Iterable[Waiting] = (),
     errors: Iterable[InputError] = (),
+    notices: Iterable[str] = (),
 ) -> dict[str, Any]:
     """The inquiry in the shape of ``asking.schema.json``; equal arguments, equal record."""
     return {
@@ -40,6 +41,7 @@ def record(
             {"path": e.path, "line": e.line, "column": e.column, "message": e.message}
             for e in errors
         ],
+        "notices": list(notices),
     }
 
 

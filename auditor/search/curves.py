@@ -33,6 +33,10 @@ class Outcome:
 class Engine(Protocol):
     """Runs elliptic curves. Engines are pickled: units of curves may run in other processes."""
 
+    @property
+    def name(self) -> str:
+        """The program and its version, as reports name it."""
+
     def unit(self, b1: int) -> int:
         """Curves in one unit of work."""
 
@@ -69,6 +73,9 @@ class BuiltIn:
             if divisor > 1:
                 return Outcome(index + 1, divisor, self.name)
         return Outcome(task.end, 1, self.name)
+
+
+BUILT_IN = BuiltIn()
 
 
 def outcomes(
@@ -140,4 +147,4 @@ def _run(engine: Engine, unit: Task) -> Outcome:
     try:
         return engine.run(unit)
     except EngineFailed:
-        return BuiltIn().run(unit)
+        return BUILT_IN.run(unit)

@@ -13,7 +13,7 @@ from typing import Any
 import flint
 
 from auditor.search import lucas
-from auditor.search.curves import BuiltIn, Engine, Executor, Task, outcomes
+from auditor.search.curves import BUILT_IN, Engine, Executor, Task, outcomes
 from auditor.search.parts import Parts
 from auditor.search.plan import Plan
 from auditor.search.primality import is_likely_prime
@@ -88,7 +88,7 @@ def search(
     executor: Executor | None = None,
     *,
     jobs: int = 1,
-    engine: Engine | None = None,
+    engine: Engine = BUILT_IN,
     done: Work | None = None,
     on_factor: Callable[[Factor], None] | None = None,
     progress: Callable[[Work], None] | None = None,
@@ -96,11 +96,11 @@ def search(
     """Searches ``m`` > 0 for prime factors as far as ``plan`` says.
 
     ``known``: divisors found or declared before; they are used where they divide. ``executor``
-    runs units of curves (here when None), ``jobs`` of them at a time. ``engine`` runs the curves
-    (the built-in one when None). ``done`` is the work of an earlier search in the same ``m``, whose
-    factors are in ``known``: it is not done again. ``on_factor`` is told of each prime factor as it
-    is found, ``progress`` of the work done so far. A worker process that dies costs time, not an
-    answer. Raises ValueError for m < 1, and SearchInterrupted, which is a KeyboardInterrupt.
+    runs units of curves (here when None), ``jobs`` of them at a time. ``engine`` runs the curves.
+    ``done`` is the work of an earlier search in the same ``m``, whose factors are in ``known``: it
+    is not done again. ``on_factor`` is told of each prime factor as it is found, ``progress`` of
+    the work done so far. A worker process that dies costs time, not an answer. Raises ValueError
+    for m < 1, and SearchInterrupted, which is a KeyboardInterrupt.
     """
     if m < 1:
         raise ValueError("only positive integers are factored")
@@ -108,7 +108,7 @@ def search(
     try:
         run.divide(known, "known")
         run.easy_methods()
-        run.curves(engine or BuiltIn(), executor, jobs)
+        run.curves(engine, executor, jobs)
     except KeyboardInterrupt:
         raise SearchInterrupted(run.result()) from None
     return run.result()

@@ -45,7 +45,7 @@ def samples() -> str:
     known, _ = investigate(read.declarations, RUN, books, Surroundings(secrets.randbelow))
     inquiry = inquire(read.declarations, Asker(known, RUN, books))
     error = InputError("broken.pem", 1, 1, "no PEM")
-    text = json.dumps(record(inquiry, RUN, books, read.waiting, [error]))
+    text = json.dumps(record(inquiry, RUN, books, read.waiting, [error], ["a: not used."]))
     return text.replace(str(ROOT), ".")
 
 
@@ -69,6 +69,7 @@ def with_text(text: str) -> dict[str, Any]:
         item["path"], item["name"] = f"{text}{item['path']}", text
     for item in found["errors"]:
         item["path"], item["message"] = text, f"found {text}"
+    found["notices"] = [f"{text}: not used"]
     found["searches"] = [_search(f"{text}#{text}")]
     return found
 
@@ -297,6 +298,19 @@ def test_the_command(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     status, _, err = run("dh.pem", "bad.yaml")
     assert status == 2
     assert "bad.yaml:1:" in err
+
+
+def test_a_book_that_is_not_there_is_a_message(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Not a fault of the program."""
+    monkeypatch.chdir(tmp_path)
+    result = CliRunner().invoke(
+        main, ["ask", str(SAMPLES[0]), "--rulebook", "gone.yaml", "--no-ledger"]
+    )
+
+    assert result.exit_code == 1
+    assert "gone.yaml:1:1: cannot be read" in result.output
 
 
 def test_equal_runs_give_equal_bytes() -> None:
