@@ -12,12 +12,12 @@ from functools import lru_cache
 from math import isqrt, prod
 
 import flint
-from gmpy2 import is_prime, powmod
+from gmpy2 import powmod
 
 from auditor.search.log_result import Logarithm
 
 LARGEST_FIELD = 2**60
-"""Below 2^64 ``is_prime`` is known to be never wrong."""
+"""Below 2^64 ``is_prime`` is known to be never wrong (FLINT manual, ulong_extras, n_is_prime)."""
 
 LARGEST_PRIME = 2**20
 """Above it our own steps are quicker."""
@@ -57,20 +57,20 @@ class Base:
 def prepared(n: int, g: int, factors: tuple[tuple[int, int], ...]) -> Base | None:
     """g as a base modulo n, kept for the next logarithm; None where n is not prime, ``factors`` are
     not those of n - 1, or one of them is too large."""
-    if prod(q**e for q, e in factors) != n - 1 or not is_prime(n):
+    if prod(q**e for q, e in factors) != n - 1 or not flint.fmpz(n).is_prime():
         return None
     if max(q for q, _ in factors) > LARGEST_PRIME:
         return None
+    element = flint.fmpz_mod_ctx(n)(g)
     work = sum(e * (2 * n.bit_length() + 2 * isqrt(q)) for q, e in factors)
-    return Base(flint.fmpz_mod_ctx(n)(g), _order(g, n, factors), 2 * work)
+    return Base(element, _order(element, factors, n - 1), 2 * work)
 
 
-def _order(g: int, n: int, factors: Factors) -> int:
-    """The order of g modulo the prime n, from the factors of n - 1."""
-    order = n - 1
+def _order(element: flint.fmpz_mod, factors: Factors, order: int) -> int:
+    """The order of the element, from a multiple of it and its factors."""
     for q, e in factors:
         for _ in range(e):
-            if powmod(g, order // q, n) != 1:
+            if not (element ** (order // q)).is_one():
                 break
             order //= q
     return order
