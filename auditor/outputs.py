@@ -4,7 +4,8 @@ import json
 import os
 import sys
 import tempfile
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -47,12 +48,18 @@ class Outputs:
         from auditor.report import html, json_report, markdown, sarif
         from auditor.report.view import view
 
-        shown = view(record)
+        if self.json:
+            with written(self.json) as put:
+                shown = view(record, put)
+        else:
+            shown = view(record)
+        if self.json_lines:
+            with written(self.json_lines) as put:
+                for line in json_report.lines(record):
+                    put(line.encode())
         renderers: list[tuple[str | None, Callable[[], str]]] = [
             (self.html, lambda: html.render(shown)),
             (self.markdown, lambda: markdown.render(shown, limit=self.markdown_limit)),
-            (self.json, lambda: shown.json),
-            (self.json_lines, lambda: json_report.lines(record)),
             (self.sarif, lambda: sarif.render(shown)),
         ]
         for path, render in renderers:
@@ -76,20 +83,40 @@ def _summary(shown: "View") -> None:
 
 
 def write_text(path: str, text: str) -> None:
-    """Write a file whole: beside it first, then in its place. OSError becomes a usage error."""
+    """Write a text as :func:`written` does."""
+    with written(path) as put:
+        put(text.encode())
+
+
+@contextmanager
+def written(path: str) -> Iterator[Callable[[bytes], object]]:
+    """What takes the bytes of a file in pieces: they stand beside it first, then in its place, and
+    are gone where something fails before. OSError becomes a usage error.
+
+    Standard output has them at once.
+    """
     if path == STANDARD_OUTPUT:
-        click.echo(text, nl=False)
+        yield lambda piece: click.echo(piece, nl=False)
         return
     target = Path(path)
     try:
-        with tempfile.NamedTemporaryFile(
-            "w", encoding="utf-8", newline="\n", dir=target.parent, prefix=".", delete=False
-        ) as file:
-            file.write(text)
-        os.chmod(file.name, 0o666 & ~_umask())
-        os.replace(file.name, target)
+        handle, name = tempfile.mkstemp(dir=target.parent, prefix=".")
+        with _removed_on_failure(Path(name)) as beside:
+            with open(handle, "wb") as file:
+                yield file.write
+            beside.chmod(0o666 & ~_umask())
+            beside.replace(target)
     except OSError as error:
         raise click.FileError(path, error.strerror or str(error)) from error
+
+
+@contextmanager
+def _removed_on_failure(path: Path) -> Iterator[Path]:
+    try:
+        yield path
+    except BaseException:
+        path.unlink()
+        raise
 
 
 def _umask() -> int:

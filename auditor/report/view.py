@@ -6,14 +6,13 @@ open question once with all that waits for it. All text that leaves this module 
 (:mod:`auditor.report.text`); what it means to a format is the renderer's to escape.
 """
 
-import hashlib
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
 
 from auditor.report import words
-from auditor.report.json_report import dumps, may_hide
+from auditor.report.json_report import write
 from auditor.report.questions_view import Question, questions
 from auditor.report.sheet_view import Sheet, sheet
 from auditor.report.strength_view import strength
@@ -48,16 +47,12 @@ class View:
     """A whole report, ready to be written in any format."""
 
     record: Record
-    json: str
-    """The JSON report: the record as it was given, before its text was made visible."""
+    record_digest: str
+    """SHA-256 of the JSON report: of the record as it was given, before its text was made
+    visible."""
 
     sheets: tuple[Sheet, ...]
     books: tuple[Book, ...]
-
-    @cached_property
-    def record_digest(self) -> str:
-        """SHA-256 of the JSON report."""
-        return hashlib.sha256(self.json.encode()).hexdigest()
 
     @property
     def as_of(self) -> str:
@@ -167,13 +162,20 @@ class View:
         return tuple(self.record["cautions"])
 
 
-def view(record: "Record | View") -> View:
+def _nowhere(_: bytes) -> None:
+    """Where the JSON report goes that nobody asked for."""
+
+
+def view(record: "Record | View", put: Callable[[bytes], object] = _nowhere) -> View:
     """The view of a record in the shape of ``report.schema.json``; a view is its own view, so
-    that several renderers can share one."""
+    that several renderers can share one.
+
+    The digest takes the JSON report, which ``put`` gets on the way, in pieces.
+    """
     if isinstance(record, View):
         return record
-    text = dumps(record)
-    shown = visible_record(record) if may_hide(text) else record
+    written = write(record, put)
+    shown = visible_record(record) if written.may_hide else record
     rules = {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
     groups: dict[str, list[Record]] = {}
     for parameter_set in shown["parameter_sets"]:
@@ -181,7 +183,7 @@ def view(record: "Record | View") -> View:
     ordered = sorted(groups.values(), key=_urgency)
     return View(
         shown,
-        text,
+        written.sha256,
         tuple(sheet(number, group, rules) for number, group in enumerate(ordered, 1)),
         tuple(_book(book) for book in shown["rulebooks"]),
     )

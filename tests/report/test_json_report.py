@@ -2,13 +2,14 @@
 
 import json
 import re
+from hashlib import sha256
 from typing import Any
 
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.report.json_report import dumps
+from auditor.report.json_report import dumps, lines, write
 from auditor.report.text import HIDDEN
 from tests.report.records import FIXTURES, SURROGATE, fixture, hostile_texts, with_text
 
@@ -89,3 +90,37 @@ def test_members_that_entries_share_are_written_alike() -> None:
     assert dumps(one) == dumps(two)
     assert json.loads(dumps(one)) == two
     assert "\u202e" not in dumps(one)
+
+
+@given(st.lists(st.dictionaries(st.sampled_from(["facts", "findings", "x"]), VALUES), max_size=4))
+def test_lines_and_text_agree_on_every_set(sets: list[dict[str, Any]]) -> None:
+    """JSON Lines and the text have the same sets, also where one stands twice."""
+    record = {"run": "a", "parameter_sets": [*sets, *sets]}
+    *each, summary = map(json.loads, lines(record))
+
+    assert [line["parameter_set"] for line in each] == json.loads(dumps(record))["parameter_sets"]
+    assert summary == {"summary": {"run": "a"}}
+
+
+def test_more_parts_than_are_kept_change_nothing(monkeypatch: pytest.MonkeyPatch) -> None:
+    """The text is the same where nearly nothing is kept."""
+    record = fixture("harbour")
+    record["parameter_sets"] *= 3
+    text = dumps(record)
+    monkeypatch.setattr("auditor.report.json_report._Texts.MOST", 10)
+
+    assert dumps(record) == text
+    assert json.loads(text) == record
+
+
+@pytest.mark.parametrize("text", ["plain", "\u202e"])
+def test_writing_in_pieces_gives_the_text(text: str) -> None:
+    """The pieces are the text; its digest and whether it may hide something are said."""
+    record = with_text(text)
+    pieces: list[bytes] = []
+    written = write(record, pieces.append)
+
+    assert b"".join(pieces) == dumps(record).encode()
+    assert written.sha256 == sha256(b"".join(pieces)).hexdigest()
+    assert written.may_hide == (text == "\u202e")
+    assert max(map(len, pieces)) < len(b"".join(pieces))
