@@ -20,7 +20,7 @@ from auditor.encoding import shorten
 POSITIONS = ("hold", "open", "conditions", "no objection")
 """Worst first."""
 
-INTEGERS = ("modulus", "generator", "subgroup_order")
+INTEGERS = ("modulus", "generator", "subgroup_order", "cofactor")
 """The numbers under review: while they are equal, an improvement comes from something else."""
 
 EVIDENCE = ("name", "known_factors")

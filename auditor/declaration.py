@@ -58,6 +58,7 @@ class Declaration:
     scheme: str | None = None
     protocol: str | None = None
     subgroup_order: int | None = None
+    cofactor: int | None = None
     known_factors: tuple[int, ...] = ()
     parties: tuple[Party, ...] = ()
     message_bits: int | None = None
@@ -88,6 +89,7 @@ class Declaration:
             self.modulus,
             self.generator,
             self.subgroup_order,
+            self.cofactor,
             self.known_factors,
             self.provenance,
             self.public_values,

@@ -132,6 +132,7 @@ def questions(declaration: Declaration) -> Sequence[Line]:
         ("modulus", "", ""),
         ("generator", "", ""),
         ("subgroup_order", "", "the order of the generator"),
+        ("cofactor", "", "(n - 1) / subgroup_order, as X9.42 states it"),
         ("known_factors", "", "of the group order"),
         ("exponent", f"{{bits: {width}, use: single}}", f"width in bits, and {_USE}"),
         ("peer_check", "[range]", _CHECKS),

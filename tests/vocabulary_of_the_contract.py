@@ -21,7 +21,8 @@ _TEXTS = {
         "elgamal-raw", "elgamal-encoded", "elgamal-hashed", "elgamal", "dsa", "schnorr",
     ),
     "usage.protocol": (
-        "tls1.2", "tls1.3", "ssh", "ikev1", "ikev2", "cms", "openpgp", "custom",
+        "tls1.0", "tls1.1", "tls1.2", "tls1.3", "ssh", "ikev1", "ikev2", "cms", "openpgp",
+        "custom",
     ),
     "modulus.nature": ("prime", "prime power", "power of two", "composite"),
     "modulus.standard_group": (),
@@ -41,10 +42,12 @@ _TEXTS = {
 _BY_KIND: dict[FactKind, str] = {
     "bool": """
         usage.peer_range usage.peer_membership usage.peer_cofactor usage.exponent_reused
+        usage.ephemeral_reused
         modulus.safe_prime modulus.special_form_seen group.cyclic group.factored
         generator.unit generator.trivial generator.order_prime generator.order_even
         generator.generates_group generator.order_is_declared generator.canonical
         subgroup.declared subgroup.order_prime subgroup.divides_group
+        subgroup.cofactor_agrees
         provenance.verified provenance.regenerated provenance.offset_least
         scheme.forgery_seen scheme.message_symbol_leaks scheme.distinguisher_seen
         strength.sufficient""",

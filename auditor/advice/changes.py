@@ -76,8 +76,14 @@ def true_order(draft: Draft) -> Draft | None:
     if order is None or order == draft.declaration.subgroup_order:
         return None
     text = f"Declare subgroup_order {shorten(order)}: the generator has this prime order."
-    changed = replace(draft, declaration=replace(draft.declaration, subgroup_order=order))
+    changed = replace(draft, declaration=_with_order(draft.declaration, order))
     return changed.with_words(text)
+
+
+def _with_order(declaration: Declaration, order: int) -> Declaration:
+    """The declaration with this order; a declared cofactor belongs to the order it came with."""
+    kept = declaration.cofactor if order == declaration.subgroup_order else None
+    return replace(declaration, subgroup_order=order, cofactor=kept)
 
 
 def prime_order_generator(draft: Draft) -> Draft | None:
@@ -96,6 +102,7 @@ def prime_order_generator(draft: Draft) -> Draft | None:
         draft.declaration,
         generator=g,
         subgroup_order=q,
+        cofactor=None,
         public_values=(),
         provenance=_without_index(draft.declaration.provenance),
     )
@@ -136,6 +143,7 @@ def move_to(group: StandardGroup) -> Change:
             modulus=group.modulus,
             generator=group.generator,
             subgroup_order=q,
+            cofactor=None,
             known_factors=(),
             public_values=(),
             provenance=None,
@@ -265,8 +273,7 @@ def _unless_signing(
     changed = _with_parties(draft, parties, text, *breaks)
     if changed is None or subgroup_order is None:
         return changed
-    declaration = replace(changed.declaration, subgroup_order=subgroup_order)
-    return replace(changed, declaration=declaration)
+    return replace(changed, declaration=_with_order(changed.declaration, subgroup_order))
 
 
 def fit_widths(draft: Draft) -> Draft | None:

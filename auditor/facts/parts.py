@@ -70,7 +70,8 @@ def group_exponent(given: Given) -> int:
 
 def hints(given: Given) -> tuple[int, ...]:
     """Declared numbers that may divide the group order: checked by division, never trusted."""
-    declared = {*given.declaration.known_factors, given.declaration.subgroup_order or 1}
+    stated = given.declaration
+    declared = {*stated.known_factors, stated.subgroup_order or 1, stated.cofactor or 1}
     primes = {prime for prime, _ in given.see(modulus_factors)}
     return tuple(sorted(number for number in declared | primes if number > 1))
 

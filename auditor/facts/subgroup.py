@@ -40,6 +40,20 @@ def divides_group(given: Given) -> bool:
     return q > 0 and given.see(parts.group_order) % q == 0
 
 
+@fact(
+    "subgroup.cofactor_agrees",
+    "bool",
+    "the declared cofactor j satisfies n = qj + 1 with the declared q; undefined where no j is "
+    "declared",
+)
+def cofactor_agrees(given: Given) -> bool:
+    """RFC 2631, 2.2.2, step 1."""
+    n, j = given.declaration.modulus, given.declaration.cofactor
+    if j is None:
+        given.undefined()
+    return given.see(declared_order) * j == n - 1
+
+
 @fact("subgroup.cofactor_bits", "real", "log2 of phi(n)/q")
 def cofactor_bits(given: Given) -> float:
     q, order = given.see(declared_order), given.see(parts.group_order)

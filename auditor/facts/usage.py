@@ -16,7 +16,18 @@ SCHEMES = (
     "dsa",
     "schnorr",
 )
-PROTOCOLS = ("tls1.2", "tls1.3", "ssh", "ikev1", "ikev2", "cms", "openpgp", "custom")
+PROTOCOLS = (
+    "tls1.0",
+    "tls1.1",
+    "tls1.2",
+    "tls1.3",
+    "ssh",
+    "ikev1",
+    "ikev2",
+    "cms",
+    "openpgp",
+    "custom",
+)
 
 
 def key_of(party: Party, key: str) -> str:
@@ -110,6 +121,22 @@ def exponent_reused(given: Given) -> bool:
     silent = [party for party in given.see(parties) if party.exponent_use is None]
     spoken = [party for party in given.see(parties) if party.exponent_use is not None]
     reusing = [party for party in spoken if party.exponent_use != "single"]
+    if silent and not reusing:
+        given.undeclared(*(key_of(party, "exponent.use") for party in silent))
+    given.rest_on(*(key_of(party, "exponent.use") for party in reusing or spoken))
+    return bool(reusing)
+
+
+@narrow
+@fact(
+    "usage.ephemeral_reused",
+    "bool",
+    "some party uses an exponent more than once that is not declared to be static",
+)
+def ephemeral_reused(given: Given) -> bool:
+    silent = [party for party in given.see(parties) if party.exponent_use is None]
+    reusing = [party for party in given.see(parties) if party.exponent_use == "reused"]
+    spoken = [party for party in given.see(parties) if party.exponent_use is not None]
     if silent and not reusing:
         given.undeclared(*(key_of(party, "exponent.use") for party in silent))
     given.rest_on(*(key_of(party, "exponent.use") for party in reusing or spoken))

@@ -68,7 +68,7 @@ class EncodedSet:
             purpose=self.purpose,
             scheme=self.scheme,
             subgroup_order=self.subgroup_order,
-            known_factors=() if self.cofactor is None else (self.cofactor,),
+            cofactor=self.cofactor,
             parties=() if width is None else (Party(EVERYBODY, exponent_bits=width),),
             public_values=self.public_values,
             provenance=self.provenance,
@@ -166,16 +166,13 @@ def _from_x942(found: der.DomainParameters) -> EncodedSet:
     _refuse_impossible(
         modulus=(found.p, 1), generator=(found.g, 0), subgroup_order=(found.q, 1), j=(found.j, None)
     )
-    consistent = found.j is None or (found.j > 1 and found.j * found.q + 1 == found.p)
-    remarks = () if consistent else ("j is not (p-1)/q, and is left aside",)
     return EncodedSet(
         "key-agreement",
         found.p,
         found.g,
         subgroup_order=found.q,
-        cofactor=found.j if consistent else None,
+        cofactor=found.j,
         provenance=_provenance(found),
-        remarks=remarks,
     )
 
 

@@ -9,7 +9,7 @@ from auditor.schema_check import shipped_schema
 
 SCHEMA = "declaration.schema.json"
 
-NUMBERS = ("modulus", "generator", "subgroup_order")
+NUMBERS = ("modulus", "generator", "subgroup_order", "cofactor")
 NUMBER_LISTS = ("known_factors", "public_values")
 COUNTS = ("message_bits", "required_strength", "protect_until")
 WORDS = ("purpose", "scheme", "protocol")
@@ -74,7 +74,7 @@ def _typed(record: Mapping[str, Any]) -> dict[str, Any]:
     typed = dict(record)
     _text(record["name"])
     typed |= {key: _natural(record[key]) for key in ("modulus", "generator")}
-    for key in ("subgroup_order", *COUNTS):
+    for key in ("subgroup_order", "cofactor", *COUNTS):
         if key in record:
             typed[key] = _natural(record[key])
     for key in NUMBER_LISTS:

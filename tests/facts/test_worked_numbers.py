@@ -15,6 +15,7 @@ import pytest
 from auditor.claims.collection import Claims, check_all
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
+from auditor.declaration import Party
 from auditor.facts import Established
 from auditor.inquiry.answers import Answers
 from auditor.intake.standard_groups import find
@@ -208,3 +209,40 @@ def test_each_usable_small_order_has_a_witness_that_is_claimed() -> None:
         assert h != 1
         assert pow(h, r, n) == 1
     assert check_all(witnesses, secrets.randbelow) == {}
+
+
+def test_a_cofactor_belongs_to_its_modulus_and_order() -> None:
+    """The j of RFC 5114 group 23 follows from n and q; another one is found out."""
+    plain = group(23)
+    assert plain.subgroup_order is not None
+    j = (plain.modulus - 1) // plain.subgroup_order
+    stated = {given: known(group(23, cofactor=given), Claims(), QUICK) for given in (j, j + 1)}
+
+    assert stated[j].facts["subgroup.cofactor_agrees"].value is True
+    assert stated[j + 1].facts["subgroup.cofactor_agrees"].value is False
+    assert known(plain, Claims(), QUICK).absent["subgroup.cofactor_agrees"].reason == "undefined"
+    alone = known(declare(plain.modulus, plain.generator, cofactor=j), Claims(), QUICK)
+    assert alone.absent["subgroup.cofactor_agrees"].reason == "undeclared"
+
+
+@pytest.mark.parametrize(
+    ("uses", "reused"),
+    [
+        (("single", "static"), False),
+        (("reused", "static"), True),
+        (("reused", None), True),
+        (("single", None), None),
+    ],
+)
+def test_an_ephemeral_exponent_is_used_once(
+    uses: tuple[str | None, ...], reused: bool | None
+) -> None:
+    """Static exponents are none, and who says nothing could use one again."""
+    parties = tuple(Party(f"party {i}", exponent_use=use) for i, use in enumerate(uses))
+    found = known(declare(23, 5, parties=parties), Claims(), QUICK)
+    name = "usage.ephemeral_reused"
+
+    if reused is None:
+        assert found.absent[name].keys == ("parties.party 1.exponent.use",)
+    else:
+        assert found.facts[name].value is reused

@@ -97,7 +97,11 @@ def test_clauses_from_memory_stay_marked():
     marked = [candidate for candidate in RULED if "from memory" in candidate["source"]]
     rules = [rule for candidate in marked for rule in candidate["rules"]]
 
-    assert rules == ["sp800-56a-partial-check", "dsa-evidence-provable-primes"]
+    assert rules == [
+        "sp800-56a-partial-check",
+        "dsa-evidence-provable-primes",
+        "tls-version-withdrawn",
+    ]
     assert {RULES[rule].criterion.confidence for rule in rules} == {"memory"}
 
 

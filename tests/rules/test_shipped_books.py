@@ -130,6 +130,7 @@ AGREEMENT = proven(
 UNDEFINED = Absent("undefined")
 UNUSED = dict.fromkeys(
     (
+        "subgroup.cofactor_agrees",
         "strength.confinement_bits_at_most",
         "strength.hidden_form_bits_at_most",
         "exponent.confinement_leak_bits_at_least",

@@ -39,6 +39,7 @@ def proven(values: dict[str, Any]) -> dict[str, Fact]:
 def judged(values: dict[str, Any], absent: dict[str, Absent] | None = None) -> Judgement:
     """All books on a set with these facts; routes and leaks that are not named are closed."""
     closed = [n for n in VOCABULARY if n.startswith(("strength.", "exponent.", "public_values."))]
+    closed.append("subgroup.cofactor_agrees")
     absences = dict.fromkeys(closed, UNDEFINED) | (absent or {})
     absences = {name: why for name, why in absences.items() if name not in values}
     return judge(BOOKS, proven(values), absences, VOCABULARY)
@@ -81,6 +82,7 @@ def good_use(protocol: str, width: int) -> dict[str, Any]:
         "usage.purpose": "key-agreement",
         "usage.protocol": protocol,
         "usage.exponent_reused": False,
+        "usage.ephemeral_reused": False,
         "usage.exponent_width": width,
         "usage.peer_range": True,
         "usage.peer_membership": True,
@@ -391,6 +393,7 @@ SECONDARY_BOOKS = ("sp800-56a", "bsi-tr-02102")
 NOT_CONFIRMED = {
     "sp800-56a-partial-check": "memory",
     "dsa-evidence-provable-primes": "memory",
+    "tls-version-withdrawn": "memory",
     "dsa-sizes": "secondary",
     "dsa-evidence-probable-primes": "secondary",
     "dsa-generator-not-canonical": "secondary",
