@@ -5,6 +5,7 @@ its own check before it is handed on; what search got wrong ends here.
 """
 
 from collections.abc import Callable, Iterable
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from typing import TypeVar
 
@@ -239,7 +240,9 @@ class Answers:
                 done=done,
             )
         except SearchInterrupted as interrupted:
-            self._keep_factorization(number, interrupted.result)
+            # Whatever is wrong with what it had, whoever interrupts wants an end.
+            with suppress(Refuted):
+                self._keep_factorization(number, interrupted.result)
             raise
         self._keep_factorization(number, result)
         return result.rest == 1 or part.levels == plan.levels

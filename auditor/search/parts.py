@@ -1,6 +1,7 @@
 """A number in coprime parts, split as divisors become known."""
 
 from collections.abc import Iterable
+from dataclasses import dataclass
 from math import gcd, prod
 
 from auditor.search.primality import is_likely_prime, perfect_power
@@ -9,43 +10,55 @@ Powers = dict[int, int]
 
 
 class Parts:
-    """m = product of part^exponent, the parts coprime to each other and no perfect powers."""
+    """m = product of part^exponent, the parts coprime to each other and no perfect powers.
+
+    An interruption leaves it as it was before a division or as it is after: both are products of m.
+    """
 
     def __init__(self, m: int) -> None:
-        self._prime: Powers = {}
-        self._composite: Powers = {}
-        self._take({m: 1})
+        self._kinds = _sorted_out({m: 1})
 
     @property
     def open(self) -> int:
         """The product of the composite parts, each once; 1 when there are none."""
-        return prod(self._composite)
+        return prod(self._kinds.composite)
 
     def primes(self) -> tuple[tuple[int, int], ...]:
         """The likely primes and their exponents, in increasing order."""
-        return tuple(sorted(self._prime.items()))
+        return tuple(sorted(self._kinds.prime.items()))
 
     def composites(self) -> tuple[tuple[int, int], ...]:
         """The composite parts and their exponents, in increasing order."""
-        return tuple(sorted(self._composite.items()))
+        return tuple(sorted(self._kinds.composite.items()))
 
     def divide(self, divisors: Iterable[int]) -> Powers:
         """Splits the composite parts by each divisor; the likely primes that this brought."""
-        before = dict(self._prime)
-        pieces = dict(self._composite)
+        before = self._kinds
+        pieces = before.composite
         for divisor in divisors:
             pieces = _split(pieces, divisor)
-        new = {piece: e for piece, e in pieces.items() if piece not in self._composite}
-        self._composite = {part: e for part, e in self._composite.items() if part in pieces}
-        self._take(new)
-        return {p: e for p, e in self._prime.items() if p not in before}
+        kept = {part: e for part, e in before.composite.items() if part in pieces}
+        new = _sorted_out({piece: e for piece, e in pieces.items() if piece not in kept})
+        self._kinds = _Kinds(before.prime | new.prime, kept | new.composite)
+        return new.prime
 
-    def _take(self, pieces: Powers) -> None:
-        for piece, exponent in pieces.items():
-            base, power = (piece > 1 and perfect_power(piece)) or (piece, 1)
-            if base > 1:
-                kind = self._prime if is_likely_prime(base) else self._composite
-                kind[base] = exponent * power
+
+@dataclass(frozen=True, slots=True)
+class _Kinds:
+    """The parts by kind: likely primes, and certainly composite."""
+
+    prime: Powers
+    composite: Powers
+
+
+def _sorted_out(pieces: Powers) -> _Kinds:
+    kinds = _Kinds({}, {})
+    for piece, exponent in pieces.items():
+        base, power = (piece > 1 and perfect_power(piece)) or (piece, 1)
+        if base > 1:
+            kind = kinds.prime if is_likely_prime(base) else kinds.composite
+            kind[base] = exponent * power
+    return kinds
 
 
 def _split(pieces: Powers, divisor: int) -> Powers:
