@@ -2,6 +2,7 @@
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Any
 
 from auditor.report.words import CONFIDENCE_MEANING, GRADES, REASON_MEANING, outcome, plain_value
@@ -69,13 +70,55 @@ class MergedFinding:
         return outcome(self.grade, self.outcome)
 
 
-def merge(parameter_set: Record, rules: Mapping[str, Record]) -> tuple[MergedFinding, ...]:
-    """The findings of a set, worst first; ``rules`` are those of the books, by id."""
-    groups: dict[tuple[str, str, str], list[Record]] = {}
-    for finding in sorted(parameter_set["findings"], key=_weight(parameter_set["decided_by"])):
-        key = finding["defect"], finding["outcome"], finding["grade"]
-        groups.setdefault(key, []).append(finding)
-    return tuple(_merged(group, parameter_set, rules) for group in groups.values())
+class Merging:
+    """Merges the findings of sets; ``rules`` are those of the books, by id.
+
+    Remedies that sets share are put in words once. They are told by their identity: the sets must
+    stay as they are while this is in use.
+    """
+
+    def __init__(self, rules: Mapping[str, Record]) -> None:
+        self.titles = {rule: text["title"] for rule, text in rules.items()}
+        self._why = {rule: text["why"] for rule, text in rules.items()}
+        self._remedies: dict[int, Remedy] = {}
+
+    def findings(self, parameter_set: Record) -> tuple[MergedFinding, ...]:
+        """The findings of a set, worst first."""
+        groups: dict[tuple[str, str, str], list[Record]] = {}
+        for finding in sorted(parameter_set["findings"], key=_weight(parameter_set["decided_by"])):
+            key = finding["defect"], finding["outcome"], finding["grade"]
+            groups.setdefault(key, []).append(finding)
+        return tuple(self._merged(group, parameter_set) for group in groups.values())
+
+    def _merged(self, group: list[Record], parameter_set: Record) -> MergedFinding:
+        first = group[0]
+        values = {name: value for finding in group for name, value in finding["values"].items()}
+        missing = _once([name for finding in group for name in finding["missing"]])
+        return MergedFinding(
+            defect=first["defect"],
+            outcome=first["outcome"],
+            grade=first["grade"],
+            title=first["title"],
+            statements=_once([finding["statement"] for finding in group]),
+            criteria=_once([self._criterion(finding) for finding in group]),
+            values=tuple([(name, plain_value(value)) for name, value in values.items()]),
+            missing=tuple([(name, _why_missing(name, parameter_set)) for name in missing]),
+            remedies=_once([self._remedy(f["remedy"]) for f in group if f["remedy"]]),
+            cautions=_once([caution for finding in group for caution in finding["cautions"]]),
+            concessions=_once([_concession(f["concession"]) for f in group if f["concession"]]),
+            waits_for=_waits_for(first["outcome"], missing, parameter_set),
+        )
+
+    def _criterion(self, finding: Record) -> Criterion:
+        criterion, rule = finding["criterion"], finding["rule"]
+        source = criterion["title"], criterion["clause"], criterion["word"], criterion["confidence"]
+        return _criterion(rule, finding["title"], self._why.get(rule, ""), *source)
+
+    def _remedy(self, record: Record) -> Remedy:
+        known = self._remedies.get(id(record))
+        if known is None:
+            known = self._remedies[id(record)] = _remedy(record)
+        return known
 
 
 def _weight(decided_by: str | None) -> Any:
@@ -90,52 +133,20 @@ def _weight(decided_by: str | None) -> Any:
     return weight
 
 
-def _merged(
-    group: list[Record], parameter_set: Record, rules: Mapping[str, Record]
-) -> MergedFinding:
-    first = group[0]
-    values = {name: value for finding in group for name, value in finding["values"].items()}
-    missing = _once(name for finding in group for name in finding["missing"])
-    return MergedFinding(
-        defect=first["defect"],
-        outcome=first["outcome"],
-        grade=first["grade"],
-        title=first["title"],
-        statements=_once(finding["statement"] for finding in group),
-        criteria=_once(_criterion(finding, rules) for finding in group),
-        values=tuple((name, plain_value(value)) for name, value in values.items()),
-        missing=tuple((name, _why_missing(name, parameter_set)) for name in missing),
-        remedies=tuple(remedy(item) for item in _different(group)),
-        cautions=_once(caution for finding in group for caution in finding["cautions"]),
-        concessions=_once(_concession(f["concession"]) for f in group if f["concession"]),
-        waits_for=_waits_for(first["outcome"], missing, parameter_set),
-    )
-
-
-def _different(group: Iterable[Record]) -> list[Record]:
-    """The remedies of the findings, equal ones once."""
-    found: list[Record] = []
-    for finding in group:
-        if finding["remedy"] and finding["remedy"] not in found:
-            found.append(finding["remedy"])
-    return found
-
-
 def _once(items: Iterable[Any]) -> tuple[Any, ...]:
     """Each different item once, in order of first appearance."""
     return tuple(dict.fromkeys(items))
 
 
-def _criterion(finding: Record, rules: Mapping[str, Record]) -> Criterion:
-    criterion = finding["criterion"]
-    doubt = CONFIDENCE_MEANING[criterion["confidence"]]
-    parts = [criterion["title"], criterion["clause"], f"“{criterion['word']}”", doubt]
-    why = rules[finding["rule"]]["why"] if finding["rule"] in rules else ""
-    source = ", ".join(part for part in parts if part)
-    return Criterion(finding["rule"], finding["title"], source, why)
+@lru_cache(maxsize=4096)
+def _criterion(
+    rule: str, title: str, why: str, document: str, clause: str, word: str, confidence: str
+) -> Criterion:
+    parts = [document, clause, f"“{word}”", CONFIDENCE_MEANING[confidence]]
+    return Criterion(rule, title, ", ".join(part for part in parts if part), why)
 
 
-def remedy(record: Record) -> Remedy:
+def _remedy(record: Record) -> Remedy:
     """A remedy of the record with its patch in one line a key."""
     patch = record["patch"] or {}
     return Remedy(

@@ -3,6 +3,7 @@
 import math
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
+from functools import cached_property
 
 from auditor.report.sheet_view import Sheet
 from auditor.report.strength_view import judged
@@ -14,7 +15,7 @@ MOST_DOTS = 80
 _HIGHEST = 256
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Modulus:
     """One modulus with the sheets that use it, worst first."""
 
@@ -31,7 +32,7 @@ class Modulus:
         """The worst position of any set with it."""
         return min((sheet.position for sheet in self.sheets), key=POSITIONS.index)
 
-    @property
+    @cached_property
     def bits(self) -> float | None:
         """The least figure that a set with it is judged by, for a passive attacker or a peer."""
         return min(

@@ -7,7 +7,7 @@ from functools import cached_property
 from typing import Any
 
 from auditor.report import words
-from auditor.report.findings_view import Concession, MergedFinding, Remedy, merge
+from auditor.report.findings_view import Concession, MergedFinding, Merging, Remedy
 from auditor.report.strength_view import Strength, strength
 from auditor.report.text import Number
 
@@ -162,8 +162,8 @@ class Sheet:
         return tuple(_limits(self.record))
 
 
-def sheet(number: int, group: list[Record], rules: Mapping[str, Record]) -> Sheet:
-    """The sheet of sets of equal digest; ``rules`` are those of the books, by id."""
+def sheet(number: int, group: list[Record], merging: Merging) -> Sheet:
+    """The sheet of sets of equal digest."""
     first = group[0]
     declaration = first["declaration"]
     places = [place for parameter_set in group for place in parameter_set["places"]]
@@ -177,8 +177,8 @@ def sheet(number: int, group: list[Record], rules: Mapping[str, Record]) -> Shee
         subgroup_order=None if order is None else Number.read(order),
         usage=words.usage(declaration),
         strength=strength(first),
-        findings=merge(first, rules),
-        titles={rule: text["title"] for rule, text in rules.items()},
+        findings=merging.findings(first),
+        titles=merging.titles,
     )
 
 

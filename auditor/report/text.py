@@ -7,7 +7,6 @@ a terminal; what a character means to one format is escaped by the renderer of t
 
 import hashlib
 import re
-from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import Any
@@ -43,14 +42,26 @@ def _written_out(found: re.Match[str]) -> str:
 
 
 def visible_record(value: Any) -> Any:
-    """A JSON value with all its text, the keys included, made :func:`visible`."""
-    if isinstance(value, str):
-        return visible(value)
-    if isinstance(value, Mapping):
-        return {visible(key): visible_record(item) for key, item in value.items()}
-    if isinstance(value, list):
-        return [visible_record(item) for item in value]
-    return value
+    """A JSON value with all its text, the keys included, made :func:`visible`; what stood in it at
+    several places as one is one again, and what needs no change is the same."""
+    known: dict[int, Any] = {}
+
+    def shown(part: Any) -> Any:
+        made = known.get(id(part))
+        if made is not None:
+            return made
+        if isinstance(part, str):
+            made = visible(part)
+        elif isinstance(part, dict):
+            made = {shown(key): shown(item) for key, item in part.items()}
+        elif isinstance(part, list):
+            made = [shown(item) for item in part]
+        else:
+            return part
+        known[id(part)] = part if made == part else made
+        return known[id(part)]
+
+    return shown(value)
 
 
 def clipped(text: str, limit: int) -> str:
@@ -65,19 +76,22 @@ def read_integer(value: int | str) -> int:
 
 @dataclass(frozen=True, slots=True)
 class Number:
-    """An integer of a record for readers: in full, and short with its bit length and digest."""
+    """An integer of a record for readers: in full and short, its bit length and its digest."""
 
     full: str
     length: int
-    digest: str
 
     @classmethod
     def read(cls, value: int | str) -> "Number":
         """From a JSON integer or hex text; ValueError for other text."""
         number = read_integer(value)
-        text = hex(number)
-        full = str(number) if abs(number) <= 2**53 else text
-        return cls(full, number.bit_length(), hashlib.sha256(text.encode()).hexdigest())
+        full = str(number) if abs(number) <= 2**53 else hex(number)
+        return cls(full, number.bit_length())
+
+    @property
+    def digest(self) -> str:
+        """SHA-256 over the lower-case hex text, 0x included."""
+        return hashlib.sha256(hex(int(self.full, 0)).encode()).hexdigest()
 
     @property
     def is_long(self) -> bool:
@@ -91,5 +105,5 @@ class Number:
 
     @property
     def mark(self) -> str:
-        """The first 12 hex digits of SHA-256 over the lower-case hex text, 0x included."""
+        """The first 12 hex digits of the digest."""
         return self.digest[:12]

@@ -12,6 +12,7 @@ from functools import cached_property
 from typing import Any
 
 from auditor.report import words
+from auditor.report.findings_view import Merging
 from auditor.report.json_report import write
 from auditor.report.questions_view import Question, questions
 from auditor.report.sheet_view import Sheet, sheet
@@ -176,7 +177,9 @@ def view(record: "Record | View", put: Callable[[bytes], object] = _nowhere) -> 
         return record
     written = write(record, put)
     shown = visible_record(record) if written.may_hide else record
-    rules = {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
+    merging = Merging(
+        {rule: text for book in shown["rulebooks"] for rule, text in book["rules"].items()}
+    )
     groups: dict[str, list[Record]] = {}
     for parameter_set in shown["parameter_sets"]:
         groups.setdefault(parameter_set["digest"], []).append(parameter_set)
@@ -184,7 +187,7 @@ def view(record: "Record | View", put: Callable[[bytes], object] = _nowhere) -> 
     return View(
         shown,
         written.sha256,
-        tuple(sheet(number, group, rules) for number, group in enumerate(ordered, 1)),
+        tuple(sheet(number, group, merging) for number, group in enumerate(ordered, 1)),
         tuple(_book(book) for book in shown["rulebooks"]),
     )
 

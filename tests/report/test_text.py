@@ -63,6 +63,17 @@ def test_keys_and_values_of_a_record_become_visible() -> None:
     }
 
 
+def test_what_a_record_shares_stays_shared() -> None:
+    """A change is made once for all places, and what needs none is not copied."""
+    same, other = {"c": "d"}, ["a\x00"]
+    shown = visible_record({"x": [same, other], "y": [other, same]})
+
+    assert shown == {"x": [{"c": "d"}, ["a⟨U+0000⟩"]], "y": [["a⟨U+0000⟩"], {"c": "d"}]}
+    assert shown["x"][0] is shown["y"][1] is same
+    assert shown["x"][1] is shown["y"][0]
+    assert other == ["a\x00"]
+
+
 @given(st.integers(0, 2**3000))
 def test_a_number_is_named_by_length_and_digest(value: int) -> None:
     """Short or long, the digest is over the hex text, so that anybody can recompute it."""

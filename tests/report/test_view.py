@@ -1,5 +1,6 @@
 """What documents derive from a record."""
 
+from copy import deepcopy
 from hashlib import sha256
 
 import pytest
@@ -8,7 +9,7 @@ from auditor.report.json_report import dumps
 from auditor.report.sheet_view import Sheet
 from auditor.report.view import view
 from auditor.report.words import POSITIONS, usage, verdict
-from tests.report.records import fixture
+from tests.report.records import fixture, with_text
 
 
 def sheet_named(name: str) -> Sheet:
@@ -198,3 +199,26 @@ def test_usage_tells_silence_from_nothing() -> None:
 def test_a_set_that_was_interrupted_is_announced() -> None:
     """An incomplete review says so first."""
     assert view(fixture("nothing-read")).notices[0].startswith("This report is incomplete")
+
+
+def test_the_json_report_is_given_out_on_the_way() -> None:
+    """What carries the digest is the report itself, as it was before its text was made visible."""
+    record = with_text("\u202e")
+    pieces: list[bytes] = []
+    shown = view(record, pieces.append)
+
+    assert b"".join(pieces) == dumps(record).encode()
+    assert shown.record_digest == sha256(b"".join(pieces)).hexdigest()
+
+
+def test_sets_that_share_a_remedy_share_its_words() -> None:
+    """Equal remedies, whether the very same or not, are equal words."""
+    record = fixture("harbour")
+    crane = next(s for s in record["parameter_sets"] if s["name"] == "crane telemetry")
+    again = crane | {"digest": 64 * "0"}
+    copied = deepcopy(crane) | {"digest": 64 * "1"}
+    record["parameter_sets"] = [crane, again, copied]
+    one, same, equal = (sheet.findings for sheet in view(record).sheets)
+
+    assert one == same == equal
+    assert any(finding.remedies for finding in one)
