@@ -2,9 +2,10 @@
 
 ``python -m tests.benchmarks.bulk sets 1000 10000`` reviews so many small sets over few moduli, each
 count in a process of its own; ``distinct`` in place of ``sets`` gives each set a modulus of its
-own. ``python -m tests.benchmarks.bulk primes MODULI [COUNT [BITS]]``
-compares a review of safe primes from a file in OpenSSH's moduli(5) format, cold and with a warm
-ledger, with nothing but the same primality rounds on the same number of processes.
+own. ``python -m tests.benchmarks.bulk documents 10000`` writes the page and the JSON report of so
+many sets over 16 moduli, no two of them alike. ``python -m tests.benchmarks.bulk primes MODULI
+[COUNT [BITS]]`` compares a review of safe primes from a file in OpenSSH's moduli(5) format, cold
+and with a warm ledger, with nothing but the same primality rounds on the same number of processes.
 """
 
 import os
@@ -29,7 +30,10 @@ from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.facts import vocabulary
 from auditor.inquiry.answers import Cores
 from auditor.inquiry.pool import LocalPool
+from auditor.outputs import write_text, written
+from auditor.report import html
 from auditor.report.record import Reading, build
+from auditor.report.view import view
 from auditor.review import DEFAULT_BOOKS, Surroundings, census, investigate
 from auditor.rulebooks.loading import load_all
 from auditor.run_values import RunValues
@@ -57,6 +61,44 @@ def small_sets(
         )
         for place in range(count)
     ]
+
+
+def unlike_sets(count: int) -> list[Declaration]:
+    """Sets over so few moduli of which no two have modulus, generator and width in common."""
+    each = 5 * POOL
+    sets = [
+        replace(
+            item,
+            generator=2 + place // POOL % 5,
+            parties=(replace(item.parties[0], exponent_bits=BITS // 2 + place // each),),
+        )
+        for place, item in enumerate(small_sets(count))
+    ]
+    assert len({item.digest() for item in sets}) == count
+    return sets
+
+
+def time_documents(count: int) -> None:
+    """Print what the page and the JSON report of so many unlike sets take, and the sizes."""
+    books = load_all(DEFAULT_BOOKS, vocabulary())
+    sets = unlike_sets(count)
+    run = replace(RunValues("2026-12-01", "quick"), census=census(sets))
+    claims, _ = investigate(sets, run, books, Surroundings(secrets.randbelow))
+    record = build(Reading(tuple(sets)), claims, run, books, "conditions")
+    before = peak_mib()
+    with tempfile.TemporaryDirectory() as name:
+        page, text = Path(name, "r.html"), Path(name, "r.json")
+        begun = time.process_time()
+        with written(str(text)) as put:
+            shown = view(record, put)
+        middle = time.process_time()
+        write_text(str(page), html.render(shown))
+        print(
+            f"{count:,} sets, {len(shown.sheets):,} of them different: view and JSON of "
+            f"{text.stat().st_size / 1e6:.0f} MB {middle - begun:.1f} s, page of "
+            f"{page.stat().st_size / 1e6:.0f} MB {time.process_time() - middle:.1f} s; peak "
+            f"{peak_mib():.0f} MiB, {before:.0f} MiB of it before"
+        )
 
 
 def peak_mib() -> float:
@@ -131,6 +173,8 @@ def main(words: list[str]) -> None:
         numbers = [int(word) for word in words[2:]]
         count, bits = (*numbers, *(24, 2048)[len(numbers) :])
         time_primes(Path(words[1]), count, bits)
+    elif words[0] == "documents":
+        time_documents(int(words[1]))
     elif len(words) == 2:
         count = int(words[1])
         time_sets(count, POOL if words[0] == "sets" else count)
