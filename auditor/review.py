@@ -72,7 +72,7 @@ def review(
     read = governed.result
     run = situated(run, read.declarations, surroundings)
     claims, notices = investigate(read.declarations, run, rulebooks, surroundings)
-    reading = _reading(read, (*governed.notices, *notices))
+    reading = reading_of(read, (*governed.notices, *notices))
     record = build(reading, claims, run, rulebooks, fail_on)
     return _with_policy(record, governed, concessions)
 
@@ -171,7 +171,9 @@ def _ledger(surroundings: Surroundings, notices: list[str]) -> Ledger | None:
     return Ledger(surroundings.ledger, surroundings.draw, notices.append, jobs)
 
 
-def _reading(read: InputResult, notices: tuple[str, ...]) -> Reading:
+def reading_of(read: InputResult, notices: tuple[str, ...] = ()) -> Reading:
+    """What was read as the record lists it; ``notices`` are those of the run, after those of the
+    inputs."""
     return Reading(
         declarations=read.declarations,
         inputs=tuple({"path": item.path, "sha256": item.sha256} for item in read.inputs),

@@ -4,13 +4,15 @@ Nothing is searched for and nothing in the report is believed but the owner's wo
 of search effort, which nobody can check. The verifier draws its own bases.
 """
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections import Counter
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
 from auditor import __version__
 from auditor.claims.base import Draw
 from auditor.claims.collection import Claims, check_all, read_claim
+from auditor.claims.prime import Prime
 from auditor.concessions import ROLE, Concessions, conceded, recorded
 from auditor.declaration import Declaration, Place
 from auditor.encoding import shorten
@@ -19,7 +21,7 @@ from auditor.intake.record import declaration_from
 from auditor.intake.tree import InputResult
 from auditor.report.json_report import problems
 from auditor.report.record import FORMAT, Reading, build
-from auditor.review import census
+from auditor.review import census, reading_of
 from auditor.rulebooks.loading import available, load_all
 from auditor.rulebooks.rulebook import Rulebook, RulebookError
 from auditor.run_values import RunValues
@@ -56,9 +58,12 @@ def verify(
         return Verification((), (f"the report has format {shorten(report.get('report'))}",))
     if malformed := problems(report):
         return Verification(tuple(malformed))
+    if repeated := list(_repeated(report)):
+        return Verification(tuple(repeated))
     claims, failures = _claims(report)
     failed = check_all(claims, draw)
     failures += [f"claims.{claim_id}: {reason}" for claim_id, reason in failed.items()]
+    failures += _too_few_rounds(claims, report["run"]["rounds"])
     if against is not None:
         failures += _differences_of_inputs(report, against)
     failures += _differences_of_concessions(report, concessions)
@@ -81,6 +86,20 @@ def verify(
     return Verification(tuple(differences(again, report)), claims=len(claims))
 
 
+def _repeated(report: Mapping[str, Any]) -> Iterator[str]:
+    """What stands twice and may not: under the id of another set one could hide, or a file behind
+    another of the same path."""
+    names = {
+        "parameter_sets": [item["id"] for item in report["parameter_sets"]],
+        "inputs": [item["path"] for item in report["inputs"] if "role" not in item],
+        "rulebooks": [item["name"] for item in report["rulebooks"]],
+    }
+    for member, listed in names.items():
+        for name, count in Counter(listed).items():
+            if count > 1:
+                yield f"{member}: {shorten(name, 200)} stands {count} times"
+
+
 def _claims(report: Mapping[str, Any]) -> tuple[Claims, list[str]]:
     claims, failures = Claims(), []
     for claim_id, record in report["claims"].items():
@@ -93,6 +112,15 @@ def _claims(report: Mapping[str, Any]) -> tuple[Claims, list[str]]:
             failures.append(f"claims.{claim_id}: its id is not that of its content")
         claims.add([claim])
     return claims, failures
+
+
+def _too_few_rounds(claims: Claims, rounds: int) -> list[str]:
+    """Probable primes that were tested less than the run says; recalled ones may have had more."""
+    return [
+        f"claims.{claim.id}: {claim.rounds} rounds, and the run says {rounds}"
+        for claim in claims
+        if isinstance(claim, Prime) and claim.method == "baillie-psw" and claim.rounds < rounds
+    ]
 
 
 def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> dict[str, Any]:
@@ -126,9 +154,11 @@ def _rulebooks(names: Sequence[str], files: Iterable[str]) -> tuple[Rulebook, ..
 
 
 def _declaration(record: Mapping[str, Any]) -> Declaration:
-    source = record["source"]
-    place = Place(source["path"], source["line"], source.get("column", 1))
-    return declaration_from(record["declaration"], place)
+    return declaration_from(record["declaration"], _place(record["source"]))
+
+
+def _place(source: Mapping[str, Any]) -> Place:
+    return Place(source["path"], source["line"], source.get("column", 1))
 
 
 def _other_books(report: Mapping[str, Any], again: Mapping[str, Any]) -> list[str]:
@@ -149,16 +179,29 @@ def _differences_of_inputs(report: Mapping[str, Any], against: InputResult) -> l
         if now.get(path) != then[path]
     ]
     failures += [f"inputs: {path} was not reviewed" for path in sorted(now.keys() - then.keys())]
-    declared = {
-        declaration.identity: declaration.document() for declaration in against.declarations
+    declared = {item.identity: (item.document(), item.place) for item in against.declarations}
+    reviewed = {
+        item["id"]: (item["declaration"], _place(item["source"]))
+        for item in report["parameter_sets"]
     }
-    reviewed = {item["id"]: item["declaration"] for item in report["parameter_sets"]}
     failures += [
         f"parameter_sets: {identity} is not what the inputs declare"
         for identity in sorted(declared.keys() | reviewed.keys())
         if declared.get(identity) != reviewed.get(identity)
     ]
-    return failures
+    return failures + _differences_of_reading(report, against)
+
+
+def _differences_of_reading(report: Mapping[str, Any], against: InputResult) -> list[str]:
+    """What is told otherwise of inputs that were not read, were passed over, or need a word; in
+    whatever order they were named."""
+    now = reading_of(against)
+    failures = []
+    for member, follow in (("errors", now.errors), ("skipped", now.skipped)):
+        expected, found = (sorted(map(dict, each), key=repr) for each in (follow, report[member]))
+        failures += differences(expected, found, member)
+    untold = Counter(now.notices) - Counter(report["notices"])
+    return failures + [f"notices: {shorten(line, 200)} is missing" for line in sorted(untold)]
 
 
 def _differences_of_concessions(

@@ -1,13 +1,17 @@
 """The verifier holds what holds, and lets pass only what nobody else could vouch for."""
 
 import copy
+import json
 import secrets
+from dataclasses import replace
 from functools import cache
 from pathlib import Path
 from typing import Any
 
 import pytest
 
+from auditor.intake.reading import Notice
+from auditor.intake.tree import InputResult, read_inputs
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
 from auditor.search import factoring, primality
@@ -82,6 +86,159 @@ def test_another_version_or_book_is_no_verdict() -> None:
     assert verify(other, secrets.randbelow).status == 2
     older["claims"] = {}
     assert verify(older, secrets.randbelow).status == 2
+
+
+def stronger() -> dict[str, Any]:
+    """The report as if it had been made with more effort, everything that follows changed too."""
+    record = copy.deepcopy(original())
+    record["run"] |= {"effort": "thorough", "rounds": 64}
+    return record
+
+
+def test_primes_tested_less_than_the_run_says_are_refused() -> None:
+    """The effort and the rounds that follow from it, changed together: every claim says fewer."""
+    result = verify(stronger(), secrets.randbelow)
+    probable = [
+        claim_id
+        for claim_id, claim in original()["claims"].items()
+        if claim["certificate"].get("method") == "baillie-psw"
+    ]
+
+    assert result.status == 1
+    assert probable
+    for claim_id in probable:
+        assert f"claims.{claim_id}: 16 rounds, and the run says 64" in result.failures
+
+
+def test_primes_tested_more_than_the_run_says_are_none_the_worse() -> None:
+    """Claims recalled from a longer run."""
+    longer = copy.deepcopy(original())
+    probable = [c["certificate"] for c in longer["claims"].values() if "rounds" in c["certificate"]]
+    for certificate in probable:
+        certificate |= {"rounds": 64, "error_bits": 128}
+    result = verify(seal(longer), secrets.randbelow)
+
+    assert probable
+    assert (longer["run"]["rounds"], result.failures, result.status) == (16, (), 0)
+
+
+TREE = {
+    "good.yaml": """\
+auditor: 1
+parameter_sets:
+  - name: a
+    purpose: key-agreement
+    modulus: {group: ffdhe2048}
+    exponent: {bits: 225, use: single}
+    peer_check: [range]
+""",
+    "bad.yaml": "auditor: 1\nparameter_sets:\n  - {name: b, modulus: 17, generatr: 3}\n",
+    "dh.pem": "-----BEGIN DH PARAMETERS-----\n",
+    "numbers.py": f"dh_prime = {hex(2**512 + 75)}\n",
+}
+"""A set, a set that cannot be read, half a file of parameters, a number that is no set."""
+
+
+class TestAgainst:
+    """A report beside the inputs that it is about."""
+
+    @pytest.fixture
+    def tree(self, tmp_path: Path) -> tuple[dict[str, Any], InputResult]:
+        """A report of a tree that was not read whole, and what is in the tree."""
+        for name, text in TREE.items():
+            (tmp_path / name).write_text(text)
+        run = RunValues("2026-12-01", "quick")
+        record = review([str(tmp_path)], run, Surroundings(secrets.randbelow))
+        inputs = read_inputs([str(tmp_path)])
+        assert verify(record, secrets.randbelow, against=inputs).status == 0
+        return record, inputs
+
+    def test_what_was_not_read_cannot_be_left_out(self, tree: Any) -> None:
+        """Without its errors a report would call itself complete."""
+        record, inputs = tree
+        record = {**record, "errors": [], "complete": True}
+        result = verify(record, secrets.randbelow, against=inputs)
+
+        assert len(tree[0]["errors"]) > 1
+        assert verify(record, secrets.randbelow).status == 0
+        assert (result.status, result.failures[0][:8]) == (1, "errors: ")
+
+    @pytest.mark.parametrize(
+        ("member", "key", "value"),
+        [
+            ("errors", "path", "elsewhere.yaml"),
+            ("errors", "line", 7),
+            ("errors", "column", 7),
+            ("errors", "message", "harmless"),
+            ("skipped", "reason", "harmless"),
+            ("skipped", "path", "elsewhere.yaml"),
+        ],
+    )
+    def test_what_was_not_reviewed_is_told_as_it_is(
+        self, tree: Any, member: str, key: str, value: Any
+    ) -> None:
+        """Every word of an error and of what was passed over follows from the inputs."""
+        record, inputs = tree
+        (first, *others) = record[member]
+        changed = {**record, member: [{**first, key: value}, *others]}
+        fewer = {**record, member: others}
+        more = {**record, member: [*others, first, {**first, key: value}]}
+
+        for edited in (changed, fewer, more):
+            edited = {**edited, "complete": not edited["errors"]}
+            assert verify(edited, secrets.randbelow, against=inputs).status == 1
+        turned = {**record, member: [*others, first]}
+        assert verify(turned, secrets.randbelow, against=inputs).status == 0
+
+    def test_a_notice_about_the_inputs_cannot_be_left_out(self, tree: Any) -> None:
+        """Those of the run itself may come on top."""
+        record, inputs = tree
+        inputs = replace(inputs, notices=(Notice("good.yaml", 4, "take care"),))
+        told = {**record, "notices": ["a claim was dropped.", "good.yaml:4: take care"]}
+        result = verify(record, secrets.randbelow, against=inputs)
+
+        assert result.failures == ("notices: good.yaml:4: take care is missing",)
+        assert verify(told, secrets.randbelow, against=inputs).status == 0
+
+    def test_a_set_stands_where_it_was_declared(self, tree: Any) -> None:
+        """Its line is checked as well as its words."""
+        record, inputs = copy.deepcopy(tree[0]), tree[1]
+        record["parameter_sets"][0]["source"]["line"] = 7
+        record["parameter_sets"][0]["places"][0]["line"] = 7
+
+        assert verify(record, secrets.randbelow).status == 0
+        assert verify(record, secrets.randbelow, against=inputs).status == 1
+
+
+def test_no_set_hides_behind_the_id_of_another(tmp_path: Path) -> None:
+    """Two sets under one id, both sound, one of them nowhere in the inputs."""
+    path = tmp_path / "good.yaml"
+    head, entry = TREE["good.yaml"].split("  - name: a\n")
+    second = entry.replace("ffdhe2048", "modp1024")
+    path.write_text(f"{head}  - name: b\n{second}  - name: a\n{entry}")
+    run = RunValues("2026-12-01", "quick")
+    record = review([str(path)], run, Surroundings(secrets.randbelow))
+    path.write_text(head + "\n" * second.count("\n") + f"\n  - name: a\n{entry}")
+    forged = json.loads(
+        json.dumps(record).replace('#b"', '#a"').replace('"name": "b"', '"name": "a"')
+    )
+    inputs = read_inputs([str(path)])
+    forged["inputs"] = [{"path": file.path, "sha256": file.sha256} for file in inputs.inputs]
+    result = verify(forged, secrets.randbelow, against=inputs)
+
+    assert [item["position"] for item in forged["parameter_sets"]] == ["hold", "no objection"]
+    assert result.failures == (f"parameter_sets: {path}#a stands 2 times",)
+
+
+@pytest.mark.parametrize("member", ["inputs", "rulebooks"])
+def test_no_file_hides_behind_another_of_its_name(member: str) -> None:
+    """Files that were read, and books, stand once."""
+    record = copy.deepcopy(original())
+    record[member].insert(0, {**record[member][0], "sha256": "0" * 64})
+    result = verify(record, secrets.randbelow)
+
+    assert result.status == 1
+    assert "stands 2 times" in result.failures[0]
 
 
 class TestBrokenSearch:
