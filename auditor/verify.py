@@ -198,10 +198,13 @@ def _differences_of_reading(report: Mapping[str, Any], against: InputResult) -> 
     now = reading_of(against)
     failures = []
     for member, follow in (("errors", now.errors), ("skipped", now.skipped)):
-        expected, found = (sorted(map(dict, each), key=repr) for each in (follow, report[member]))
-        failures += differences(expected, found, member)
+        failures += differences(_in_order(follow), _in_order(report[member]), member)
     untold = Counter(now.notices) - Counter(report["notices"])
     return failures + [f"notices: {shorten(line, 200)} is missing" for line in sorted(untold)]
+
+
+def _in_order(records: Iterable[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    return sorted(map(dict, records), key=lambda record: repr(sorted(record.items())))
 
 
 def _differences_of_concessions(

@@ -133,10 +133,11 @@ parameter_sets:
     peer_check: [range]
 """,
     "bad.yaml": "auditor: 1\nparameter_sets:\n  - {name: b, modulus: 17, generatr: 3}\n",
+    "worse.yaml": "auditor: 1\n" + " " * 9 + "parameter_sets: []\n",
     "dh.pem": "-----BEGIN DH PARAMETERS-----\n",
     "numbers.py": f"dh_prime = {hex(2**512 + 75)}\n",
 }
-"""A set, a set that cannot be read, half a file of parameters, a number that is no set."""
+"""A set, sets that cannot be read, half a file of parameters, a number that is no set."""
 
 
 class TestAgainst:
@@ -150,6 +151,7 @@ class TestAgainst:
         run = RunValues("2026-12-01", "quick")
         record = review([str(tmp_path)], run, Surroundings(secrets.randbelow))
         inputs = read_inputs([str(tmp_path)])
+        record = json.loads(json.dumps(record, sort_keys=True))
         assert verify(record, secrets.randbelow, against=inputs).status == 0
         return record, inputs
 
