@@ -88,14 +88,17 @@ def require(condition: bool, reason: str) -> None:
         raise Refuted(reason)
 
 
-def require_normal(factors: Factors) -> None:
-    """Raise :class:`Refuted` unless primes ascend, exceed 1 and have positive exponents."""
+def require_normal(factors: Factors, n: int) -> None:
+    """Raise :class:`Refuted` unless primes ascend, exceed 1, have positive exponents, and their
+    powers may divide a number as long as ``n``: a short record must not ask for a long product."""
     primes = [prime for prime, _ in factors]
     require(primes == sorted(set(primes)), "the factors are not in ascending order")
     require(
         all(prime > 1 and exponent > 0 for prime, exponent in factors),
         "a factor is below 2 or has no positive exponent",
     )
+    least = sum((prime.bit_length() - 1) * exponent for prime, exponent in factors)
+    require(least < max(n.bit_length(), 1), "the prime powers are too long")
 
 
 def require_primes(primes: set[int], used: Mapping[str, Claim]) -> None:

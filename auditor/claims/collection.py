@@ -194,7 +194,7 @@ def check_all(claims: Claims, draw: Draw) -> dict[str, str]:
             checked.add(claim.id)
         except KeyError as error:
             failed[claim.id] = f"it rests on {error.args[0]}, which is not here"
-        except Refuted as error:
+        except (ValueError, ArithmeticError) as error:
             failed[claim.id] = str(error)
     return dict(sorted(failed.items()))
 

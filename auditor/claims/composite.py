@@ -52,7 +52,10 @@ class Composite(Claim):
             require(self.n % self.factor == 0, "the factor does not divide the number")
             return
         require(self.n > 3 and self.n % 2 == 1, "a witness is for odd numbers above 3")
-        require(self.witness == least_witness(self.n), "not the least prime base that witnesses")
+        witness = self.witness or 0
+        require(2 <= witness <= LARGEST_WITNESS, "the witness is out of range")
+        require(not passes_strong_test(self.n, witness), "the base witnesses nothing")
+        require(witness == least_witness(self.n), "not the least prime base that witnesses")
 
 
 def least_witness(n: int) -> int | None:

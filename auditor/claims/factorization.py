@@ -46,7 +46,7 @@ class Factorization(Claim):
 
     def check(self, used: Mapping[str, Claim], draw: Draw) -> None:
         require(self.n >= 1 and self.rest >= 1, "a factorization is of positive numbers")
-        require_normal(self.factors)
+        require_normal(self.factors, self.n)
         require(product(self.factors) * self.rest == self.n, "the product is another number")
         require(gcd(product(self.factors), self.rest) == 1, "a factor still divides the rest")
         require_primes({prime for prime, _ in self.factors}, used)

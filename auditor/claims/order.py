@@ -66,10 +66,11 @@ class Order(Claim):
         )
 
     def check(self, used: Mapping[str, Claim], draw: Draw) -> None:
-        n, a, known = self.modulus, self.element, product(self.known)
+        n, a = self.modulus, self.element
         require(n > 1 and 0 < a < n, "the element is not reduced modulo a number above 1")
         require(self.rest >= 1, "the rest is not positive")
-        require_normal(self.known)
+        require_normal(self.known, n)
+        known = product(self.known)
         require(gcd(known, self.rest) == 1, "a known prime still divides the rest")
         primes = {prime for prime, _ in self.known}
         by_euler = self._modulus_is_prime(used)

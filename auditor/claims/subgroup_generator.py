@@ -47,6 +47,7 @@ class SubgroupGenerator(Claim):
 
     def check(self, used: Mapping[str, Claim], draw: Draw) -> None:
         require_primes({self.n, self.q}, used)
+        require(len(used) == len({self.n, self.q}), "a claim is used that says nothing")
         require((self.n - 1) % self.q == 0, "q does not divide n - 1")
         require(2 <= self.base < MOST_BASES, "the base is out of range")
         found = least_generator(self.n, self.q)

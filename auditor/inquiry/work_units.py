@@ -15,13 +15,12 @@ from auditor.claims.base import Claim, Draw, Refuted
 from auditor.claims.collection import Claims, read_claim
 from auditor.claims.composite import Composite, PerfectPower
 from auditor.claims.factorization import Factorization
-from auditor.claims.order import Membership, Order
-from auditor.claims.origin_generator import CanonicalGenerator
-from auditor.claims.primality_tests import DETERMINISTIC_BELOW, passes_strong_test
+from auditor.claims.origin import Origin
+from auditor.claims.origin_formula import LeastOffset
+from auditor.claims.primality_tests import DETERMINISTIC_BELOW
 from auditor.claims.prime import Prime
 from auditor.claims.searched import Searched
 from auditor.claims.special_form import FormSearched
-from auditor.claims.subgroup_generator import SubgroupGenerator
 from auditor.inquiry.answers import ALONE, Answers, Cores, Keep
 from auditor.questions import Asks, Question
 from auditor.run_values import Effort, RunValues
@@ -45,13 +44,12 @@ NEEDS_NOTHING = frozenset(
 )
 """Kinds that are answered from their integers alone."""
 
-WITHOUT_A_POWER = (Prime, Composite, Factorization, PerfectPower, Searched, FormSearched)
-"""Kinds of claims whose check takes no exponentiation of large numbers, but for large primes and
-witnesses."""
-A_FEW_POWERS = (Order, Membership, SubgroupGenerator, CanonicalGenerator)
-"""Kinds whose check takes a few; the witness of a composite number takes one as well."""
+WITHOUT_A_POWER = (Composite, Factorization, PerfectPower, Searched, FormSearched)
+"""Kinds of claims whose check takes no exponentiation of large numbers, but for witnesses."""
+LONG_TO_MAKE = (Origin, LeastOffset)
+"""Kinds whose check is a long computation, the one that made them."""
 ONE_IN = 8
-"""One in so many of these is checked again."""
+"""One in so many of the others is checked again where this machine made it."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -154,23 +152,23 @@ def taken_over(
 
 
 def _check_again(claim: Claim, used: dict[str, Claim], draw: Draw, here: bool) -> None:
-    """What a worker has checked, as far as that costs little beside its work: claims without an
-    exponentiation in full; of claims with a few exponentiations some that are drawn. A large prime
-    gets one strong test to a base that the worker could not foresee: every one that another
-    machine reports, and a drawn one of those that this program found on this machine. What is made
-    again to be checked (an origin, a formula) is left to the verifier, which checks everything.
+    """What another machine reports is checked like what the ledger holds: in full, but of the
+    rounds of a probable prime a single one, to a base that the worker could not foresee. Processes
+    of this program on this machine are believed more, since that would cost as much as their work:
+    what takes no exponentiation is checked in full, and of the rest one in eight, drawn, but for
+    what is long to make. The verifier checks everything.
     """
-    if isinstance(claim, Prime) and claim.n >= DETERMINISTIC_BELOW:
-        drawn = not here or draw(ONE_IN) == 0
-        if drawn and not passes_strong_test(claim.n, 2 + draw(claim.n - 3)):
-            raise Refuted("composite")
-        return
-    by_witness = isinstance(claim, Composite) and claim.factor is None
-    if isinstance(claim, A_FEW_POWERS) or by_witness:
-        if draw(ONE_IN) == 0:
-            claim.check(used, draw)
-    elif isinstance(claim, WITHOUT_A_POWER):
+    trusted = here and (isinstance(claim, LONG_TO_MAKE) or draw(ONE_IN) > 0)
+    if isinstance(claim, Prime):
+        believed = trusted and claim.n >= DETERMINISTIC_BELOW
+        claim.check_form(used) if believed else claim.check_again(used, draw)
+    elif not trusted or _takes_no_power(claim):
         claim.check(used, draw)
+
+
+def _takes_no_power(claim: Claim) -> bool:
+    by_witness = isinstance(claim, Composite) and claim.factor is None
+    return isinstance(claim, WITHOUT_A_POWER) and not by_witness
 
 
 def expected_seconds(question: Question, run: RunValues) -> float:

@@ -3,6 +3,9 @@
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
 
+LARGEST = 2**63
+"""Bounds and counts are below it."""
+
 Run = tuple[str, tuple[tuple[str, int], ...]]
 """A method by name, and its numbers by name in alphabetical order."""
 
@@ -76,6 +79,7 @@ class Work:
         work = cls(engines=engines)
         for method, pairs in runs:
             numbers = dict(pairs)
+            _require_sane(method, numbers)
             try:
                 work = work._with_run(method, numbers)
             except KeyError as missing:
@@ -101,3 +105,11 @@ class Work:
                 done = Curves(numbers["b1"], numbers["b2"], numbers["curves"])
                 return replace(self, curves=tuple(sorted([*self.curves, done])))
         raise ValueError(f"no such method: {method!r}")
+
+
+def _require_sane(method: str, numbers: dict[str, int]) -> None:
+    """Refuse what no search writes and what the success model could not bear."""
+    if any(number >= LARGEST for number in numbers.values()):
+        raise ValueError(f"a run of {method!r} beyond any search")
+    if "b1" in numbers and not 2 <= numbers["b1"] <= numbers.get("b2", 0):
+        raise ValueError(f"a run of {method!r} between no bounds")

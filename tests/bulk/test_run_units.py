@@ -25,6 +25,7 @@ from auditor.inquiry.work_units import (
     unit_of,
 )
 from auditor.questions import Asks, Question
+from auditor.search.curves import BUILT_IN
 from auditor.search.plan import EcmLevel, Plan
 from auditor.search.plan_steps import STEP, next_part
 from auditor.search.work import Work
@@ -37,7 +38,7 @@ TWO, SEVEN = Prime(2, "below-2^64"), Prime(7, "below-2^64")
 def test_a_unit_is_text_and_integers() -> None:
     """Its known claims are records that JSON can carry; so is what comes back."""
     known = [TWO, SEVEN, Factorization(14, ((2, 1), (7, 1)), 1, tuple(sorted((TWO.id, SEVEN.id))))]
-    unit = unit_of(Question(Asks.ORDER, (15, 2, 14, 1)), known, QUICK, None)
+    unit = unit_of(Question(Asks.ORDER, (15, 2, 14, 1)), known, QUICK, BUILT_IN)
     records, finished, refused = step_elsewhere(unit)
 
     assert json.loads(json.dumps(unit.known)) == list(unit.known)
@@ -51,7 +52,7 @@ def test_what_travels_is_what_this_process_finds() -> None:
     question = Question(Asks.PRIMALITY, (P,))
     here = step_here(question, [], QUICK, secrets.randbelow, lambda claims: None)
     there = taken_over(
-        step_elsewhere(unit_of(question, [], QUICK, None)), Claims(), secrets.randbelow
+        step_elsewhere(unit_of(question, [], QUICK, BUILT_IN)), Claims(), secrets.randbelow
     )
 
     assert here == there
@@ -81,16 +82,27 @@ LIES = {
         Factorization(6, ((2, 1),), 1, (TWO.id,)).record(),
     ],
     "a wrong factor": [Composite(P, factor=3).record()],
-    "leaning on what is not there": [Factorization(7, ((7, 1),), 1, (SEVEN.id,)).record()],
+    "leaning on what is not there": [Factorization(7919, ((7919, 1),), 1, (C7919,)).record()],
+    "a proof of nothing": [Prime(P, "n-1").record()],
+    "a small number's method for a large one": [Prime(P, "below-2^64").record()],
+    "more rounds than are ever run": [Prime(P, "baillie-psw", rounds=10**9).record()],
+    "a product that nobody could write": [
+        TWO.record(),
+        Factorization(P, ((2, 2**40),), 1, (TWO.id,)).record(),
+    ],
+    "a prime called composite": [Composite(P, witness=3).record()],
+    "a false order": [Order(P, 2, ((7, 2),), 1, (SEVEN.id,)).record()],
+    "a false membership": [Membership(P, 2, 8, True).record()],
     "no claim": [{"kind": "prime"}],
     "another spelling": [{**TWO.record(), "uses": [SEVEN.id, SEVEN.id]}],
 }
 
 
 @pytest.mark.parametrize("records", LIES.values(), ids=LIES.keys())
-def test_a_worker_is_not_believed(records: list[dict[str, Any]]) -> None:
+def test_another_machine_is_not_believed(records: list[dict[str, Any]]) -> None:
     """A step with a claim that fails is refused as a whole."""
-    step = taken_over(([SEVEN.record(), *records][1:], True, None), Claims(), secrets.randbelow)
+    known = Claims([SEVEN])
+    step = taken_over((records, True, None), known, secrets.randbelow)
 
     assert step.claims == ()
     assert step.refused
@@ -100,15 +112,16 @@ WRONG = {
     "an order": Order(P, 2, ((7, 1),), 1, (SEVEN.id,)),
     "a membership": Membership(P, 2, 7, True),
     "a witness": Composite(P * P, witness=3),
+    "a prime": Prime(P * (2**89 - 1), "baillie-psw", rounds=16),
 }
 
 
 @pytest.mark.parametrize("claim", WRONG.values(), ids=WRONG.keys())
 def test_of_claims_that_cost_something_one_in_eight_is_checked(claim: Claim) -> None:
-    """Drawn where the worker cannot foresee it: of many wrong steps that share is refused."""
+    """Of those of this machine, drawn where nobody can foresee it."""
     rng = random.Random(5)
     reports = [([claim.record()], True, None) for _ in range(400)]
-    steps = [taken_over(report, Claims([SEVEN]), rng.randrange) for report in reports]
+    steps = [taken_over(report, Claims([SEVEN]), rng.randrange, here=True) for report in reports]
     refused = sum(step.refused is not None for step in steps)
 
     assert abs(refused - 400 / ONE_IN) < 25

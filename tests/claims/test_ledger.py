@@ -81,6 +81,27 @@ def test_planted_entries_are_left_out_with_a_notice(tmp_path: Path, notices: lis
     assert len(notices) == 2
 
 
+@pytest.mark.parametrize(
+    "planted",
+    [
+        *(Prime(n, "baillie-psw", rounds=64) for n in (0, 1, 2, 3, 11, 2**70)),
+        Prime(MERSENNE, "baillie-psw", rounds=10**6),
+        Prime(MERSENNE, "n-1"),
+        Prime(MERSENNE, "below-2^64"),
+        Composite(MERSENNE, witness=2),
+        Factorization(MERSENNE, ((2, 2**40),), 1, (TWO.id,)),
+    ],
+)
+def test_what_could_not_be_said_is_not_believed(
+    tmp_path: Path, notices: list[str], planted: Claim
+) -> None:
+    """Methods on numbers that they are not for, proofs of nothing, endless products."""
+    kept(tmp_path / "l", notices, TWO, planted)
+
+    assert planted not in recalled(tmp_path / "l", notices, planted.n)  # type: ignore[attr-defined]
+    assert len(notices) == 1
+
+
 def test_damaged_entries_are_left_out_with_a_notice(tmp_path: Path, notices: list[str]) -> None:
     """Text that is no claim, or a claim under another's id."""
     kept(tmp_path / "l", notices, TWO, Composite(35, factor=5))

@@ -10,7 +10,7 @@ from auditor.search.plan import LEVELS, plan_for
 from auditor.search.work import Curves, Work
 
 counts = st.integers(0, 10**12)
-bounds = st.tuples(counts.filter(bool), counts)
+bounds = st.tuples(st.integers(2, 10**12), counts).map(lambda b: (b[0], sum(b)))
 works = st.builds(
     Work,
     trial_bound=counts,
@@ -48,10 +48,20 @@ def test_curves_are_counted_by_both_bounds() -> None:
 
 
 @pytest.mark.parametrize(
-    "run", [("divination", ()), ("rho", ()), ("elliptic curves", (("b1", 5), ("b2", 6)))]
+    "run",
+    [
+        ("divination", ()),
+        ("rho", ()),
+        ("rho", (("iterations", 2**63),)),
+        ("elliptic curves", (("b1", 5), ("b2", 6))),
+        ("elliptic curves", (("b1", 1), ("b2", 6), ("curves", 1))),
+        ("elliptic curves", (("b1", 7), ("b2", 6), ("curves", 1))),
+        ("elliptic curves", (("b1", 7), ("b2", 9), ("curves", 2**2000))),
+        ("p-1", (("b1", 0), ("b2", 0))),
+    ],
 )
 def test_unknown_runs_are_refused(run: tuple[str, tuple[tuple[str, int], ...]]) -> None:
-    """A method that is not ours, or one without its numbers."""
+    """A method that is not ours, or one without its numbers, or with impossible ones."""
     with pytest.raises(ValueError, match=run[0]):
         Work.from_runs([run])
 
