@@ -1,5 +1,6 @@
 """What numbers of one run share is used: across documents, and beyond what curves would reach."""
 
+import random
 import secrets
 from pathlib import Path
 
@@ -8,6 +9,7 @@ import sympy
 from auditor.claims.collection import Claims, check_all
 from auditor.inquiry.answers import Answers
 from auditor.inquiry.sharing import share_among_moduli, share_among_rests
+from auditor.questions import Asks, Question
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
 from auditor.verify import verify
@@ -43,6 +45,28 @@ def test_nothing_is_shared_by_a_number_with_itself() -> None:
     assert not share_among_moduli([LEFT * COMMON, LEFT * COMMON, RIGHT, 1], engine)
     assert not share_among_rests(engine)
     assert len(engine.claims) == 0
+
+
+def test_a_shared_factor_that_stays_composite_is_no_news(tmp_path: Path) -> None:
+    """Two moduli share a prime p, hence two group orders what no search factors in p - 1: found out
+    once, the review ends."""
+    rng = random.Random(12)
+    p, q, r = (int(sympy.nextprime(rng.getrandbits(256) | 1 << 255)) for _ in range(3))
+    engine = answers()
+    for number in (p * q, p * r):
+        engine.answer(Question(Asks.SMALL_FACTORS, (number, p)))
+    for number in ((p - 1) * (q - 1), (p - 1) * (r - 1)):
+        engine.answer(Question(Asks.SMALL_FACTORS, (number,)))
+    assert not share_among_rests(engine)
+
+    document = tmp_path / "two.yaml"
+    document.write_text(
+        "auditor: 1\nparameter_sets:\n"
+        f"  - {{name: one, modulus: {p * q:#x}, generator: 2}}\n"
+        f"  - {{name: two, modulus: {p * r:#x}, generator: 2}}\n"
+    )
+    record = review([str(document)], RUN, Surroundings(secrets.randbelow))
+    assert [item["position"] for item in record["parameter_sets"]] == ["hold", "hold"]
 
 
 def test_a_review_factors_group_orders_by_each_other(tmp_path: Path) -> None:

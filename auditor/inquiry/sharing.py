@@ -14,7 +14,7 @@ from auditor.search.batch_gcd import shared_factors, threads
 
 
 def share_among_moduli(moduli: Iterable[int], answers: Answers) -> bool:
-    """Use what distinct moduli have in common to factor them; whether anything was found."""
+    """Use what distinct moduli have in common to factor them; whether less is left then."""
     numbers = sorted({n for n in moduli if n > 1})
     return _use({n: [n] for n in numbers}, answers)
 
@@ -39,6 +39,14 @@ def _use(holders: dict[int, list[int]], answers: Answers) -> bool:
         if not 1 < factor < numbers[index]:
             continue
         for n in holders[numbers[index]]:
+            before = _rest(n, answers)
             answers.answer(Question(Asks.SMALL_FACTORS, (n, factor)))
-            found = True
+            found |= _rest(n, answers) < before
     return found
+
+
+def _rest(n: int, answers: Answers) -> int:
+    """What is left unfactored. A shared factor that splits it into composite parts leaves it what it
+    was: claims tell of primes and of one rest."""
+    known = answers.claims.factorization(n)
+    return n if known is None else known.rest
