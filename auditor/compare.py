@@ -4,6 +4,10 @@ Nothing is judged again here: positions, findings and facts are taken as the rep
 set is matched by its id; one that was moved or renamed by its digest, then by its integers, so
 that a new name does not hide an old finding.
 
+A finding that stays and whose values got worse is new too: an attack costs less, more leaks. Of a
+set that was declared otherwise, so is one whose values differ where nobody knows which are worse,
+unless others of them got better.
+
 What the owner's word alone has improved is not settled but new: while modulus, generator and order
 are the same, a finding that went because the usage, another declared value or a concession was
 changed is listed as new, at the position that it led to, with the reason.
@@ -14,7 +18,7 @@ from collections.abc import Callable, Hashable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import Any, Literal
 
-from auditor.concessions import FAIL_ON, is_conceded, leads_to
+from auditor.concessions import FAIL_ON, is_conceded, leads_to, worsened
 from auditor.encoding import shorten
 
 POSITIONS = ("hold", "open", "conditions", "no objection")
@@ -175,9 +179,10 @@ def _changes(old: Record, new: Record) -> Iterator[Change]:
     then = {finding["rule"]: finding for finding in old["findings"]}
     now = {finding["rule"]: finding for finding in new["findings"]}
     words = _words(declared, old, new)
+    differs = bool(declared)
     for rule in [*now, *(gone for gone in then if gone not in now)]:
         outcome = new["outcomes"].get(rule)
-        change = _finding(then.get(rule), now.get(rule), outcome, words)
+        change = _finding(then.get(rule), now.get(rule), outcome, words, differs)
         if change is not None:
             yield change
 
@@ -202,9 +207,14 @@ def _words(declared: Iterable[str], old: Record, new: Record) -> tuple[str, ...]
 
 
 def _finding(
-    then: Record | None, now: Record | None, outcome: str | None, words: tuple[str, ...]
+    then: Record | None,
+    now: Record | None,
+    outcome: str | None,
+    words: tuple[str, ...],
+    differs: bool,
 ) -> Change | None:
-    """The change of one rule's finding; ``outcome`` is what the new report says of the rule."""
+    """The change of one rule's finding; ``outcome`` is what the new report says of the rule, and
+    ``differs`` whether the set was declared otherwise."""
     before, after = _level(then), _level(now)
     if now is not None and POSITIONS.index(after) < POSITIONS.index(before):
         return Change("new", f"{_words_of(now)}{_since(then)}", after, _concession(now))
@@ -220,9 +230,25 @@ def _finding(
     if now is None:
         kind: Kind = "changed" if outcome is None else "settled"
         return Change(kind, f"{_words_of(then)}, now {result}")
+    if not improved and (worse := _worse(then, now, differs)):
+        since = _since(then) if then["outcome"] != now["outcome"] else ""
+        return Change("new", f"{_words_of(now)}{since}, {worse}", after, _concession(now))
     if then["outcome"] != now["outcome"] or then["grade"] != now["grade"]:
         return Change("changed", f"{_words_of(now)}{_since(then)}")
     return _conceded(then, now)
+
+
+def _worse(then: Record, now: Record, differs: bool) -> str:
+    """What is worse about a finding that stays, or may be; empty for nothing, and for what objects
+    to nothing."""
+    before, after = then["values"], now["values"]
+    if _level(now) == POSITIONS[-1]:
+        return ""
+    if worse := worsened(before, after, certainly=True):
+        return f"worse: {'; '.join(worse)}"
+    better = worsened(after, before, certainly=True)
+    other = worsened(before, after) if differs and not better else ()
+    return f"on other values: {'; '.join(other)}" if other else ""
 
 
 def _conceded(then: Record, now: Record) -> Change | None:

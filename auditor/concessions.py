@@ -222,14 +222,18 @@ def worse_when(name: str) -> Worse | None:
     return "higher" if rest in ("special_form_seen", "distinguisher_seen", "forgery_seen") else None
 
 
-def worsened(granted: Record, shown: Record) -> tuple[str, ...]:
+def worsened(granted: Record, shown: Record, *, certainly: bool = False) -> tuple[str, ...]:
     """What is worse, or differs where nobody knows what worse is, since the grant; a clause each.
 
-    A value that appears or is gone was not granted either.
+    A value that appears or is gone was not granted either. With ``certainly`` only what is there
+    both times and known to be worse counts.
     """
+    names = granted.keys() | shown.keys()
+    if certainly:
+        names = {name for name in granted.keys() & shown.keys() if worse_when(name)}
     return tuple(
         f"{name} was {_shown(granted, name)} and is {_shown(shown, name)}"
-        for name in sorted((granted.keys() | shown.keys()) - CALENDAR)
+        for name in sorted(names - CALENDAR)
         if name not in granted or name not in shown or _is_worse(name, granted[name], shown[name])
     )
 

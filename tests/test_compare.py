@@ -161,6 +161,83 @@ def test_what_gets_worse_is_new() -> None:
     assert all(not change.reason for change in there.changes)
 
 
+NARROW = """\
+auditor: 1
+parameter_sets:
+  - name: link
+    purpose: key-agreement
+    modulus: {group: modp1024}
+    exponent: {bits: 160, use: single}
+    peer_check: [range]
+"""
+
+
+def test_a_finding_whose_values_get_worse_is_new() -> None:
+    """An exponent of 32 bits for one of 160: the same rules object, for far less work."""
+    narrow, narrower = reviewed(NARROW), reviewed(NARROW.replace("160", "32"))
+    rules = [
+        {f["rule"]: f["outcome"] for f in record["parameter_sets"][0]["findings"]}
+        for record in (narrow, narrower)
+    ]
+    worse, better = compare(narrow, narrower), compare(narrower, narrow)
+
+    assert rules[0] == rules[1]
+    assert verdicts(worse) == [True, True, True, False]
+    assert any("strength.work_bits was 79.99 and is 17" in c.text for c in of_kind(worse, "new"))
+    assert not of_kind(better, "new")
+
+
+def with_values(old: dict[str, Any], new: dict[str, Any], *, declared: bool) -> Comparison:
+    """A report beside one whose deciding finding shows other values, of a set that was declared
+    otherwise or not."""
+    records = [copy.deepcopy(reviewed(NARROW)) for _ in range(2)]
+    for record, values in zip(records, (old, new), strict=True):
+        (item,) = record["parameter_sets"]
+        finding = next(f for f in item["findings"] if f["rule"] == item["decided_by"])
+        finding["values"] = values
+    if declared:
+        records[1]["parameter_sets"][0]["declaration"]["required_strength"] = 100
+    return compare(*records)
+
+
+WORK, LEAK, LENGTH = "strength.work_bits", "exponent.public_leak_bits_at_least", "modulus.length"
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "declared", "worse"),
+    [
+        ({WORK: 60.0}, {WORK: 59.9}, False, True),
+        ({WORK: 60.0}, {WORK: 60.1}, False, False),
+        ({LEAK: 1.0}, {LEAK: 2.0}, False, True),
+        ({LEAK: 2.0}, {LEAK: 1.0}, True, False),
+        ({WORK: 60.0, LEAK: 1.0}, {WORK: 70.0, LEAK: 2.0}, True, True),
+        ({LENGTH: 1024}, {LENGTH: 512}, True, True),
+        ({LENGTH: 1024}, {}, True, True),
+        ({LENGTH: 1024, WORK: 60.0}, {LENGTH: 1536, WORK: 70.0}, True, False),
+        ({LENGTH: 1024}, {LENGTH: 512}, False, False),
+        ({"run.year": 2026}, {"run.year": 2027}, True, False),
+        ({WORK: 60.0}, {WORK: 60.0}, True, False),
+    ],
+)
+def test_what_worse_values_are(
+    old: dict[str, Any], new: dict[str, Any], declared: bool, worse: bool
+) -> None:
+    """Less work, more leaked. Of a set that was declared otherwise, any difference that nobody can
+    order counts, unless another value got better; of the same set it is the progress of search."""
+    assert with_values(old, new, declared=declared).fails("hold") is worse
+
+
+def test_other_values_are_not_called_worse() -> None:
+    """Nobody knows, and an observation objects to neither."""
+    other = with_values({LENGTH: 1024}, {LENGTH: 1536}, declared=True)
+    checked = compare(reviewed(SET), reviewed(CHECKED))
+
+    assert [c.text.split(", ")[1] for c in of_kind(other, "new")] == [
+        "on other values: modulus.length was 1024 and is 1536"
+    ]
+    assert not any(c.level == "no objection" for c in of_kind(checked, "new"))
+
+
 def test_a_concession_counts_as_new() -> None:
     """Granted, it is new with who granted it; withdrawn or run out, the finding counts again."""
     bare, granted = reviewed(SET), conceded(reviewed(SET), in_force=True)
