@@ -4,9 +4,9 @@ import json
 import os
 import sys
 import tempfile
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from auditor.report.view import View
 
 STANDARD_OUTPUT = "-"
+_SOURCE = "this file is read; a document does not take the place of what it is about"
 PIPED = (80, 200)
 """Columns and lines of the summary where there is no screen to fit."""
 
@@ -31,20 +32,33 @@ class Outputs:
     sarif: str | None = None
     markdown_limit: int = 32_767
 
-    def check(self) -> None:
-        """Refuse, before any work is done, what cannot be written in the end."""
-        paths = [path for path in self._paths() if path]
+    def check(self, read: Iterable[str | None] = ()) -> None:
+        """Refuse, before any work is done, what cannot be written in the end: among it the files
+        that are ``read``."""
+        paths = list(self._paths().values())
         if paths.count(STANDARD_OUTPUT) > 1:
             raise click.UsageError("only one format can go to standard output")
         files = [os.path.realpath(path) for path in paths if path != STANDARD_OUTPUT]
         if len(set(files)) < len(files):
             raise click.UsageError("two formats cannot go to one file")
+        sources = _files(read)
         for path in files:
+            if path in sources:
+                raise click.UsageError(f"{path}: {_SOURCE}")
             if not os.access(os.path.dirname(path), os.W_OK):
                 raise click.UsageError(f"{path}: the directory cannot be written")
 
     def write(self, record: Mapping[str, Any]) -> None:
-        """Write each format; a summary to standard output where no format goes there."""
+        """Write each format; a summary to standard output where no format goes there. A file that
+        was found among the inputs is left as it is, and in the end that is a usage error."""
+        sources = _files(item["path"] for item in record["inputs"])
+        spared = {name: path for name, path in self._paths().items() if _files([path]) & sources}
+        nowhere: dict[str, Any] = dict.fromkeys(spared)
+        replace(self, **nowhere)._write(record)
+        if spared:
+            raise click.UsageError(f"{', '.join(sorted(spared.values()))}: {_SOURCE}")
+
+    def _write(self, record: Mapping[str, Any]) -> None:
         from auditor.report import html, json_report, markdown, sarif
         from auditor.report.view import view
 
@@ -65,11 +79,18 @@ class Outputs:
         for path, render in renderers:
             if path:
                 write_text(path, render())
-        if STANDARD_OUTPUT not in self._paths():
+        if STANDARD_OUTPUT not in self._paths().values():
             _summary(shown)
 
-    def _paths(self) -> tuple[str | None, ...]:
-        return self.html, self.markdown, self.json, self.json_lines, self.sarif
+    def _paths(self) -> dict[str, str]:
+        """The paths of the formats asked for."""
+        formats = ("html", "markdown", "json", "json_lines", "sarif")
+        return {name: path for name in formats if (path := getattr(self, name))}
+
+
+def _files(paths: Iterable[str | None]) -> set[str]:
+    """What these paths lead to; without standard input and output."""
+    return {os.path.realpath(path) for path in paths if path and path != STANDARD_OUTPUT}
 
 
 def _summary(shown: "View") -> None:

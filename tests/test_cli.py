@@ -94,6 +94,37 @@ def test_a_second_run_gives_the_same_bytes(auditor: Any) -> None:
     assert (Path("cache") / "group-parameter-auditor" / "ledger.sqlite").exists()
 
 
+@pytest.mark.parametrize("option", ["--html", "--markdown", "--json", "--json-lines", "--sarif"])
+def test_no_document_takes_the_place_of_what_is_read(auditor: Any, option: str) -> None:
+    """A named input is refused at once; one that was found in a directory in the end, when all else
+    is written."""
+    Path("tree").mkdir()
+    Path("tree/sound.yaml").write_text(SOUND)
+    Path("link").symlink_to("tree/sound.yaml")
+    for words in (("tree/sound.yaml", option, "link"), ("link", option, "tree/sound.yaml")):
+        refused = auditor(*quick(*words))
+        assert (refused.status, refused.out) == (2, "")
+        assert "this file is read" in refused.err
+    other = "--html" if option != "--html" else "--markdown"
+    late = auditor(*quick("tree", option, "tree/sound.yaml", other, "r"))
+    assert late.status == 2
+    assert "tree/sound.yaml: this file is read" in late.err
+    assert "sound" in Path("r").read_text()
+    assert Path("tree/sound.yaml").read_text() == SOUND
+
+
+def test_a_short_document_does_not_either(auditor: Any) -> None:
+    """Of reports that are compared, and of what is asked about."""
+    Path("sound.yaml").write_text(SOUND)
+    auditor(*quick("sound.yaml", "--json", "r.json"))
+    before = Path("r.json").read_bytes()
+
+    assert auditor("compare", "r.json", "r.json", "--html", "r.json").status == 2
+    assert auditor("ask", "sound.yaml", "--effort", "quick", "--json", "sound.yaml").status == 2
+    assert auditor("ask", "sound.yaml", "--draft-usage", "sound.yaml", "--overwrite").status == 2
+    assert (Path("r.json").read_bytes(), Path("sound.yaml").read_text()) == (before, SOUND)
+
+
 def test_json_lines(auditor: Any) -> None:
     """A line for each set in input order, then the rest of the record: nothing is lost."""
     two = SOUND + WEAK.split("parameter_sets:\n")[1]

@@ -50,7 +50,7 @@ def ask(paths: tuple[str, ...], **options: Any) -> int:
     from auditor.usage_draft import draft
 
     target = options["draft_usage"]
-    check(options, target)
+    check(options, paths, target)
     _spare(target, options["overwrite"])
     books = books_of(options)
     read, claims, run, notices = investigated_inputs(paths, options)

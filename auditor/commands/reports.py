@@ -63,7 +63,7 @@ def compare(old: str, new: str, **options: Any) -> int:
     from auditor.report import comparing, comparing_html, comparing_markdown
     from auditor.report.json_report import dumps
 
-    check(options)
+    check(options, (old, new))
     before, after = _reports(old, new)
     compared = compare_reports(before, after)
     found = comparing.record(compared, before, after, options["fail_on"])

@@ -53,7 +53,7 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
         sarif=options["sarif"],
         markdown_limit=options["markdown_limit"],
     )
-    outputs.check()
+    outputs.check([*paths, options["concessions"], *options["rulebook"]])
     record = _reviewed(paths, options)
     outputs.write(record)
     for error in record["errors"]:

@@ -1,6 +1,6 @@
 """The formats of the short documents of ``ask`` and ``compare``: options, and the writing."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from typing import Any
 
 import click
@@ -26,13 +26,13 @@ def format_options(command: Command) -> Command:
     return command
 
 
-def check(options: Mapping[str, Any], beside: str | None = None) -> None:
-    """Refuse, before any work is done, what cannot be written in the end; ``beside`` is the path
-    of a file that is written as well."""
+def check(options: Mapping[str, Any], read: Iterable[str], beside: str | None = None) -> None:
+    """Refuse, before any work is done, what cannot be written in the end: among it the files that
+    are ``read``; ``beside`` is the path of a file that is written as well."""
     from auditor.outputs import Outputs
 
     html, markdown, json = options["html"], options["markdown"], options["json_"]
-    Outputs(html=html, markdown=markdown, json=json, json_lines=beside).check()
+    Outputs(html=html, markdown=markdown, json=json, json_lines=beside).check(read)
 
 
 def write(options: Mapping[str, Any], formats: Formats, beside: str | None = None) -> None:
