@@ -129,3 +129,24 @@ def test_it_prints(browser: Browser, tmp_path: Path, paper: str) -> None:
     width = {"A4": b"595.9", "Letter": b"612 "}[paper]
     assert 8 <= sheets <= 20
     assert document.count(b"/MediaBox [0 0 " + width) == sheets
+
+
+def test_on_paper_the_pictures_of_a_sheet_stand_side_by_side(
+    browser: Browser, tmp_path: Path
+) -> None:
+    """They start at one height and do not overlap; opened words have the whole width again."""
+    with opened(browser, render(fixture("harbour")), tmp_path) as seen:
+        seen.page.emulate_media(media="print")
+        seen.page.set_viewport_size({"width": 680, "height": 900})
+        pair = seen.page.locator(".pair").first
+        halves = pair.locator("> div")
+        left, right = halves.nth(0).bounding_box(), halves.nth(1).bounding_box()
+        pair.locator("details").first.evaluate("item => item.open = true")
+        opened_left = halves.nth(0).bounding_box()
+
+    assert left is not None
+    assert right is not None
+    assert opened_left is not None
+    assert left["y"] == right["y"]
+    assert left["x"] + left["width"] < right["x"]
+    assert opened_left["width"] > left["width"] + right["width"]
