@@ -4,7 +4,8 @@ The one module that knows the evaluator. It is CEL as the ``common-expression-la
 runs it: an absent fact is a missing key, and ``&&`` and ``||`` absorb it where the other side
 decides. What is added here are reasons and bounds:
 
-- what kept a condition undecided are the absent facts it names that could still decide it;
+- what kept a condition undecided are the absent facts it names, and the bounds that may still
+  move, that could still decide it;
 - when all of these are ``undefined``, the condition makes no sense for this set;
 - a condition that is false with the bounds as they stand is false, since no bound can turn it to
   true (``condition_types`` refuses those); one that is true is asked again without
@@ -88,14 +89,12 @@ class Condition:
         answer = self._ask(self.text, view.all)
         if answer is False:
             return Decision(Verdict.FALSE)
-        facts = view.all
         if answer is True:
             if not any(name in view.loose for name in self.names):
                 return Decision(Verdict.TRUE)
-            facts = view.certain
-            if self._ask(self.text, facts) is True:
+            if self._ask(self.text, view.certain) is True:
                 return Decision(Verdict.TRUE)
-        open_names = self._open_names(self.tree, facts)
+        open_names = self._open_names(self.tree, view)
         missing = tuple(name for name in self.names if name in open_names)
         if all(view.absence(name).reason == "undefined" for name in missing):
             return Decision(Verdict.UNDEFINED, missing)
@@ -113,13 +112,24 @@ class Condition:
             raise ConditionFault(f"{self.source!r} gave {type(answer).__name__}")
         return answer
 
-    def _open_names(self, node: Node, facts: "_Facts") -> frozenset[str]:
-        """The absent facts that could still decide ``node``: none of a part that is decided."""
-        if self._ask(render(node, self.values), facts) is not None:
+    def _open_names(self, node: Node, view: "View", final: bool = False) -> frozenset[str]:
+        """The absent and loose facts that could still decide ``node``: none of a part that is
+        decided.
+
+        ``final`` is the answer that no bound can take back: false, or true below a negation. The
+        other one stands only if it is given without the loose facts too.
+        """
+        text = render(node, self.values)
+        answer = self._ask(text, view.all)
+        if answer is final:
+            return frozenset()
+        if answer is not None and self._ask(text, view.certain) is not None:
             return frozenset()
         if node.op == "!" or node.op in JUNCTIONS:
-            return frozenset().union(*(self._open_names(part, facts) for part in node.parts))
-        return frozenset(node.names()) - facts.present
+            inner = final if node.op in JUNCTIONS else not final
+            return frozenset().union(*(self._open_names(part, view, inner) for part in node.parts))
+        known = view.all if answer is None else view.certain
+        return frozenset(node.names()) - known.present
 
 
 class Compiler:
