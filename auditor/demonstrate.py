@@ -73,7 +73,10 @@ def demonstrate(
         try:
             return Shown(declaration, attempt())
         except OutOfBudget:
-            reasons.append("over the budget")
+            reasons.append(
+                f"a logarithm takes more than 2^{budget_bits} operations, and routes that need none "
+                "are not demonstrated"
+            )
         except (LogarithmError, ValueError) as error:
             reasons.append(str(error))
     why = "no weak route is known to be open" if not reasons else "; ".join(dict.fromkeys(reasons))

@@ -6,6 +6,7 @@ import os
 import re
 import subprocess
 import sys
+import time
 from pathlib import Path
 from typing import Any
 
@@ -282,3 +283,37 @@ def test_help_shows_examples(auditor: Any) -> None:
         assert result.status == 0
         assert f"auditor {' '.join(words)} " in result.out
     assert auditor("--version").out == f"auditor, version {__version__}\n"
+
+
+@pytest.mark.parametrize("words", [("0",), ("1_000",), ("９",), ("-5",), ("15", "--of", "1e3")])
+def test_numbers_have_one_spelling(auditor: Any, words: tuple[str, ...]) -> None:
+    """Decimal or 0x…; the message says which of them is meant."""
+    result = auditor("structure", *words)
+
+    assert result.status == 2
+    assert ("--of" in result.err) == ("--of" in words)
+
+
+def test_sigterm_ends_like_an_interruption(tmp_path: Path) -> None:
+    """What was found is kept, nothing is printed that nobody understands, status 143."""
+    p = "0x" + "f" * 1024 + "61"
+    (tmp_path / "x.yaml").write_text(
+        f"auditor: 1\nparameter_sets: [{{name: x, modulus: {p}, generator: 2}}]\n"
+    )
+    words = ("--effort", "thorough", "--factor-digits", "40", "--ledger", "l")
+    process = subprocess.Popen(
+        [sys.executable, "-c", RUN, "review", "x.yaml", *words],
+        cwd=tmp_path,
+        stderr=subprocess.PIPE,
+        env={**os.environ, "PYTHONPATH": str(Path(__file__).parents[1])},
+    )
+    while not (tmp_path / "l").exists():
+        assert process.poll() is None
+        time.sleep(0.05)
+    time.sleep(1)
+    process.terminate()
+    _, errors = process.communicate(timeout=60)
+
+    assert process.returncode == 143
+    assert errors.decode().splitlines()[-1].startswith("interrupted; what was found is kept in l")
+    assert b"Traceback" not in errors

@@ -86,4 +86,4 @@ def test_beyond_the_budget_there_is_a_reason_and_no_run() -> None:
     result = shown(SHORT, budget_bits=4)
 
     assert result.demonstration is None
-    assert "over the budget" in result.text()
+    assert "takes more than 2^4 operations" in result.text()

@@ -1,5 +1,6 @@
 """Commands about numbers: ``structure``, ``demonstrate``, ``declare``."""
 
+import re
 import sys
 from contextlib import suppress
 from pathlib import Path
@@ -66,7 +67,7 @@ def structure(
             with suppress(KeyError):
                 found.append(known_so_far(values[len(found)], answers.claims))
     if found or not interrupted:
-        _show(found, [_number(element) for element in elements], as_json)
+        _show(found, [_number(element, 0, "--of") for element in elements], as_json)
     if interrupted:
         raise Interrupted("; shown is what was found" if found else "; nothing was found yet")
     return 0
@@ -88,15 +89,16 @@ def _show(found: "list[Structure]", elements: list[int], as_json: bool) -> None:
             click.echo(classes_text(isomorphic(found)), nl=False)
 
 
-def _number(word: str) -> int:
-    """A positive integer of at most 65,536 bits from the command line."""
-    try:
-        value = int(word.replace("_", ""), 16 if word.lower().startswith("0x") else 10)
-    except ValueError:
-        raise click.BadParameter(f"{word[:40]}: expected a decimal or 0x… integer") from None
-    if not 1 <= value < 1 << 65_536:
-        raise click.BadParameter(f"{word[:40]}: expected 1 to 2^65536 - 1")
+def _number(word: str, least: int = 1, hint: str = "N") -> int:
+    """An integer from ``least`` to 65,536 bits from the command line."""
+    value = int(word, 0 if word[1:2] in "xX" else 10) if _NUMBER.fullmatch(word) else None
+    if value is None or not least <= value < 1 << 65_536:
+        expected = f"expected {least} to 2^65536 - 1, decimal or as 0x…"
+        raise click.BadParameter(f"{word[:40]}: {expected}", param_hint=hint)
     return value
+
+
+_NUMBER = re.compile(r"0[xX][0-9a-fA-F]+|[0-9]+", re.ASCII)
 
 
 @click.command()
