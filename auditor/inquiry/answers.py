@@ -45,7 +45,7 @@ from auditor.run_values import RunValues
 from auditor.search import primality
 from auditor.search.curves import BUILT_IN, Engine, Executor
 from auditor.search.factoring import SearchInterrupted, SearchResult, search
-from auditor.search.plan import QUICK, Plan, plan_for
+from auditor.search.plan import Plan, plan_for, quick_plan_for
 from auditor.search.plan_steps import next_part
 from auditor.search.primes import primes_up_to
 from auditor.search.work import Work
@@ -123,7 +123,7 @@ class Answers:
                 self.settle_primality(*question.integers)
             case Asks.SMALL_FACTORS:
                 number, *hints = question.integers
-                return self._factor(number, tuple(hints), QUICK)
+                return self._factor(number, tuple(hints), quick_plan_for(number))
             case Asks.FACTORIZATION:
                 return self._factor(question.integers[0], (), self._plan())
             case Asks.MODULUS_FACTORS:

@@ -102,6 +102,12 @@ QUICK = Plan(
 """No deep search: well under a second at 2048 bits."""
 
 
+def quick_plan_for(number: int) -> Plan:
+    """:data:`QUICK`, with a few steps of Fermat's method where the number is odd: group orders are
+    even, and whoever made a modulus may have taken neighbouring primes."""
+    return replace(QUICK, fermat_steps=100) if number % 2 else QUICK
+
+
 def plan_for(effort: Effort, factor_digits: int | None = None) -> Plan:
     """The plan of an effort; ``factor_digits`` sets the depth by hand, at any effort.
 

@@ -2,11 +2,13 @@
 
 from itertools import pairwise
 
+import gmpy2
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from auditor.search.plan import LEVELS, plan_for
+from auditor.search.factoring import Factor, search
+from auditor.search.plan import LEVELS, plan_for, quick_plan_for
 from auditor.search.work import Curves, Work
 
 counts = st.integers(0, 10**12)
@@ -95,3 +97,13 @@ def test_a_modulus_is_searched_as_its_maker_may_have_made_it() -> None:
     assert for_modulus.p_plus_1 > plan.p_plus_1
     assert for_modulus.fermat_steps > plan.fermat_steps == 0
     assert for_modulus.levels == plan.levels
+
+
+def test_neighbouring_primes_are_found_at_once() -> None:
+    """In a modulus, by Fermat's method; a group order, which is even, is spared it."""
+    p, q = 2**521 - 1, int(gmpy2.next_prime(2**521))
+    found = search(p * q, quick_plan_for(p * q))
+
+    assert found.factors == (Factor(p, 1, "Fermat"), Factor(q, 1, "Fermat"))
+    assert quick_plan_for(p * q).fermat_steps > 0
+    assert quick_plan_for(p - 1).fermat_steps == 0
