@@ -362,7 +362,7 @@ def test_thresholds():
         ("generator.order_bits in [1.0]", "cannot be in a list"),
         ("modulus.length in [1, 'a']", "of one kind"),
         ("modulus.length in usage.purpose", "a list of literals"),
-        ("modulus.length in [usage.exponent_width]", "a literal of the list"),
+        ("modulus.length in [usage.message_length]", "a literal of the list"),
         ("modulus.length in []", "a literal of the list"),
         ("modulus.special_form_seen", "may still come true"),
         ("strength.work_bits_at_most <= 112", "may still fall"),

@@ -42,7 +42,7 @@ _TEXTS = {
 _BY_KIND: dict[FactKind, str] = {
     "bool": """
         usage.peer_range usage.peer_membership usage.peer_cofactor usage.exponent_reused
-        usage.ephemeral_reused
+        usage.ephemeral_reused usage.exponent_widths_declared
         modulus.safe_prime modulus.special_form_seen group.cyclic group.factored
         generator.unit generator.trivial generator.order_prime generator.order_even
         generator.generates_group generator.order_is_declared generator.canonical
@@ -52,7 +52,8 @@ _BY_KIND: dict[FactKind, str] = {
         scheme.forgery_seen scheme.message_symbol_leaks scheme.distinguisher_seen
         strength.sufficient""",
     "int": """
-        usage.exponent_width usage.message_length usage.protect_until run.year modulus.length
+        usage.narrowest_exponent_at_most usage.widest_exponent_at_least
+        usage.message_length usage.protect_until run.year modulus.length
         modulus.occurrences modulus.smallest_factor_length_at_most
         group.unfactored_length_at_most group.searched_digits_at_least
         generator.order_length generator.largest_prime_length subgroup.order_length
@@ -67,6 +68,7 @@ _BY_KIND: dict[FactKind, str] = {
         strength.work_bits_at_most strength.work_bits strength.designer_bits_at_most"""
     + " ".join(f" strength.{route}_bits_at_most" for route in ROUTES),
     "exhibit": """
+        usage.exponent_width
         group.cycles subgroup.small_factors_seen public_values.values_out_of_range
         public_values.values_outside_subgroup public_values.values_of_small_order
         public_values.values_related public_values.values_plainly_visible""",

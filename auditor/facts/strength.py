@@ -2,7 +2,7 @@
 
 Tables and models are kept apart: a model figure never overrules a published figure for the same
 thing. The tables cover the number field sieve, square-root and Pohlig-Hellman methods at the
-largest prime of ord(g), and kangaroos at the declared width; every other route is judged by its
+largest prime of ord(g), and kangaroos at the narrowest width; every other route is judged by its
 work.
 """
 
@@ -47,8 +47,9 @@ def table_subgroup(given: Given) -> int:
 
 
 def table_exponent(given: Given) -> int:
-    """Half the narrowest declared width."""
-    return int(given.see(usage.exponent_width)) // 2
+    """Half the narrowest width, once every party declares its own."""
+    given.see(usage.exponent_widths_declared)
+    return int(given.see(table_exponent_at_most))
 
 
 TABLE = (table_modulus, table_subgroup, table_exponent)
@@ -115,7 +116,7 @@ def work_bits_at_most(given: Given) -> float:
 
 @fact("strength.work_bits", "real", "the same, once nothing unknown could lower it")
 def work_bits(given: Given) -> float:
-    _require_final(given, work.routes_for("peer"))
+    _require_final(given, (usage.exponent_widths_declared, *work.routes_for("peer")))
     return floor_bits(given.see(least_for_peer).bits)
 
 
@@ -130,7 +131,7 @@ def sufficient(given: Given) -> bool:
     when every component is known, and every other open route is known exactly, and all reach the
     requirement. What decides a False is all that it rests on."""
     required = given.see(required_bits)
-    for component in (*TABLE, table_subgroup_at_most):
+    for component in (*TABLE, table_subgroup_at_most, table_exponent_at_most):
         bits = given.peek(component)
         if not isinstance(bits, Absent) and bits < required:
             return _insufficient(given, component)
@@ -151,6 +152,11 @@ def table_subgroup_at_most(given: Given) -> int:
     """Half the length that the largest prime of ord(g) has at most."""
     order = given.see(parts.generator_order)
     return max([order.rest, *(prime for prime, _ in order.factors)]).bit_length() // 2
+
+
+def table_exponent_at_most(given: Given) -> int:
+    """Half the narrowest width that is declared."""
+    return int(given.see(usage.narrowest_exponent)) // 2
 
 
 BESIDE_TABLES = (

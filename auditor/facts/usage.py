@@ -3,6 +3,8 @@
 Facts over parties take the worst party, as the contract asks.
 """
 
+from collections.abc import Callable
+
 from auditor.declaration import EVERYBODY, Party
 from auditor.facts.given import Given, narrow
 from auditor.facts.registry import fact
@@ -144,11 +146,53 @@ def ephemeral_reused(given: Given) -> bool:
 
 
 @narrow
-@fact("usage.exponent_width", "int", "bits of the narrowest declared exponent")
+@fact(
+    "usage.exponent_widths_declared",
+    "bool",
+    "present, and true, when every party declares the width of its exponent",
+)
+def exponent_widths_declared(given: Given) -> bool:
+    silent = [party for party in given.see(parties) if party.exponent_bits is None]
+    if silent:
+        given.undeclared(*(key_of(party, "exponent.bits") for party in silent))
+    given.rest_on(*(key_of(party, "exponent.bits") for party in given.see(parties)))
+    return True
+
+
+@narrow
+@fact("usage.narrowest_exponent_at_most", "int", "bits of the narrowest exponent")
+def narrowest_exponent(given: Given) -> int:
+    """Loose while a party is silent: its exponent may be narrower still."""
+    return _declared_width(given, min)
+
+
+@narrow
+@fact("usage.widest_exponent_at_least", "int", "bits of the widest exponent")
+def widest_exponent(given: Given) -> int:
+    """Loose while a party is silent: its exponent may be wider still."""
+    return _declared_width(given, max)
+
+
+def _declared_width(
+    given: Given, extreme: Callable[[list[tuple[int, str]]], tuple[int, str]]
+) -> int:
+    spoken = [
+        (party.exponent_bits, key_of(party, "exponent.bits"))
+        for party in given.see(parties)
+        if party.exponent_bits is not None
+    ]
+    if not spoken:
+        given.see(exponent_widths_declared)
+    bits, key = extreme(spoken)
+    given.rest_on(key)
+    if not given.see_or(exponent_widths_declared, False):
+        given.loosen()
+    return bits
+
+
+@narrow
+@fact("usage.exponent_width", "exhibit", "bits of the narrowest exponent whose width is declared")
 def exponent_width(given: Given) -> int:
-    widths = [party for party in given.see(parties) if party.exponent_bits is not None]
-    if not widths:
-        given.undeclared(*(key_of(party, "exponent.bits") for party in given.see(parties)))
-    narrowest = min(widths, key=lambda party: (party.exponent_bits or 0, party.role))
-    given.rest_on(key_of(narrowest, "exponent.bits"))
-    return narrowest.exponent_bits or 0
+    width = given.see(narrowest_exponent)
+    given.settle()
+    return int(width)

@@ -10,7 +10,7 @@ from math import log2
 from types import MappingProxyType
 from typing import NoReturn
 
-from auditor.declaration import EVERYBODY
+from auditor.declaration import EVERYBODY, Party
 from auditor.facts import exponent, parts, provenance, usage
 from auditor.facts.base import Absent
 from auditor.facts.given import Given
@@ -73,17 +73,46 @@ def pohlig_hellman(given: Given) -> Work:
 
 
 def short_exponent(given: Given) -> Work:
-    return short_exponents.short_exponent(given.see(usage.exponent_width))
+    return _unless_silent(
+        given, short_exponents.short_exponent(given.see(usage.narrowest_exponent))
+    )
+
+
+def _unless_silent(given: Given, work: Work) -> Work:
+    """The work; a bound while a silent party may have an exponent that falls to less."""
+    return replace(work, bound="at most") if given.trace(usage.narrowest_exponent).loose else work
 
 
 def smooth_part_then_short_exponent(given: Given) -> Work:
-    """Undefined where the best division learns nothing first, or everything: that is the kangaroo
-    or Pohlig-Hellman again, which the tables cover."""
-    width, order = given.see(usage.exponent_width), given.see(_generator_order)
-    split = Splits(width, order).cheapest()
-    if not (split.logarithms and split.left_bits > 0):
+    """The worst party's, as for confinement; undefined where the best division learns nothing
+    first, or everything: that is the kangaroo or Pohlig-Hellman again, which the tables cover.
+
+    A silent party may have a width that opens the route, unless the order is prime.
+    """
+    given.see(usage.narrowest_exponent)
+    order = given.see(_generator_order)
+    found = []
+    for party in given.see(usage.parties):
+        if party.exponent_bits is None:
+            continue
+        split = Splits(party.exponent_bits, order).cheapest()
+        if split.logarithms and split.left_bits > 0:
+            route = smooth_parts.smooth_part_then_short_exponent(party.exponent_bits, order)
+            found.append((party, _open(given, route)))
+    if not found:
+        if order.complete and len(order.primes) > 1:
+            given.see(usage.exponent_widths_declared)
         _nothing_new(given, parts.generator_order)
-    return _open(given, smooth_parts.smooth_part_then_short_exponent(width, order))
+    party, work = min(found, key=lambda pair: (pair[1].bits, pair[0].role))
+    given.rest_on(usage.key_of(party, "exponent.bits"))
+    return _unless_silent(given, _named(party, work))
+
+
+def _named(party: Party, work: Work) -> Work:
+    """The work with the name of the party among the details where parties differ."""
+    if party.role == EVERYBODY:
+        return work
+    return replace(work, details=(("party", party.role), *work.details))
 
 
 def _nothing_new(given: Given, *known: Callable[[Given], object]) -> NoReturn:
@@ -110,8 +139,7 @@ def confinement(given: Given) -> Work:
         work = _open(given, confinements.confinement(width, order, group, check, reused=True))
         if not dict(work.details)["queries"]:
             continue
-        named = () if party.role == EVERYBODY else (("party", party.role),)
-        found.append(replace(work, details=(*named, *work.details)))
+        found.append(_named(party, work))
     if not found:
         _nothing_new(given, parts.generator_order, parts.exponent_factors)
     return min(found, key=lambda work: work.bits)

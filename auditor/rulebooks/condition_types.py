@@ -1,9 +1,9 @@
 """What a condition means before it runs: the kind of every part, and which way bounds move it.
 
 CEL's own absorption hides typing errors until the day the other side of an ``||`` is false, and
-the library has no checker; so every part is typed here. A bound may still move with more search,
-in one direction. A condition that such a move could turn from false to true would take a finding
-back; it is refused.
+the library has no checker; so every part is typed here. A bound may still move with more
+knowledge, in one direction. A condition that such a move could turn from false to true would take
+a finding back; it is refused.
 """
 
 import difflib
@@ -17,7 +17,7 @@ from auditor.rulebooks.condition_syntax import JUNCTIONS, LARGEST_INTEGER, Node,
 
 Kind = Literal["bool", "int", "real", "text", "unknown"]
 Move = tuple[str, Literal[-1, 1]]
-"""A fact that more search may still move, and the way the part goes then; false is below true."""
+"""A fact that knowing more may still move, and the way the part goes then; false is below true."""
 
 _NUMBERS = ("int", "real")
 _DIRECTION: dict[str | None, Literal[-1, 1]] = {"at_least": 1, "at_most": -1, "seen": 1}
@@ -71,7 +71,7 @@ def suggestion(word: str, known: Iterable[str]) -> str:
 def _turning(fact: FactType) -> str:
     way = "fall" if fact.bound == "at_most" else "rise" if fact.bound == "at_least" else "come true"
     return (
-        f"{fact.name} may still {way} with more search, and could turn this from false to true; "
+        f"{fact.name} may still {way}, and could turn this from false to true; "
         "a finding must not be taken back: compare it the other way or use a final fact"
     )
 

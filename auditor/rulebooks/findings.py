@@ -143,7 +143,8 @@ def reasons(missing: Mapping[str, Absent], view: View) -> str:
     told: dict[str, list[str]] = {}
     for name, absent in missing.items():
         if name in view.facts:
-            why, words = "Search may still move", [f"{name}, {_bound(name, view)}"]
+            why = "Search may still move" if absent.questions else "Known only as a bound"
+            words = [f"{name}, {_bound(name, view)}"]
         elif absent.reason == "undeclared" and absent.keys:
             why, words = _WHY_MISSING["undeclared"], sorted(absent.keys)
         else:

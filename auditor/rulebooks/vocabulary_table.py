@@ -4,9 +4,9 @@ from auditor.facts.base import FactType
 from auditor.rulebooks.conditions import Vocabulary
 
 _BOUNDS = {
-    "at_least": "may rise with more search",
-    "at_most": "may fall with more search",
-    "seen": "may come true with more search",
+    "at_least": "may rise with more {}",
+    "at_most": "may fall with more {}",
+    "seen": "may come true with more {}",
     None: "",
 }
 
@@ -20,6 +20,8 @@ def vocabulary_table(vocabulary: Vocabulary) -> str:
 
 def _row(word: FactType) -> str:
     values = ", ".join(f"`{value}`" for value in word.values)
-    parts = (word.meaning, f"one of {values}" if values else "", _BOUNDS[word.bound])
+    cause = "of the owner's word" if word.namespace == "usage" else "search"
+    bound = _BOUNDS[word.bound].format(cause)
+    parts = (word.meaning, f"one of {values}" if values else "", bound)
     meaning = "; ".join(part for part in parts if part).replace("|", "\\|").replace("\n", " ")
     return f"| `{word.name}` | {word.kind} | {meaning} |"

@@ -76,6 +76,15 @@ def group_facts(group: StandardGroup) -> dict[str, Any]:
     return facts | ({"provenance.verified": True} if group.formula else {})
 
 
+def widths(bits: int) -> dict[str, Any]:
+    """Every party declares exponents of so many bits."""
+    return {
+        "usage.narrowest_exponent_at_most": bits,
+        "usage.widest_exponent_at_least": bits,
+        "usage.exponent_widths_declared": True,
+    }
+
+
 def good_use(protocol: str, width: int) -> dict[str, Any]:
     """Key agreement with fresh exponents and every check, protected for two years."""
     return {
@@ -83,7 +92,7 @@ def good_use(protocol: str, width: int) -> dict[str, Any]:
         "usage.protocol": protocol,
         "usage.exponent_reused": False,
         "usage.ephemeral_reused": False,
-        "usage.exponent_width": width,
+        **widths(width),
         "usage.peer_range": True,
         "usage.peer_membership": True,
         "usage.peer_cofactor": False,
@@ -206,7 +215,7 @@ def test_no_published_group_of_2048_bits_is_held(name, protocol):
 @pytest.mark.parametrize("scheme", ["dsa", "schnorr"])
 def test_signatures_over_a_published_group_are_not_held(scheme):
     """The generator 2 of a published group is no defect of DSA or Schnorr in any book."""
-    use = {"usage.purpose": "signature", "usage.scheme": scheme, "usage.exponent_width": 3071}
+    use = {"usage.purpose": "signature", "usage.scheme": scheme, **widths(3071)}
     found = judged(MODP3072 | use, {"usage.protocol": UNDECLARED})
 
     assert found.position in ("conditions", "no objection")
