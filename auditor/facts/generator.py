@@ -21,6 +21,11 @@ def unit(given: Given) -> bool:
     return gcd(given.declaration.generator, given.declaration.modulus) == 1
 
 
+@fact("generator.reduced", "bool", "0 < g < n as declared, before it is reduced modulo n")
+def reduced(given: Given) -> bool:
+    return 0 < given.declaration.generator < given.declaration.modulus
+
+
 @fact("generator.trivial", "bool", "g is 0, 1 or n-1 modulo n")
 def trivial(given: Given) -> bool:
     n = given.declaration.modulus

@@ -46,7 +46,7 @@ def _use(holders: dict[int, list[int]], answers: Answers) -> bool:
 
 
 def _rest(n: int, answers: Answers) -> int:
-    """What is left unfactored. A shared factor that splits it into composite parts leaves it what it
+    """What is left unfactored. A shared factor that splits it into composite parts leaves it as it
     was: claims tell of primes and of one rest."""
     known = answers.claims.factorization(n)
     return n if known is None else known.rest
