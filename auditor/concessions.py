@@ -1,7 +1,8 @@
 """Concessions: recorded, expiring permissions to release a set despite a finding.
 
 A concession (the word is that of ISO 9000) is granted for the finding of one rule about one set, as
-it was on that day: the same outcome, and values that are not worse. It changes what counts for the
+it was on that day: the same requirement and outcome, a grade and values that are not worse. It
+changes what counts for the
 exit status and nothing else: the finding, its grading and the position stay what they are. One that
 has run out stays visible beside its finding; one that does not fit is a notice of the run.
 """
@@ -25,6 +26,7 @@ from auditor.intake.inputs import (
 )
 from auditor.rulebooks.conditions import Vocabulary
 from auditor.rulebooks.example_values import stated
+from auditor.rulebooks.rulebook import GRADES
 from auditor.schema_check import did_you_mean, quoted, schema_problems, sentence, shipped_schema
 from auditor.strict_yaml import KeyPath, Loaded, Mark, YamlError, read, shown_path
 
@@ -41,11 +43,13 @@ Record = Mapping[str, Any]
 
 @dataclass(frozen=True, slots=True)
 class Concession:
-    """One permission: rule, digest of the set, outcome and values shown as of the grant; why, by
-    which role, and its last day in ISO 8601."""
+    """One permission: rule, digest of the set, requirement, grade, outcome and values shown as of
+    the grant; why, by which role, and its last day in ISO 8601."""
 
     rule: str
     set_digest: str
+    requirement: str
+    grade: str
     outcome: str
     values: Mapping[str, Any]
     reason: str
@@ -60,6 +64,8 @@ class Concession:
             "by": self.by,
             "until": self.until,
             "in_force": as_of <= self.until,
+            "grade": self.grade,
+            "requirement": self.requirement,
             "granted": dict(self.values),
         }
 
@@ -115,6 +121,8 @@ def _concession(record: Record, path: str, mark: Mark) -> Concession:
     return Concession(
         rule=record["rule"],
         set_digest=record["set"],
+        requirement=" ".join(record["requirement"].split()),
+        grade=record["grade"],
         outcome=record["outcome"],
         values=plain(record["values"]),
         reason=record["reason"].strip(),
@@ -263,10 +271,11 @@ def conceded(record: Record, granted: Sequence[Concession]) -> dict[str, Any]:
     """
     as_of = record["run"]["as_of"]
     by_finding = {(item.set_digest, item.rule): item for item in granted}
+    required = _requirements(record)
 
     def finding(digest: str, shown: Record) -> dict[str, Any]:
         item = by_finding.get((digest, shown["rule"]))
-        covers = item is not None and not _mismatch(item, shown)
+        covers = item is not None and not _mismatch(item, shown, required)
         return {**shown, "concession": item.member(as_of) if item and covers else None}
 
     sets = [
@@ -276,10 +285,26 @@ def conceded(record: Record, granted: Sequence[Concession]) -> dict[str, Any]:
     return {**record, "parameter_sets": sets}
 
 
-def _mismatch(item: Concession, finding: Record) -> str:
+def _requirements(record: Record) -> dict[str, str]:
+    """What each rule in force requires, its thresholds put in."""
+    return {
+        rule: text["requirement"]
+        for book in record["rulebooks"]
+        for rule, text in book["rules"].items()
+    }
+
+
+def _mismatch(item: Concession, finding: Record, required: Mapping[str, str]) -> str:
     """Why a concession does not cover the finding of its rule about its set; empty if it does."""
     if finding["outcome"] != item.outcome:
         return f"it was granted for {item.outcome}, the rule is {finding['outcome']}"
+    if GRADES.index(finding["grade"]) < GRADES.index(item.grade):
+        return (
+            f"it was granted for a finding graded {item.grade}, this is graded {finding['grade']}"
+        )
+    if (now := required[item.rule]) != item.requirement:
+        then = shorten(item.requirement, 200)
+        return f"it was granted for the requirement {then}, which is {shorten(now, 200)} now"
     return "; ".join(worsened(item.values, finding["values"]))
 
 
@@ -290,11 +315,12 @@ def notices(record: Record, granted: Iterable[Concession]) -> tuple[str, ...]:
     sets: dict[str, Record] = {}
     for each in record["parameter_sets"]:
         sets.setdefault(each["digest"], each)
+    required = _requirements(record)
     found = [
         f"{item.place.path}:{item.place.line}:{item.place.column}: the concession for {item.rule} "
         f"{told}."
         for item in granted
-        if (told := _told(item, sets.get(item.set_digest), as_of))
+        if (told := _told(item, sets.get(item.set_digest), as_of, required))
     ]
     in_force = sum(
         is_conceded(shown) for each in record["parameter_sets"] for shown in each["findings"]
@@ -305,13 +331,15 @@ def notices(record: Record, granted: Iterable[Concession]) -> tuple[str, ...]:
     return tuple(found)
 
 
-def _told(item: Concession, parameter_set: Record | None, as_of: str) -> str:
+def _told(
+    item: Concession, parameter_set: Record | None, as_of: str, required: Mapping[str, str]
+) -> str:
     if parameter_set is None:
         return f"is unused: no set has the digest {item.set_digest[:16]}…"
     name = shorten(parameter_set["name"])
     for finding in parameter_set["findings"]:
         if finding["rule"] == item.rule:
-            if why := _mismatch(item, finding):
+            if why := _mismatch(item, finding, required):
                 return f"does not cover {name}: {why}"
             return (
                 f"has run out for {name}: it held until {item.until}" if item.until < as_of else ""
@@ -367,6 +395,8 @@ def recorded(report: Record) -> tuple[Concession, ...]:
                     Concession(
                         rule=finding["rule"],
                         set_digest=each["digest"],
+                        requirement=member["requirement"],
+                        grade=member["grade"],
                         outcome=finding["outcome"],
                         values=member.get("granted", finding["values"]),
                         reason=member["reason"],

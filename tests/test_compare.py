@@ -54,6 +54,8 @@ def conceded(record: dict[str, Any], *, in_force: bool) -> dict[str, Any]:
         "by": "head of port systems",
         "until": "2027-03-31",
         "in_force": in_force,
+        "grade": "major",
+        "requirement": "strength.sufficient",
         "granted": {},
     }
     record = copy.deepcopy(record)

@@ -70,10 +70,13 @@ def reviewed(as_of: str = DAY) -> dict[str, Any]:
 
 def entries(record: dict[str, Any], until: str = LAST_DAY) -> list[dict[str, Any]]:
     """An entry for every finding of a report that is more than an observation."""
+    rules = {id_: rule for book in record["rulebooks"] for id_, rule in book["rules"].items()}
     return [
         {
             "rule": finding["rule"],
             "set": item["digest"],
+            "requirement": rules[finding["rule"]]["requirement"],
+            "grade": finding["grade"],
             "outcome": finding["outcome"],
             "values": dict(finding["values"]),
             "reason": "Replaced in March.",
@@ -137,6 +140,8 @@ class TestSemantics:
             "by": "head of systems",
             "until": LAST_DAY,
             "in_force": True,
+            "grade": "major",
+            "requirement": "strength.sufficient",
             "granted": finding(record)["values"],
         }
 
@@ -237,6 +242,69 @@ class TestSemantics:
         assert record == reviewed()
         assert [told in line for line in notices(record, granted)] == [True]
 
+    @pytest.mark.parametrize(
+        ("granted", "shown", "covered"),
+        [
+            ("minor", "major", False),
+            ("major", "minor", True),
+            ("minor", "observation", True),
+            ("observation", "minor", False),
+            ("minor", "minor", True),
+        ],
+    )
+    def test_a_worse_grade_voids_it(self, granted: str, shown: str, covered: bool) -> None:
+        """Who conceded a minor finding has not conceded a major one."""
+        record = copy.deepcopy(reviewed())
+        finding(record)["grade"] = shown
+        item = entry(grade=granted)
+        told = f"granted for a finding graded {granted}, this is graded {shown}"
+
+        assert is_conceded(finding(conceded(record, [item]))) is covered
+        assert any(told in line for line in notices(record, [item])) is not covered
+
+    @pytest.mark.parametrize("grade", ["minor", "major"])
+    @pytest.mark.parametrize("least", [1024, 4096])
+    def test_a_house_that_raises_its_rule_has_not_conceded_it(
+        self, tmp_path: Path, grade: str, least: int
+    ) -> None:
+        """The grade and the threshold of a house book, raised after the grant, in a whole review;
+        the values of the finding are what they were."""
+        book = tmp_path / "house.yaml"
+
+        def run(grade: str, least: int, concessions: Concessions | None = None) -> dict[str, Any]:
+            text = HOUSE.replace("Least LEAST", f"House\nvalues: {{least: {least}}}")
+            text = text.replace(">= LEAST", ">= values.least")
+            book.write_text(text.replace("grade: major", f"grade: {grade}"))
+            return review(
+                ["-"],
+                RunValues(DAY, "quick"),
+                Surroundings(secrets.randbelow),
+                books=[book],
+                stdin=io.BytesIO(WEAK.encode()),
+                concessions=concessions,
+            )
+
+        granted = read(entries(run("minor", 1024)))
+        record = run(grade, least, granted)
+        (shown, *_) = record["parameter_sets"][0]["findings"]
+        same = (grade, least) == ("minor", 1024)
+
+        assert shown["values"] == {"modulus.length": 768}
+        assert is_conceded(shown) is same
+        assert fails(record["parameter_sets"][0], "conditions") is not same
+        assert verify(record, secrets.randbelow, [str(book)]).status == 0
+
+    def test_another_requirement_is_named(self) -> None:
+        """What it was and what it is; line breaks in the file are none of it."""
+        (told,) = notices(reviewed(), [entry(requirement="strength.work_bits\n  >= 80")])
+
+        assert (
+            "for the requirement strength.work_bits >= 80, which is strength.sufficient now" in told
+        )
+        assert is_conceded(
+            finding(conceded(reviewed(), [entry(requirement=" strength.sufficient\n")]))
+        )
+
     def test_equal_sets_share_it(self) -> None:
         """The digest covers all values, so a set under another name is conceded too."""
         record = copy.deepcopy(reviewed())
@@ -326,9 +394,9 @@ granted:
     reason: ""
     until: 2027-02-30
   - {{rule: a, set: {"0" * 63}a, outcome: nonconforming, values: {{}}, reason: x, by: y,
-     until: 2027-01-01}}
+     grade: minor, requirement: a, until: 2027-01-01}}
   - {{rule: a, set: {"0" * 63}a, outcome: undetermined, values: {{}}, reason: x, by: y,
-     until: 2027-01-01, colour: red}}
+     grade: minor, requirement: a, until: 2027-01-01, colour: red}}
 """
         with pytest.raises(ConcessionsError) as caught:
             parse(text.encode(), "c.yaml", vocabulary())
@@ -336,6 +404,8 @@ granted:
         expected = [
             ("1:14", "found 2; expected 1"),
             ("3:5", "missing key 'by'; expected the role that granted it"),
+            ("3:5", "missing key 'grade'; expected major, minor or observation"),
+            ("3:5", "missing key 'requirement'; expected what the rule required when"),
             ("3:11", "found 'X'"),
             ("4:10", "64 lower-case hex digits; put it in quotes"),
             ("5:14", "did you mean 'nonconforming'?"),
@@ -345,7 +415,7 @@ granted:
             ("7:13", "expected why it was granted"),
             ("8:12", "found '2027-02-30'; expected a day of the calendar"),
             ("11:5", "a second concession for 'a' and this set; expected one, the first is on"),
-            ("12:25", "unknown key 'colour'"),
+            ("12:55", "unknown key 'colour'"),
         ]
         told = [str(problem) for problem in caught.value.problems]
         assert len(told) == len(expected), told
@@ -399,6 +469,7 @@ granted:
         (shown,) = parse(text.encode(), "c.yaml", vocabulary()).granted
 
         assert (shown.rule, shown.outcome) == (entry().rule, entry().outcome)
+        assert (shown.grade, shown.requirement) == (entry().grade, entry().requirement)
         assert shown.set_digest == entry().set_digest
         assert worsened(shown.values, finding(reviewed())["values"]) == ()
 
@@ -457,6 +528,8 @@ class TestReport:
             ("in_force", False),
             ("until", "2026-11-30"),
             ("granted", {}),
+            ("grade", "minor"),
+            ("requirement", "strength.work_bits >= 80"),
         ],
     )
     def test_a_concession_that_does_not_follow_is_refused(self, member: str, value: Any) -> None:
@@ -562,7 +635,7 @@ class TestCommands:
         result = weak(*quick("weak.yaml"), "--concessions", "granted.yaml")
 
         assert result.status == 2
-        assert len(re.findall(r"^granted.yaml:2:11: ", result.err, re.MULTILINE)) == 7
+        assert len(re.findall(r"^granted.yaml:2:11: ", result.err, re.MULTILINE)) == 9
         assert result.out == ""
         assert weak(*quick("weak.yaml"), "--concessions", "absent.yaml").status == 2
 

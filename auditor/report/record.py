@@ -287,6 +287,7 @@ def _rule(rule: Rule) -> dict[str, Any]:
         "defect": rule.defect,
         "grade": rule.grade,
         "requires": rule.requires.source,
+        "requirement": rule.requires.text,
         "why": rule.why,
         "criterion": _criterion(rule.criterion),
         "cwe": list(rule.cwe),

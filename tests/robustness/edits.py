@@ -27,8 +27,8 @@ SURVIVORS = {
     r"^inputs(\[\d+\]|$)": "what was read: only the inputs themselves could show more (--against)",
     r"^parameter_sets\[\d+\]\.declaration": "the owner's word, where nothing follows from the "
     "difference",
-    r"^parameter_sets\[\d+\]\.findings\[\d+\]\.concession\.(reason|by|until|granted)": "the word "
-    "of whoever granted it, while it covers its finding: only the file could show more",
+    r"^parameter_sets\[\d+\]\.findings\[\d+\]\.concession\.(reason|by|until|grade|granted)": "the "
+    "word of whoever granted it, while it covers its finding: only the file could show more",
     r"^run\.as_of$": "the day taken as today, which whoever ran the review chose",
     r"^run\.fail_on$": "when the exit status is 1, which moves no finding",
     r"^run\.engine$": "the record of what ran the search: attested",
@@ -53,11 +53,18 @@ def report() -> dict[str, Any]:
 
 def _granted(record: dict[str, Any]) -> Iterator[Concession]:
     """Concessions for a report, one in force, the next one not."""
+    required = {
+        rule: each["requirement"]
+        for book in record["rulebooks"]
+        for rule, each in book["rules"].items()
+    }
     for item in record["parameter_sets"]:
         for number, finding in enumerate(item["findings"][::2]):
             yield Concession(
                 rule=finding["rule"],
                 set_digest=item["digest"],
+                requirement=required[finding["rule"]],
+                grade=finding["grade"],
                 outcome=finding["outcome"],
                 values=finding["values"],
                 reason="Replaced in March.",
