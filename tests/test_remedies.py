@@ -20,6 +20,7 @@ from auditor.declaration import Declaration, Party, Place
 from auditor.encoding import digest
 from auditor.facts import establish, vocabulary
 from auditor.intake.record import declaration_from
+from auditor.intake.standard_groups import standard_groups
 from auditor.report.json_report import problems
 from auditor.review import DEFAULT_BOOKS, Surroundings, review
 from auditor.rulebooks.judging import Judging, judge
@@ -166,8 +167,43 @@ def test_each_patch_removes_its_finding_and_brings_no_new_major(
             new = {f["rule"] for f in now["findings"] if f["grade"] == "major"} - majors
             assert not new, where
             foretold = f"the position becomes '{now['position']}'"
-            assert (foretold in finding["remedy"]["text"]) == (now["position"] != item["position"])
+            text = finding["remedy"]["text"]
+            assert (foretold in text) == (now["position"] != item["position"])
+            assert (" or better." in text) == (
+                foretold in text and now["position"] != "no objection"
+            )
     assert count > 60
+
+
+NARROW = {"bits": 224, "use": "single"}
+
+
+def test_a_review_may_come_to_more_than_was_foretold(tmp_path: Path) -> None:
+    """The remedy is judged by what is known of the old numbers; of the new ones more is found."""
+    group = next(group for group in standard_groups() if group.name == "rfc5114-2048-256")
+    declared = {
+        "name": "wrong order",
+        "modulus": hex(group.modulus),
+        "generator": 2,
+        "subgroup_order": hex(group.modulus - 1),
+        "purpose": "key-agreement",
+        "parties": [
+            {"role": "server", "exponent": NARROW, "peer_check": ["membership"]},
+            {"role": "client", "exponent": {"bits": 2047}, "peer_check": ["range"]},
+            {"role": "relay", "exponent": NARROW | {"bits": 64}},
+        ],
+    }
+    (before,) = reviewed(tmp_path / "a.yaml", [declared])["parameter_sets"]
+    remedy = remedies([before], "wrong order")["strength-insufficient"]
+    changed = patched(before["declaration"], remedy["patch"])
+    (after,) = reviewed(tmp_path / "b.yaml", [changed])["parameter_sets"]
+
+    assert (before["position"], remedy["position"], after["position"]) == (
+        "hold",
+        "open",
+        "conditions",
+    )
+    assert remedy["text"].endswith("With this alone the position becomes 'open' or better.")
 
 
 def remedies(before: list[Record], name: str) -> dict[str, Record]:

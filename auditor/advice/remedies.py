@@ -54,7 +54,8 @@ class Remedy:
     breaks: tuple[str, ...] = ()
     patch: Mapping[str, Any] | None = None
     position: Position | None = None
-    """What the set would come to, where the remedy was judged."""
+    """What the set would come to, where the remedy was judged; a review of what was changed may
+    establish more and come to a better one."""
 
     def record(self) -> dict[str, Any]:
         """The remedy as it stands in reports."""
@@ -230,7 +231,8 @@ class _Here:
         if draft.declaration not in self._written:
             texts = draft.texts
             if after != before:
-                texts = (*texts, f"With this alone the position becomes '{after}'.")
+                better = "" if after == "no objection" else " or better"
+                texts = (*texts, f"With this alone the position becomes '{after}'{better}.")
             changed = MappingProxyType(_patch(self._document, draft))
             self._written[draft.declaration] = Remedy(" ".join(texts), draft.breaks, changed, after)
         return self._written[draft.declaration]
