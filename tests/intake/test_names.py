@@ -85,6 +85,7 @@ def test_contexts(text: str, bits: int, protocol: str | None) -> None:
         "We no longer use kex diffie-hellman-group1-sha1 anywhere.",
         "kex: the method diffie-hellman-group1-sha1 is forbidden",
         "title: groups of TLS such as ffdhe2048 are fine",
+        "esp traffic is protected with modp1024 no more",
         "Ciphers diffie-hellman-group1-sha1",
         "name: modp2048",
         "group 14",
@@ -130,12 +131,14 @@ def test_what_stands_for_no_one_group() -> None:
 
 
 def test_places_and_repetitions() -> None:
-    """Each set has the line and column of its text; a repeated name gets its line."""
+    """Each set has the line and column of its text; a repeated name gets its line, and its column
+    where that is not enough."""
     text = (
         "KexAlgorithms diffie-hellman-group14-sha256\n"
         "Match User crane\n"
         "  KexAlgorithms curve25519-sha256,diffie-hellman-group14-sha256\n"
         "dh group 14 5\n"
+        "a { groups ffdhe2048; } b { groups ffdhe2048; } c { groups ffdhe2048; }\n"
     )
     found = [
         (item.name, item.place.line, item.place.column)
@@ -146,6 +149,9 @@ def test_places_and_repetitions() -> None:
         ("diffie-hellman-group14-sha256 (line 3)", 3, 35),
         ("dh group 14", 4, 10),
         ("dh group 5", 4, 13),
+        ("ffdhe2048", 5, 12),
+        ("ffdhe2048 (line 5)", 5, 36),
+        ("ffdhe2048 (line 5, column 60)", 5, 60),
     ]
 
 
@@ -186,6 +192,7 @@ PIECES = st.sampled_from(
         *("KexAlgorithms", "kex", "dh", "group", "pfs", "ike", "crypto ikev2 proposal", "Groups"),
         *("diffie-hellman-group14-sha256", "ffdhe2048", "modp2048", "14", "1", "-", "+", "="),
         *(":", ",", "[", "]", "\n", "  ", "- ", "\\", '"', "#", "2048-bit MODP Group"),
+        *("{", "}", ";", "'", "/*", "*/", "ikev2 ", " ikesa ", " group ", "connections", "version"),
     ]
 )
 
