@@ -171,7 +171,7 @@ def grades(*pairs: tuple[str, Fact | None]):
         ((("major", TRUE), ("minor", FALSE)), "conditions", "r1"),
         ((("observation", FALSE), ("observation", None)), "no objection", None),
         ((("major", TRUE), ("minor", TRUE)), "no objection", None),
-        ((), "no objection", None),
+        ((), "open", None),
     ],
 )
 def test_positions(book, pairs, position, decided_by):
@@ -320,6 +320,15 @@ def any_facts(random: Random) -> tuple[dict[str, Fact], dict[str, Fact]]:
         word = VOCABULARY[name]
         facts[name] = fact(random.choice(SAMPLES.get(word.kind) or word.values or ("none",)))
     return facts, {name: value for name, value in facts.items() if random.random() < 0.7}
+
+
+def test_nothing_judged_is_no_pass(book):
+    """A set that no requirement applies to is open, with nothing that decides it."""
+    idle = book(rule("r", "generator.unit", applies="group.cyclic"))
+    judgement = judged([idle], {"generator.unit": TRUE, "group.cyclic": FALSE})
+
+    assert judgement.outcomes == {"r": "not applicable"}
+    assert (judgement.position, judgement.decided_by) == ("open", None)
 
 
 def settled(outcomes) -> dict[str, bool | None]:

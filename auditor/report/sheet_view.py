@@ -79,6 +79,8 @@ class Sheet:
             return self.deciding.statements[0]
         applicable = len(self.record["outcomes"]) - len(self.not_applicable)
         met = len(self.with_outcome("conforming"))
+        if not applicable:
+            return "No requirement of the rulebooks in use applies, so nothing was judged."
         count = words.plural(applicable, "requirement")
         if met == applicable:
             return f"All of the {count} that apply are met."

@@ -45,7 +45,8 @@ class Waiting:
 class Judgement:
     """What the rulebooks say of one set. Outcomes and findings are in the order of books and rules.
 
-    ``decided_by`` is the one finding that decides the position; None for ``no objection``.
+    ``decided_by`` is the one finding that decides the position; None for ``no objection``, and for
+    ``open`` where no requirement applies.
     """
 
     outcomes: Mapping[str, Outcome]
@@ -134,6 +135,9 @@ class Judging:
                 if ruled.finding is not None:
                     findings.append(ruled.finding)
         position, decided_by = _position(findings, [book.name for book in self.books])
+        if all(outcome == "not applicable" for outcome in outcomes.values()):
+            # No requirement was looked at, and a check that was not made is never a pass.
+            position = "open"
         return Judgement(outcomes, tuple(findings), tuple(left_out), position, decided_by)
 
     def outcome(self, rule: str, given: Callable[[str], Fact | Absent]) -> Outcome:
