@@ -59,9 +59,16 @@ def number_field_sieve(given: Given) -> Work:
 
 def hidden_form(given: Given) -> Work:
     n = _modulus_of_nature(given, "prime")
-    verified = given.see_or(provenance.verified, False)
-    given.settle()
-    return _open(given, hidden_forms.hidden_form(n.bit_length(), verified))
+    return _open(given, hidden_forms.hidden_form(n.bit_length(), given.see(_origin_verified)))
+
+
+def _origin_verified(given: Given) -> bool:
+    """False where the owner shows no origin; absent while an answer could still verify one, which
+    closes the route."""
+    outcome = given.peek(provenance.verified)
+    if isinstance(outcome, Absent) and outcome.reason == "unsettled":
+        given.absent(outcome)
+    return bool(given.see_or(provenance.verified, False))
 
 
 def square_root(given: Given) -> Work:

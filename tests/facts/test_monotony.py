@@ -8,6 +8,8 @@ import sympy
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from auditor.claims.collection import Claims
+from auditor.claims.origin_formula import formula
 from auditor.declaration import Declaration
 from auditor.facts import Established, vocabulary
 from auditor.rulebooks.judging import judge
@@ -67,8 +69,11 @@ def test_more_claims_only_add_and_tighten(declaration: Declaration, seed: int) -
         everything.add(partial_claims(declaration.modulus, declaration.generator, rng))
     more = some(everything, rng)
     fewer = some(more, rng)
-    before, after = known(declaration, fewer), known(declaration, more)
+    only_adds_and_tightens(known(declaration, fewer), known(declaration, more))
 
+
+def only_adds_and_tightens(before: Established, after: Established) -> None:
+    """What more claims may do to facts and outcomes."""
     for name, fact in before.facts.items():
         assert name in after.facts, name
         now, word = after.facts[name], vocabulary()[name]
@@ -88,6 +93,29 @@ def test_more_claims_only_add_and_tighten(declaration: Declaration, seed: int) -
         # A requirement that holds is conforming even while it is open whether the rule applies.
         stays = {outcome, "not applicable"} if outcome == "conforming" else {outcome}
         assert outcome == "undetermined" or late[rule] in stays, rule
+
+
+@cache
+def shaped(offset: int) -> tuple[Declaration, Claims]:
+    """A safe prime of 256 bits that has the shape of the formula, with everything claimed of it."""
+    n = formula("pi", 256, offset)
+    declaration = declare(n, 4, subgroup_order=n // 2, purpose="key-agreement", bits=64)
+    return declaration, settled(declaration)
+
+
+@pytest.mark.parametrize(("offset", "follows"), [(3220, True), (2**40 + 14523, False)])
+@given(seed=st.integers(0, 2**32))
+@settings(max_examples=40)
+def test_an_origin_that_is_found_takes_nothing_back(offset: int, follows: bool, seed: int) -> None:
+    """Until it is known whether the modulus follows from pi, nothing is said for its maker."""
+    declaration, everything = shaped(offset)
+    rng = random.Random(seed)
+    more = some(everything, rng)
+    settled_facts = known(declaration, everything)
+
+    assert ("strength.hidden_form_bits_at_most" in settled_facts.facts) is not follows
+    only_adds_and_tightens(known(declaration, some(more, rng)), known(declaration, more))
+    only_adds_and_tightens(known(declaration, more), settled_facts)
 
 
 @settings(max_examples=40)
