@@ -6,7 +6,7 @@ largest prime of ord(g), and kangaroos at the narrowest width; every other route
 work.
 """
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from types import MappingProxyType
 
 from auditor.facts import generator, parts, usage, work
@@ -129,23 +129,25 @@ def designer_bits_at_most(given: Given) -> float:
 def sufficient(given: Given) -> bool:
     """False as soon as one known component is too low, or one other route costs too little; true
     when every component is known, and every other open route is known exactly, and all reach the
-    requirement. What decides a False is all that it rests on."""
-    required = given.see(required_bits)
+    requirement. A False rests on what decides it alone: of several, on the best founded."""
+    too_low = tuple(_too_low(given, given.see(required_bits)))
+    if not too_low:
+        return _all_reach(given)
+    given.see(min(too_low, key=lambda part: given.standing(given.trace(part)).weakness))
+    given.settle()
+    return False
+
+
+def _too_low(given: Given, required: int) -> Iterator[Callable[[Given], object]]:
+    """The components and other routes that are known to stay below the requirement."""
     for component in (*TABLE, table_subgroup_at_most, table_exponent_at_most):
         bits = given.peek(component)
         if not isinstance(bits, Absent) and bits < required:
-            return _insufficient(given, component)
+            yield component
     for route in BESIDE_TABLES:
         found = given.peek(route)
         if not isinstance(found, Absent) and floor_bits(found.bits) < required:
-            return _insufficient(given, route)
-    return _all_reach(given)
-
-
-def _insufficient(given: Given, decided_by: Callable[[Given], object]) -> bool:
-    given.see(decided_by)
-    given.settle()
-    return False
+            yield route
 
 
 def table_subgroup_at_most(given: Given) -> int:

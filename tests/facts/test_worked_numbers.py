@@ -15,6 +15,7 @@ import pytest
 from auditor.claims.collection import Claims, check_all
 from auditor.claims.composite import Composite
 from auditor.claims.factorization import Factorization
+from auditor.claims.standing import Standing
 from auditor.declaration import Party
 from auditor.facts import Established
 from auditor.inquiry.answers import Answers
@@ -246,3 +247,16 @@ def test_an_ephemeral_exponent_is_used_once(
         assert found.absent[name].keys == ("parties.party 1.exponent.use",)
     else:
         assert found.facts[name].value is reused
+
+
+def test_of_what_makes_it_insufficient_the_best_founded_decides() -> None:
+    """The modulus is too short and only probably prime; that n - 1 has order 2 is proven."""
+    standard = find("group22")
+    assert standard is not None
+    declaration = declare(standard.modulus, standard.modulus - 1, bits=16)
+    found = known(declaration, settled(declaration, QUICK), QUICK)
+    sufficient = found.facts["strength.sufficient"]
+
+    assert found.facts["modulus.nature"].standing is Standing.PROBABLE
+    assert (sufficient.value, sufficient.standing) == (False, Standing.PROVEN)
+    assert sufficient.rests_on == ()
