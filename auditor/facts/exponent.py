@@ -1,4 +1,8 @@
-"""Facts about what leaks of a private exponent through factors that are cheap to use."""
+"""Facts about what leaks of a private exponent through factors that are cheap to use.
+
+A leak is measured by the number modulo which the exponent becomes known, whatever its width: one
+of no more bits is then known.
+"""
 
 from auditor.declaration import Party
 from auditor.facts import parts, usage
@@ -54,8 +58,8 @@ def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
 @fact(
     "exponent.public_leak_bits_at_least",
     "real",
-    "bits of an exponent that public values alone give away, through factors of ord(g) whose "
-    "logarithms cost at most 2^40",
+    "log2 of the number modulo which public values alone give every exponent away, through factors "
+    "of ord(g) whose logarithms cost at most 2^40",
 )
 def public_leak(given: Given) -> float:
     return floor_bits(public_leak_bits(given.see(generator_order)))
@@ -64,8 +68,8 @@ def public_leak(given: Given) -> float:
 @fact(
     "exponent.confinement_leak_bits_at_least",
     "real",
-    "bits of a reused exponent that a peer learns under the declared checks, through factors that "
-    "cost at most 2^40 trials",
+    "log2 of the number modulo which a peer learns a reused exponent under the declared checks, "
+    "through factors that cost at most 2^40 trials",
 )
 def confinement_leak(given: Given) -> float:
     order, group = given.see(generator_order), given.see(group_exponent)

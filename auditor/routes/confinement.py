@@ -68,8 +68,8 @@ def _explain(split: Split) -> str:
         return "Values of small order sent to a reused exponent would not make an attack cheaper."
     queries = "one query" if split.probes == 1 else f"{split.probes} queries"
     return (
-        f"Values of small order sent to a reused exponent give {floor_bits(split.probed_bits):.2f} "
-        f"bits of it in {queries}; the rest is searched off line."
+        "Values of small order sent to a reused exponent tell it modulo a number of "
+        f"{floor_bits(split.probed_bits):.2f} bits in {queries}; the rest is searched off line."
     )
 
 
@@ -79,7 +79,7 @@ def _details(
     details: tuple[Detail, ...] = (
         ("exponent width", width),
         ("queries", split.probes),
-        ("bits learnt by probing", floor_bits(split.probed_bits)),
+        ("bits of the number modulo which probing tells it", floor_bits(split.probed_bits)),
         ("off-line trials", floor_bits(positive(split.trials_bits))),
         ("search of what is left", floor_bits(positive(split.search_bits))),
     )

@@ -1,4 +1,7 @@
-"""How much of an exponent small factors give away, whatever becomes of the rest."""
+"""Modulo which number small factors give an exponent away, whatever becomes of the rest.
+
+The number is given as log2. An exponent of no more bits is known in full.
+"""
 
 import math
 from collections.abc import Callable
@@ -12,7 +15,7 @@ CHEAP_BITS = 40.0
 
 
 def public_leak_bits(order: Factors, budget_bits: float = CHEAP_BITS) -> float:
-    """Bits of an exponent that a public value reveals, at least.
+    """log2 of the number modulo which a public value reveals an exponent, at least.
 
     The exponent is known modulo every prime power of ord(g) whose logarithms cost at most
     2^budget_bits group multiplications a digit. Source: Pohlig and Hellman 1978; van Oorschot and
@@ -24,12 +27,12 @@ def public_leak_bits(order: Factors, budget_bits: float = CHEAP_BITS) -> float:
 def confinement_leak_bits(
     order: Factors, group: Factors, check: Check, budget_bits: float = CHEAP_BITS
 ) -> float:
-    """Bits of a reused exponent that a peer learns through values of small order, at least.
+    """log2 of the number modulo which a peer learns a reused exponent, at least.
 
-    Every prime factor r <= 2^budget_bits of the orders of accepted values counts, at r trials or
-    fewer. Accepted are all units with no check or a range check (which stops neither -g^a nor
-    its products), and elements of <g> with a membership test or a cofactor exponent. Source: Lim
-    and Lee, CRYPTO 1997.
+    It sends values of small order. Every prime factor r <= 2^budget_bits of the orders of accepted
+    values counts, at r trials or fewer. Accepted are all units with no check or a range check
+    (which stops neither -g^a nor its products), and elements of <g> with a membership test or a
+    cofactor exponent. Source: Lim and Lee, CRYPTO 1997.
     """
     accepted = group if check in ("none", "range") else order
     return _bits(accepted, lambda prime: math.log2(prime) <= budget_bits)

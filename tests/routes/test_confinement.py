@@ -88,8 +88,8 @@ def test_the_largest_budget_is_not_the_best() -> None:
     details = dict(work.details)
     assert details["largest prime probed"] == 112486462861
     assert details["queries"] == 12
-    assert details["bits learnt by probing"] == 161.63
-    assert "161.63 bits of it in 12 queries" in work.explanation
+    assert details["bits of the number modulo which probing tells it"] == 161.63
+    assert "modulo a number of 161.63 bits in 12 queries" in work.explanation
 
 
 def test_one_more_factor_of_the_256_bit_group() -> None:
