@@ -151,7 +151,7 @@ def _from_pkcs3(found: der.DHParameter) -> EncodedSet:
             f"the private value length is {shorten(length)}; expected 0 to {MAX_BITS} bits: "
             "are these parameters of X9.42 or DSA under a wrong label?"
         )
-    _refuse_impossible(modulus=(found.prime, 1), generator=(found.base, 0))
+    refuse_impossible(modulus=(found.prime, 1), generator=(found.base, 0))
     remarks = ("the private value length is 0, which says nothing",) if length == 0 else ()
     return EncodedSet(
         "key-agreement", found.prime, found.base, exponent_bits=length or None, remarks=remarks
@@ -163,7 +163,7 @@ def _x942(data: bytes) -> EncodedSet:
 
 
 def _from_x942(found: der.DomainParameters) -> EncodedSet:
-    _refuse_impossible(
+    refuse_impossible(
         modulus=(found.p, 1), generator=(found.g, 0), subgroup_order=(found.q, 1), j=(found.j, None)
     )
     return EncodedSet(
@@ -203,7 +203,7 @@ def _dsa(data: bytes) -> EncodedSet:
 
 
 def _from_dss(found: der.DssParms | der.DSAPrivateKey) -> EncodedSet:
-    _refuse_impossible(modulus=(found.p, 1), generator=(found.g, 0), subgroup_order=(found.q, 1))
+    refuse_impossible(modulus=(found.p, 1), generator=(found.g, 0), subgroup_order=(found.q, 1))
     return EncodedSet("signature", found.p, found.g, scheme="dsa", subgroup_order=found.q)
 
 
@@ -260,11 +260,11 @@ def _from_algorithm(element: asn1.TLV) -> EncodedSet:
 
 
 def _with_public_value(found: EncodedSet, value: int) -> EncodedSet:
-    _refuse_impossible(public_value=(value, 0))
+    refuse_impossible(public_value=(value, 0))
     return replace(found, public_values=(value,))
 
 
-def _refuse_impossible(**numbers: tuple[int | None, int | None]) -> None:
+def refuse_impossible(**numbers: tuple[int | None, int | None]) -> None:
     """EncodingError for integers that no declaration holds: too small, or of too many bits."""
     for key, (value, least) in numbers.items():
         name = key.replace("_", " ")

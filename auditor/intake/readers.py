@@ -17,6 +17,7 @@ from auditor.intake.inputs import InputError, decode
 from auditor.intake.moduli import is_moduli, read_moduli
 from auditor.intake.names import read_names
 from auditor.intake.reading import Passed, Reading, joined
+from auditor.intake.ssh_keys import read_ssh_keys
 from auditor.intake.usage_file import UsageFile, is_usage_file, read_usage
 from auditor.strict_yaml import YamlError
 
@@ -30,7 +31,8 @@ MODULI = "moduli"
 
 NOTHING = (
     "found nothing that is read; expected a declaration document, a usage file, parameters, keys "
-    "or certificates in PEM or DER, a moduli file, or configuration that names a group"
+    "or certificates in PEM or DER, DSA keys of SSH, a moduli file, or configuration that names a "
+    "group"
 )
 
 # A key of that name somewhere, and one that is certainly a key of the whole document.
@@ -121,7 +123,8 @@ def _content(candidate: Candidate, data: bytes) -> Reading:
         return Reading()
     found = [read_pem(text, path)]
     if candidate.named or candidate.suffix not in PROSE_SUFFIXES:
-        found += [read_names(text, path), read_candidates(text, path)]
+        read = (read_ssh_keys, read_names, read_candidates)
+        found += [reader(text, path) for reader in read]
     return joined(found)
 
 

@@ -36,6 +36,7 @@ FOLDERS = (
     "asymmetric/DH",
     "asymmetric/DSA/custom",
     "asymmetric/DER_Serialization",
+    "asymmetric/OpenSSH",
     "asymmetric/PEM_Serialization",
     "asymmetric/PKCS8",
     "asymmetric/Traditional_OpenSSL_Serialization",
@@ -153,6 +154,7 @@ _LOADERS: tuple[Callable[[bytes], list[object]], ...] = (
     lambda data: [serialization.load_der_private_key(data, None)],
     lambda data: [serialization.load_pem_parameters(data)],
     lambda data: [serialization.load_der_parameters(data)],
+    lambda data: [serialization.load_ssh_public_key(data)],
 )
 
 
