@@ -74,8 +74,8 @@ def demonstrate(
             return Shown(declaration, attempt())
         except OutOfBudget:
             reasons.append(
-                f"a logarithm takes more than 2^{budget_bits} operations, and routes that need none "
-                "are not demonstrated"
+                f"a logarithm takes more than 2^{budget_bits} operations, and routes that need "
+                "none are not demonstrated"
             )
         except (LogarithmError, ValueError) as error:
             reasons.append(str(error))

@@ -22,21 +22,9 @@ from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
 from auditor.report.record import Reading, build, in_use
 from auditor.rulebooks.judging import Judging
-from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
-
-DEFAULT_BOOKS = (
-    "group-structure",
-    "strength",
-    "provenance",
-    "schemes",
-    "tls",
-    "ssh",
-    "ikev2",
-    "x942-cms",
-)
-"""The books that speak about every set, then those that speak about a declared protocol."""
 
 
 @dataclass(frozen=True, slots=True)

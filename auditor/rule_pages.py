@@ -13,7 +13,7 @@ from auditor.report.templates import environment
 from auditor.report.text import visible
 from auditor.report.words import plural
 from auditor.rulebooks.examples import failures
-from auditor.rulebooks.loading import available, load, load_all
+from auditor.rulebooks.loading import DEFAULT_BOOKS, available, load, load_all
 from auditor.rulebooks.rulebook import Criterion, Example, Outcome, Rule, Rulebook, RulebookError
 
 WIDTH = 88
@@ -24,11 +24,13 @@ class NoSuchRule(LookupError):
 
 
 def listing() -> str:
-    """Every shipped book with its rules, a line each."""
+    """Every shipped book with its rules, a line each, and which of them are in use where none are
+    named."""
     lines: list[str] = []
     for name in available():
         book = load(name, vocabulary())
-        lines += [f"{book.name}: {book.title}"]
+        usual = " (in use unless --rulebook names others)" if name in DEFAULT_BOOKS else ""
+        lines += [f"{book.name}: {book.title}{usual}"]
         lines += [f"  {rule.id:<40} {rule.grade:<12} {rule.title}" for rule in book.rules]
     return "\n".join(lines) + "\n"
 

@@ -22,9 +22,9 @@ from auditor.facts import establish, vocabulary
 from auditor.intake.record import declaration_from
 from auditor.intake.standard_groups import standard_groups
 from auditor.report.json_report import problems
-from auditor.review import DEFAULT_BOOKS, Surroundings, review
+from auditor.review import Surroundings, review
 from auditor.rulebooks.judging import Judging, judge
-from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
 from auditor.verify import verify

@@ -16,8 +16,8 @@ from auditor.intake.document import parse
 from auditor.intake.tree import InputResult, read_inputs
 from auditor.intake.usage_file import UsageFile, read_usage
 from auditor.report.view import view
-from auditor.review import DEFAULT_BOOKS, Surroundings, investigate, review
-from auditor.rulebooks.loading import load_all
+from auditor.review import Surroundings, investigate, review
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.run_values import RunValues
 from auditor.usage_draft import MOST_USES, Draft, draft
 from tests.intake.der_writer import integers, pem

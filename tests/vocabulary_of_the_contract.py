@@ -42,9 +42,10 @@ _TEXTS = {
 _BY_KIND: dict[FactKind, str] = {
     "bool": """
         usage.peer_range usage.peer_membership usage.peer_cofactor usage.exponent_reused
-        usage.ephemeral_reused usage.exponent_widths_declared
+        usage.ephemeral_reused usage.protection_stated usage.exponent_widths_declared
         modulus.safe_prime modulus.special_form_seen group.cyclic group.factored
-        generator.unit generator.trivial generator.order_prime generator.order_even
+        generator.unit generator.reduced generator.trivial generator.order_prime
+        generator.order_even
         generator.generates_group generator.order_is_declared generator.canonical
         subgroup.declared subgroup.order_prime subgroup.divides_group
         subgroup.cofactor_agrees
@@ -61,14 +62,14 @@ _BY_KIND: dict[FactKind, str] = {
         public_values.small_order public_values.related public_values.plainly_visible
         provenance.offset strength.required_bits strength.standard_bits""",
     "real": """
-        group.order_bits group.exponent_bits group.missed_factor_risk_at_most
+        group.order_bits group.exponent_bits
         generator.order_bits generator.index_bits subgroup.cofactor_bits
         exponent.public_leak_bits_at_least exponent.confinement_leak_bits_at_least
         scheme.forgery_bits_at_most
         strength.work_bits_at_most strength.work_bits strength.designer_bits_at_most"""
     + " ".join(f" strength.{route}_bits_at_most" for route in ROUTES),
     "exhibit": """
-        usage.exponent_width
+        usage.exponent_width group.missed_factor_risk group.missed_factor_window
         group.cycles subgroup.small_factors_seen public_values.values_out_of_range
         public_values.values_outside_subgroup public_values.values_of_small_order
         public_values.values_related public_values.values_plainly_visible""",

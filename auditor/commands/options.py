@@ -73,7 +73,11 @@ ENGINE = click.option(
     help="What runs elliptic curves; GMP-ECM where it is installed.",
 )
 JOBS = click.option("--jobs", type=click.IntRange(1, 256), help="Worker processes; one a core.")
-BOOKS = click.option("--rulebook", multiple=True, help="A shipped book or a file; may be repeated.")
+BOOKS = click.option(
+    "--rulebook",
+    multiple=True,
+    help="A shipped book or a file, in place of the usual books (rulebook list); may be repeated.",
+)
 AS_OF = click.option(
     "--as-of", type=click.DateTime(["%Y-%m-%d"]), help="Date of the review; today."
 )
@@ -228,8 +232,7 @@ def status_of(record: dict[str, Any], fail_on: str) -> int:
 
 def books_of(options: dict[str, Any]) -> Any:
     from auditor.facts import vocabulary
-    from auditor.review import DEFAULT_BOOKS
-    from auditor.rulebooks.loading import load_all
+    from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
     from auditor.rulebooks.rulebook import RulebookError
 
     try:

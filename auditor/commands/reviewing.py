@@ -67,8 +67,8 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
 
 
 def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]:
-    from auditor.review import DEFAULT_BOOKS
     from auditor.review import review as review_inputs
+    from auditor.rulebooks.loading import DEFAULT_BOOKS
 
     policy = policy_of(options)
     with surroundings_of(options) as surroundings:

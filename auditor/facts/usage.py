@@ -75,6 +75,15 @@ def protect_until(given: Given) -> int:
     return int(given.word("protect_until"))
 
 
+@narrow
+@fact("usage.protection_stated", "bool", "a year until which protection is needed is declared")
+def protection_stated(given: Given) -> bool:
+    stated = given.declaration.protect_until is not None
+    if stated:
+        given.rest_on("protect_until")
+    return stated
+
+
 @fact("run.year", "int", "the year of the date that the review takes as today")
 def year(given: Given) -> int:
     return given.run.year

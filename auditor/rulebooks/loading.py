@@ -30,6 +30,7 @@ from auditor.rulebooks.rulebook import (
 )
 
 __all__ = [
+    "DEFAULT_BOOKS",
     "Confidence",
     "Criterion",
     "Document",
@@ -45,6 +46,19 @@ __all__ = [
     "load",
     "load_all",
 ]
+
+DEFAULT_BOOKS = (
+    "group-structure",
+    "strength",
+    "provenance",
+    "schemes",
+    "tls",
+    "ssh",
+    "ikev2",
+    "x942-cms",
+)
+"""The books in use where none are named: those that speak about every set, then those that speak
+about a declared protocol."""
 
 LARGEST_FILE = 2**20
 LONGEST_CHAIN = 4

@@ -34,8 +34,8 @@ from auditor.outputs import write_text, written
 from auditor.report import html
 from auditor.report.record import Reading, build
 from auditor.report.view import view
-from auditor.review import DEFAULT_BOOKS, Surroundings, census, investigate
-from auditor.rulebooks.loading import load_all
+from auditor.review import Surroundings, census, investigate
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.run_values import RunValues
 
 POOL, BITS = 16, 256

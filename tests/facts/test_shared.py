@@ -12,9 +12,8 @@ from auditor.claims.prime import Prime
 from auditor.declaration import Declaration
 from auditor.facts import establish, vocabulary
 from auditor.facts.given import Given, Shared
-from auditor.review import DEFAULT_BOOKS
 from auditor.rulebooks.judging import Judging, judge
-from auditor.rulebooks.loading import load_all
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.run_values import RunValues
 from tests.facts.knowledge import RUN, declare, settled
 from tests.facts.test_monotony import declarations

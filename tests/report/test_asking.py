@@ -22,8 +22,8 @@ from auditor.report import asking, asking_html, asking_markdown
 from auditor.report.asking_record import record
 from auditor.report.markdown_text import LEAST
 from auditor.report.text import HIDDEN, visible
-from auditor.review import DEFAULT_BOOKS, Surroundings, investigate
-from auditor.rulebooks.loading import load_all
+from auditor.review import Surroundings, investigate
+from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.run_values import RunValues
 from tests.intake.der_writer import integers, pem
 from tests.report.pages import Page

@@ -104,6 +104,8 @@ SAFE_PRIME_GROUP = proven(
     modulus__standard_match="exact",
     modulus__occurrences=12,
     generator__unit=True,
+    generator__reduced=True,
+    usage__protection_stated=False,
     generator__trivial=False,
     generator__order_even=False,
     generator__order_prime=True,
@@ -239,6 +241,8 @@ def test_a_composite_modulus_asks_for_nothing_deep():
         modulus__length=2048,
         usage__purpose="key-agreement",
         generator__unit=True,
+        generator__reduced=True,
+    usage__protection_stated=False,
         strength__required_bits=112,
     )
     used = facts_in_use(CORE, facts, UNUSED, VOCABULARY)

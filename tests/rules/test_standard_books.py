@@ -57,6 +57,7 @@ def group_facts(group: StandardGroup) -> dict[str, Any]:
         "modulus.special_form_seen": False,
         "modulus.occurrences": 1,
         "generator.unit": True,
+        "generator.reduced": True,
         "generator.trivial": False,
         "generator.order_even": False,
         "generator.order_prime": True,
@@ -97,6 +98,7 @@ def good_use(protocol: str, width: int) -> dict[str, Any]:
         "usage.peer_membership": True,
         "usage.peer_cofactor": False,
         "usage.protect_until": 2028,
+        "usage.protection_stated": True,
     }
 
 
@@ -348,6 +350,7 @@ def test_an_undeclared_horizon_matters_to_112_bits_only():
     for name in ("modp2048", "modp3072"):
         values = group_facts(GROUPS[name]) | USE
         del values["usage.protect_until"]
+        values["usage.protection_stated"] = False
         found = judged(values, {"usage.protect_until": UNDECLARED})
         open_rules[name] = {f.rule for f in found.findings if f.outcome == "undetermined"}
 
