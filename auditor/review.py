@@ -20,7 +20,8 @@ from auditor.inquiry.settle import settle
 from auditor.inquiry.sharing import share_among_moduli, share_among_rests
 from auditor.intake.policy import Governed, read_governed
 from auditor.intake.tree import InputResult, read_inputs
-from auditor.report.record import Reading, build, in_use
+from auditor.report.record import Reading, build
+from auditor.report.set_record import in_use
 from auditor.rulebooks.judging import Judging
 from auditor.rulebooks.loading import DEFAULT_BOOKS, load_all
 from auditor.rulebooks.rulebook import Rulebook

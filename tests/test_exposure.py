@@ -10,6 +10,7 @@ from auditor.advice.exposure import CHECKS, Exposure, Exposures
 from auditor.claims.collection import Claims
 from auditor.declaration import Declaration, Party, Place
 from auditor.facts import establish
+from auditor.facts.given import Given
 from auditor.intake.tree import read_inputs
 from tests.facts.knowledge import settled
 from tests.facts.test_worked_numbers import GROUP_23, GROUP_24, QUICK, claims, group
@@ -20,7 +21,7 @@ USAGES = [(check, use) for check in CHECKS for use in ("single", "static")]
 
 def exposure(declaration: Declaration, known: Claims) -> tuple[Exposure, ...]:
     """The rows of one declaration."""
-    return Exposures(known, QUICK).of(declaration)
+    return Exposures(Given(declaration, known, QUICK)).of(declaration)
 
 
 def least(rows: tuple[Exposure, ...], check: str, use: str, width: int) -> float:
@@ -136,7 +137,7 @@ def test_sets_that_differ_in_name_and_place_only_are_worked_out_once() -> None:
     """Rows and claims of the second set are those of the first, from the same cases."""
     first = group(24, GROUP_24, bits=256, use="static", checks=())
     second = replace(first, name="other", place=Place("elsewhere", 7), protect_until=2040)
-    worked = Exposures(claims(24, GROUP_24), QUICK)
+    worked = Exposures(Given(first, claims(24, GROUP_24), QUICK))
     rows = worked.of(first)
 
     again = worked.of(second)

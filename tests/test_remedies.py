@@ -14,11 +14,13 @@ from hypothesis import strategies as st
 
 from auditor.advice.changes import groups_for
 from auditor.advice.exposure import Exposures
-from auditor.advice.remedies import HELD, Remedies, patched, registry_claims
+from auditor.advice.remedies import Remedies, patched
+from auditor.advice.trials import HELD, Moves, registry_claims
 from auditor.claims.collection import check_all
 from auditor.declaration import Declaration, Party, Place
 from auditor.encoding import digest
 from auditor.facts import establish, vocabulary
+from auditor.facts.given import Given, Shared
 from auditor.intake.record import declaration_from
 from auditor.intake.standard_groups import standard_groups
 from auditor.report.json_report import problems
@@ -416,11 +418,11 @@ def test_for_any_numbers_a_patch_of_the_usage_or_the_generator_holds(declared: D
     claims = settled(declared, QUICK)
     known = establish(declared, claims, QUICK)
     judgement = judge(books, known.facts, known.absent, vocabulary())
-    Exposures(claims, QUICK).of(declared)
+    judging, shared = Judging(books, vocabulary()), Shared(QUICK)
+    Exposures(Given(declared, claims, QUICK, shared)).of(declared)
+    remedies = Remedies(claims, judging, [known], shared, Moves(QUICK, judging))
 
-    for rule, remedy in (
-        Remedies(claims, QUICK, Judging(books, vocabulary()), [known]).of(known, judgement).items()
-    ):
+    for rule, remedy in remedies.of(known, judgement).items():
         if remedy.patch is None or "modulus" in remedy.patch:
             continue
         document = patched(declared.document(), remedy.record()["patch"])

@@ -125,7 +125,7 @@ class Asker:
         self._claims = claims
         self._run = run
         self._judging = Judging(books, vocabulary())
-        self._shared = Shared(claims, run)
+        self._shared = Shared(run)
 
     def ask(self, declaration: Declaration) -> Asked:
         """The answers of the owner that change the position or the work of an attack, the fewest

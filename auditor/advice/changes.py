@@ -7,6 +7,7 @@ change nothing. Whether it helps is not decided here.
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from types import MappingProxyType
+from typing import Any
 
 from auditor.declaration import EVERYBODY, Declaration, Party, Provenance
 from auditor.encoding import shorten
@@ -53,10 +54,11 @@ class Draft:
     texts: tuple[str, ...] = ()
     breaks: tuple[str, ...] = ()
 
-    def with_words(self, text: str, *breaks: str) -> "Draft":
-        """The draft with another sentence, and with what else that breaks."""
+    def changed(self, text: str, *breaks: str, **values: Any) -> "Draft":
+        """The draft with other values, another sentence, and what else that breaks."""
         return replace(
             self,
+            **values,
             texts=(*self.texts, text),
             breaks=tuple(dict.fromkeys((*self.breaks, *breaks))),
         )
@@ -76,14 +78,14 @@ def true_order(draft: Draft) -> Draft | None:
     if order is None or order == draft.declaration.subgroup_order:
         return None
     text = f"Declare subgroup_order {shorten(order)}: the generator has this prime order."
-    changed = replace(draft, declaration=_with_order(draft.declaration, order))
-    return changed.with_words(text)
+    declared = _order_declared(draft.declaration, order)
+    return draft.changed(text, declaration=replace(draft.declaration, **declared))
 
 
-def _with_order(declaration: Declaration, order: int) -> Declaration:
-    """The declaration with this order; a declared cofactor belongs to the order it came with."""
+def _order_declared(declaration: Declaration, order: int) -> dict[str, Any]:
+    """The keys that declare this order; a declared cofactor belongs to the order it came with."""
     kept = declaration.cofactor if order == declaration.subgroup_order else None
-    return replace(declaration, subgroup_order=order, cofactor=kept)
+    return {"subgroup_order": order, "cofactor": kept}
 
 
 def prime_order_generator(draft: Draft) -> Draft | None:
@@ -106,8 +108,9 @@ def prime_order_generator(draft: Draft) -> Draft | None:
         public_values=(),
         provenance=_without_index(draft.declaration.provenance),
     )
-    after = replace(draft, declaration=changed, order=q, length=q.bit_length(), moved=True)
-    return after.with_words(text, PEERS, KEYS, *_stored(draft.declaration))
+    breaks = PEERS, KEYS, *_stored(draft.declaration)
+    known = {"order": q, "length": q.bit_length(), "moved": True}
+    return draft.changed(text, *breaks, declaration=changed, **known)
 
 
 def _without_index(provenance: Provenance | None) -> Provenance | None:
@@ -148,8 +151,9 @@ def move_to(group: StandardGroup) -> Change:
             public_values=(),
             provenance=None,
         )
-        after = replace(draft, declaration=changed, order=q, length=q.bit_length(), group=group)
-        return after.with_words(text, PEERS, KEYS, *_stored(declaration))
+        breaks = PEERS, KEYS, *_stored(declaration)
+        known = {"order": q, "length": q.bit_length(), "group": group}
+        return draft.changed(text, *breaks, declaration=changed, **known)
 
     return change
 
@@ -192,7 +196,7 @@ def hashed_message(draft: Draft) -> Draft | None:
         "and encrypt the message under it with an authenticated cipher (scheme elgamal-hashed)."
     )
     changed = replace(declaration, scheme="elgamal-hashed", message_bits=None)
-    return replace(draft, declaration=changed).with_words(text, PEERS, STORED)
+    return draft.changed(text, PEERS, STORED, declaration=changed)
 
 
 def fresh_exponents(draft: Draft) -> Draft | None:
@@ -270,10 +274,9 @@ def _unless_signing(
 ) -> Draft | None:
     if draft.declaration.purpose == "signature":
         return None
-    changed = _with_parties(draft, parties, text, *breaks)
-    if changed is None or subgroup_order is None:
-        return changed
-    return replace(changed, declaration=_with_order(changed.declaration, subgroup_order))
+    order = subgroup_order
+    declared = {} if order is None else _order_declared(draft.declaration, order)
+    return _with_parties(draft, parties, text, *breaks, **declared)
 
 
 def fit_widths(draft: Draft) -> Draft | None:
@@ -309,9 +312,9 @@ def _widths(draft: Draft) -> tuple[int, int]:
 
 
 def _with_parties(
-    draft: Draft, parties: tuple[Party, ...], text: str, *breaks: str
+    draft: Draft, parties: tuple[Party, ...], text: str, *breaks: str, **values: Any
 ) -> Draft | None:
     if parties == draft.parties:
         return None
-    declaration = replace(draft.declaration, parties=parties)
-    return replace(draft, declaration=declaration).with_words(text, *breaks)
+    declaration = replace(draft.declaration, parties=parties, **values)
+    return draft.changed(text, *breaks, declaration=declaration)

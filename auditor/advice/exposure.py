@@ -10,14 +10,12 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from math import inf
 
-from auditor.claims.collection import Claims
 from auditor.declaration import EVERYBODY, Declaration, Party, Place
 from auditor.facts import generator, strength
 from auditor.facts.base import Absent
-from auditor.facts.given import Given, Shared
+from auditor.facts.given import Given
 from auditor.routes.base import Attacker, floor_bits
 from auditor.routes.standard_tables import STRENGTHS
-from auditor.run_values import RunValues
 
 CHECKS: dict[str, tuple[str, ...]] = {
     "none": (),
@@ -67,10 +65,10 @@ class _Figure:
 
 
 class Exposures:
-    """Works out exposures from claims and run values, equal cases once."""
+    """Works out exposures from what is given with any declaration, equal cases once."""
 
-    def __init__(self, claims: Claims, run: RunValues) -> None:
-        self._shared = Shared(claims, run)
+    def __init__(self, given: Given) -> None:
+        self._given = given
         self._groups: dict[Declaration, _Cases] = {}
 
     def of(self, declaration: Declaration) -> tuple[Exposure, ...]:
@@ -99,24 +97,20 @@ class Exposures:
     def _cases(self, declaration: Declaration) -> "_Cases":
         numbers = _numbers(declaration)
         if numbers not in self._groups:
-            self._groups[numbers] = _Cases(numbers, self._shared)
+            self._groups[numbers] = _Cases(numbers, self._given)
         return self._groups[numbers]
 
 
 class _Cases:
     """The usages of the same numbers that were worked out so far."""
 
-    def __init__(self, numbers: Declaration, shared: Shared) -> None:
+    def __init__(self, numbers: Declaration, given: Given) -> None:
         self._numbers = numbers
-        self._shared = shared
-        found = self._given(numbers).peek(generator.order_length)
+        self._given = given.changed(numbers)
+        found = self._given.peek(generator.order_length)
         self._length = None if isinstance(found, Absent) else found
         self._worked: dict[tuple[str, int], tuple[tuple[_Figure, ...], frozenset[str]]] = {}
         self._exposures: dict[tuple[str, str, int, bool], tuple[Exposure, ...]] = {}
-
-    def _given(self, declaration: Declaration) -> Given:
-        shared = self._shared
-        return Given(declaration, shared.claims, shared.run, shared)
 
     def widths(self, declaration: Declaration) -> tuple[int, ...]:
         """The declared widths, and those to recommend: twice the required strength, twice the next
@@ -145,9 +139,9 @@ class _Cases:
         key = "membership" if closed else check, width
         if key not in self._worked:
             party = Party(EVERYBODY, width, "single" if closed else "static", CHECKS[key[0]])
-            given = self._given(replace(self._numbers, parties=(party,)))
-            figures = tuple(_figures(given))
-            self._worked[key] = figures, frozenset(given.consulted)
+            self._given = self._given.changed(replace(self._numbers, parties=(party,)))
+            figures = tuple(_figures(self._given))
+            self._worked[key] = figures, frozenset(self._given.consulted)
         return self._worked[key]
 
 

@@ -2,37 +2,27 @@
 
 Changes of the declaration are combined, least disruptive first, and the right half is run on each
 combination as if it were declared. The first with which the rule that was not met is met, or no
-longer applies, and no other major finding appears, is the remedy. Nothing is searched for: what is
-known of the same modulus is taken from the claims of the set, what is known of a standard group
-from the registry that prints it.
+longer applies, and no other major finding appears, is the remedy.
 """
 
-from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, replace
-from functools import cache
 from itertools import chain, product
 from types import MappingProxyType
 from typing import Any
 
 from auditor.advice import changes
 from auditor.advice.changes import Change, Draft
-from auditor.claims.base import Claim
+from auditor.advice.trials import Moves, SameNumbers, Trial
 from auditor.claims.collection import Claims
-from auditor.claims.factorization import Factorization
-from auditor.claims.order import Membership, Order
-from auditor.claims.origin_formula import Formula
-from auditor.claims.prime import Prime
 from auditor.declaration import Declaration
 from auditor.encoding import plain
-from auditor.facts import Established, establish, subgroup
+from auditor.facts import Established, subgroup
 from auditor.facts import parts as group_parts
 from auditor.facts.base import Absent
-from auditor.facts.given import Given, Shared
-from auditor.facts.registry import establish as fact_of
-from auditor.intake.standard_groups import StandardGroup, standard_groups
+from auditor.facts.given import Shared
 from auditor.rulebooks.findings import Finding
 from auditor.rulebooks.judging import Judgement, Judging, Position
-from auditor.run_values import RunValues
 
 MOST_CHANGES = 3
 """Changes put together in one remedy."""
@@ -42,7 +32,6 @@ MOST_GROUPS = 2
 for more."""
 
 GRADES = ("major", "minor", "observation")
-HELD = ("conforming", "not applicable")
 
 
 @dataclass(frozen=True, slots=True)
@@ -68,114 +57,47 @@ class Remedy:
         }
 
 
-@dataclass(frozen=True, slots=True)
-class _Effect:
-    """What the books say of a declaration that was changed."""
-
-    outcomes: Mapping[str, str]
-    majors: frozenset[str]
-    position: Position
-
-
 class Remedies:
-    """Chooses remedies for the findings of sets, from claims, run values and rulebooks.
+    """Chooses remedies for the findings of sets, from claims and rulebooks.
 
     Sets that differ in their use alone have their claims in common: ``known`` says which claims
     the sets were judged by.
     """
 
     def __init__(
-        self, claims: Claims, run: RunValues, judging: Judging, known: Iterable[Established]
+        self,
+        claims: Claims,
+        judging: Judging,
+        known: Iterable[Established],
+        shared: Shared,
+        moves: Moves,
     ) -> None:
         self._claims = claims
-        self._run = run
         self._judging = judging
+        self._shared = shared
+        self._moves = moves
         self._consulted: dict[tuple[object, ...], set[str]] = {}
         for item in known:
             ids = self._consulted.setdefault(item.declaration.numbers, set())
             ids |= item.consulted
-        self._groups: dict[tuple[object, ...], _SameNumbers] = {}
-        self._moved: dict[str, _Bench] = {}
-        self._found: dict[Declaration, Mapping[str, Remedy]] = {}
+        self._groups: dict[tuple[object, ...], SameNumbers] = {}
 
     def of(self, known: Established, judgement: Judgement) -> Mapping[str, Remedy]:
         """A remedy for each finding, by rule: the least disruptive that was found to remove it, or
         what its rule advises."""
-        same = known.declaration.nameless
-        if same not in self._found:
-            here, majors = _Here(self, known), _majors(judgement)
-            self._found[same] = {
-                finding.rule: here.remedy(finding, majors, judgement.position)
-                for finding in sorted(judgement.findings, key=_weight(judgement))
-            }
-        return self._found[same]
+        group = self._group(known.declaration.numbers)
+        here, majors = _Here(known.declaration, group, self._moves), _majors(judgement)
+        return {
+            finding.rule: here.remedy(finding, majors, judgement.position)
+            for finding in sorted(judgement.findings, key=_weight(judgement))
+        }
 
-    def group(self, declaration: Declaration) -> "_SameNumbers":
+    def _group(self, numbers: tuple[object, ...]) -> SameNumbers:
         """What sets with these numbers have in common."""
-        numbers = declaration.numbers
         if numbers not in self._groups:
             support = self._claims.support(sorted(self._consulted[numbers]))
-            self._groups[numbers] = _SameNumbers(support, self._run, self._judging)
+            self._groups[numbers] = SameNumbers(support, self._judging, self._shared)
         return self._groups[numbers]
-
-    def moved(self, group: StandardGroup) -> "_Bench":
-        """Where drafts that move to a standard group are judged."""
-        if group.name not in self._moved:
-            claims = registry_claims(group.name)
-            self._moved[group.name] = _Bench(claims, self._run, self._judging)
-        return self._moved[group.name]
-
-
-class _Bench:
-    """Judges drafts under the same claims, equal ones once."""
-
-    def __init__(self, claims: Claims, run: RunValues, judging: Judging) -> None:
-        self.shared = Shared(claims, run)
-        self._judging = judging
-        self._judged: dict[Declaration, _Effect] = {}
-
-    def meets(self, declaration: Declaration, rule: str) -> bool:
-        """Whether the declaration meets one rule, or the rule does not apply to it."""
-        shared = self.shared
-        given = Given(declaration, shared.claims, shared.run, shared)
-        return self._judging.outcome(rule, lambda name: fact_of(name, given)) in HELD
-
-    def effect(self, declaration: Declaration) -> _Effect:
-        """What the books say of the declaration."""
-        if declaration not in self._judged:
-            shared = self.shared
-            known = establish(declaration, shared.claims, shared.run, shared)
-            judgement = self._judging.judge(known.facts, known.absent)
-            effect = _Effect(judgement.outcomes, _majors(judgement), judgement.position)
-            self._judged[declaration] = effect
-        return self._judged[declaration]
-
-
-class _SameNumbers:
-    """What is known of sets with the same numbers, and the benches for drafts of them: one for
-    each order that a draft takes for known."""
-
-    def __init__(self, support: Sequence[Claim], run: RunValues, judging: Judging) -> None:
-        self._support = support
-        self._run = run
-        self._judging = judging
-        self._benches: dict[tuple[str, ...], _Bench] = {}
-
-    def given(self, declaration: Declaration) -> Given:
-        """The declaration with what is known."""
-        shared = self._bench(()).shared
-        return Given(declaration, shared.claims, shared.run, shared)
-
-    def bench(self, draft: Draft) -> _Bench:
-        """Where a draft that stays with the modulus is judged."""
-        return self._bench(tuple(_orders(draft, self._support)))
-
-    def _bench(self, orders: tuple[Claim, ...]) -> _Bench:
-        ids = tuple(claim.id for claim in orders)
-        if ids not in self._benches:
-            claims = Claims([*self._support, *orders])
-            self._benches[ids] = _Bench(claims, self._run, self._judging)
-        return self._benches[ids]
 
 
 def _weight(judgement: Judgement) -> Callable[[Finding], tuple[bool, int]]:
@@ -190,13 +112,14 @@ def _majors(judgement: Judgement) -> frozenset[str]:
 class _Here:
     """One set: its drafts in order of disruption, each judged once and only when it is reached."""
 
-    def __init__(self, remedies: Remedies, known: Established) -> None:
-        self._remedies = remedies
-        self._group = remedies.group(known.declaration)
-        self._document = known.declaration.document()
-        self._drafts = _drafts(_start(known.declaration, self._group))
-        self._made: list[Draft] = []
-        self._chosen: list[Draft] = []
+    def __init__(self, declaration: Declaration, group: SameNumbers, moves: Moves) -> None:
+        declaration = declaration.nameless
+        self._group = group
+        self._moves = moves
+        self._document = declaration.document()
+        self._drafts = _drafts(_start(declaration, group))
+        self._made: list[Trial] = []
+        self._chosen: list[Trial] = []
         self._written: dict[Declaration, Remedy] = {}
 
     def remedy(self, finding: Finding, majors: frozenset[str], position: Position) -> Remedy:
@@ -206,26 +129,21 @@ class _Here:
         and none undoes another.
         """
         if finding.outcome == "nonconforming":
-            for draft in chain(list(self._chosen), self._all()):
-                bench, declaration = self._bench(draft), draft.declaration.nameless
-                if not bench.meets(declaration, finding.rule):
-                    continue
-                effect = bench.effect(declaration)
-                if effect.majors <= majors - {finding.rule}:
-                    self._chosen.append(draft)
-                    return self._remedy(draft, effect.position, position)
+            for trial in chain(list(self._chosen), self._all()):
+                if trial.meets(finding.rule):
+                    effect = trial.effect
+                    if effect.majors <= majors - {finding.rule}:
+                        self._chosen.append(trial)
+                        return self._remedy(trial.draft, effect.position, position)
         return Remedy(finding.remedy)
 
-    def _all(self) -> Iterator[Draft]:
+    def _all(self) -> Iterator[Trial]:
         yield from list(self._made)
         for draft in self._drafts:
-            self._made.append(draft)
-            yield draft
-
-    def _bench(self, draft: Draft) -> _Bench:
-        if draft.group is None:
-            return self._group.bench(draft)
-        return self._remedies.moved(draft.group)
+            to = draft.group
+            bench = self._group.bench(draft) if to is None else self._moves.bench(to)
+            self._made.append(Trial(draft, bench))
+            yield self._made[-1]
 
     def _remedy(self, draft: Draft, after: Position, before: Position) -> Remedy:
         if draft.declaration not in self._written:
@@ -238,19 +156,7 @@ class _Here:
         return self._written[draft.declaration]
 
 
-def _orders(draft: Draft, support: Sequence[Claim]) -> Iterator[Claim]:
-    """What a draft takes from a claim or from the registry about the order of its generator."""
-    n, g, q = draft.declaration.modulus, draft.declaration.generator, draft.order
-    if q is None:
-        return
-    yield Membership(n, g % n, q, True)
-    if draft.moved:
-        primes = [c for c in support if isinstance(c, Prime) and c.n == q] or [assumed_prime(q)]
-        yield from primes
-        yield Order(n, g, ((q, 1),), 1, (primes[0].id,))
-
-
-def _start(declaration: Declaration, group: _SameNumbers) -> Draft:
+def _start(declaration: Declaration, group: SameNumbers) -> Draft:
     """The declaration as it is, with what is known of its group."""
     given = group.given(declaration)
     order = given.peek(group_parts.generator_order_value)
@@ -279,8 +185,11 @@ def _drafts(start: Draft) -> Iterator[Draft]:
     ]
     fit = [chosen for chosen in combinations if 0 < len(chosen) <= MOST_CHANGES]
     seen: set[Declaration] = set()
+    applied = _Applied(start)
     for chosen in sorted(fit, key=lambda chosen: (max(rank for rank, _ in chosen), len(chosen))):
-        draft = _applied(start, [change for _, change in chosen])
+        draft = applied(tuple(change for _, change in chosen))
+        if draft is not None and draft.group is not None:
+            draft = changes.fit_widths(draft) or draft
         if draft is not None and draft.declaration not in seen:
             seen.add(draft.declaration)
             yield draft
@@ -319,17 +228,19 @@ def _families(start: Draft) -> list[list[Ranked]]:
     return [*possible, [NO_CHANGE, (1, changes.fit_widths)]]
 
 
-def _applied(start: Draft, chosen: Sequence[Change]) -> Draft | None:
-    """The draft with these changes; None where one of them does not apply."""
-    draft = start
-    for change in chosen:
-        changed = change(draft)
-        if changed is None:
-            return None
-        draft = changed
-    if draft.group is not None:
-        draft = changes.fit_widths(draft) or draft
-    return draft
+class _Applied:
+    """Makes changes to a draft one after the other, equal beginnings once."""
+
+    def __init__(self, start: Draft) -> None:
+        self._made: dict[tuple[Change, ...], Draft | None] = {(): start}
+
+    def __call__(self, chosen: tuple[Change, ...]) -> Draft | None:
+        """The draft with these changes; None where one of them does not apply."""
+        if chosen not in self._made:
+            *before, change = chosen
+            draft = self(tuple(before))
+            self._made[chosen] = None if draft is None else change(draft)
+        return self._made[chosen]
 
 
 def _patch(document: Mapping[str, Any], draft: Draft) -> dict[str, Any]:
@@ -349,28 +260,3 @@ def patched(document: Mapping[str, Any], patch: Mapping[str, Any]) -> dict[str, 
     """A set of a declaration document with a patch put in."""
     merged = {**document, **patch}
     return {key: value for key, value in merged.items() if value is not None}
-
-
-def assumed_prime(n: int) -> Prime:
-    """What the registry is believed to say of a number; never part of a report."""
-    return Prime(n, "baillie-psw", rounds=64)
-
-
-@cache
-def registry_claims(name: str) -> Claims:
-    """What a standard safe-prime group is, as its document prints it: assumed, as an answer of the
-    owner would be; a review of the changed declaration establishes it anew."""
-    (group,) = (group for group in standard_groups() if group.name == name)
-    return Claims(_printed(group))
-
-
-def _printed(group: StandardGroup) -> Iterator[Claim]:
-    n, q = group.modulus, group.subgroup_order
-    primes = [Prime(2, "below-2^64"), assumed_prime(q), assumed_prime(n)]
-    yield from primes
-    two, half, _ = (prime.id for prime in primes)
-    yield Factorization(n - 1, ((2, 1), (q, 1)), 1, tuple(sorted((two, half))))
-    yield Order(n, group.generator, ((q, 1),), 1, (half,))
-    yield Membership(n, group.generator, q, True)
-    if group.formula is not None:
-        yield Formula(n, group.formula.constant, group.formula.offset)

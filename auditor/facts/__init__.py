@@ -56,7 +56,11 @@ def establish(
 
     ``shared`` saves what declarations with the same claims and run values have in common.
     """
-    given = Given(declaration, claims, run, shared)
+    return established(declaration, Given(declaration, claims, run, shared))
+
+
+def established(declaration: Declaration, given: Given) -> Established:
+    """All facts about the declaration that is given."""
     facts: dict[str, Fact] = {}
     absent: dict[str, Absent] = {}
     for name in vocabulary():

@@ -6,8 +6,8 @@ function has to say how sure it is, and none can forget to. What it needs and do
 it with :class:`Missing`; a fact built on it is then absent for the same reason.
 """
 
-from collections.abc import Callable
-from dataclasses import dataclass, field
+from collections.abc import Callable, Mapping
+from dataclasses import fields
 from math import gcd
 from typing import Any, NoReturn, TypeVar, cast
 
@@ -18,24 +18,20 @@ from auditor.claims.prime import Prime
 from auditor.claims.standing import Standing, weakest
 from auditor.declaration import Declaration
 from auditor.facts.base import Absent
+from auditor.facts.shared import Answer, Lookup, Part, Read, Seen, Shared, Trace, narrow
 from auditor.questions import Asks, Question
 from auditor.run_values import RunValues
+
+__all__ = ["Given", "Missing", "Part", "Seen", "Shared", "narrow"]
 
 Value = TypeVar("Value")
 Default = TypeVar("Default")
 
-Part = Callable[["Given"], object]
-Key = str | Part
-"""What an outcome depends on: a key of the declaration, or the outcome of a narrow part."""
 
-_narrow: set[Part] = set()
-
-
-def narrow(part: Callable[["Given"], Value]) -> Callable[["Given"], Value]:
-    """Mark a part that reads much and says little: what builds on it depends on its outcome alone,
-    not on all that it read. Its values are hashable."""
-    _narrow.add(part)
-    return part
+_BITS = {item.name: 2 << place for place, item in enumerate(fields(Declaration))}
+_BITS["required_bits"] = 2 << len(_BITS)
+_ANYTHING = 1
+"""Whatever else is read of a declaration; it is taken to differ."""
 
 
 class Missing(Exception):
@@ -44,105 +40,6 @@ class Missing(Exception):
     def __init__(self, absent: Absent) -> None:
         super().__init__(absent.reason)
         self.absent = absent
-
-
-@dataclass(slots=True)
-class Trace:
-    """What a value rests on."""
-
-    claims: set[str] = field(default_factory=set)
-    rests_on: set[str] = field(default_factory=set)
-    questions: set[Question] = field(default_factory=set)
-    loose: bool = False
-
-    def merge(self, other: "Trace") -> None:
-        """Add what another value rests on."""
-        self.claims |= other.claims
-        self.rests_on |= other.rests_on
-        self.questions |= other.questions
-        self.loose |= other.loose
-
-
-@dataclass(slots=True)
-class Looked:
-    """What was looked at on the way to a value, rested on or not: keys, and the ids of claims. Two
-    declarations that agree in these keys have the same value."""
-
-    keys: set[Key] = field(default_factory=set)
-    consulted: set[str] = field(default_factory=set)
-
-    def merge(self, other: "Looked") -> None:
-        """Add what was looked at on the way to another value."""
-        self.keys |= other.keys
-        self.consulted |= other.consulted
-
-
-@dataclass(slots=True)
-class Seen:
-    """The outcome of a part, with what it rests on and what was looked at; ``fact`` is for the
-    registry to keep what it makes of it."""
-
-    value: object
-    trace: Trace
-    looked: Looked
-    fact: object = None
-
-    @property
-    def content(self) -> tuple[object, ...]:
-        """All that makes a difference to whatever builds on it."""
-        trace = self.trace
-        return (
-            self.value,
-            frozenset(trace.claims),
-            frozenset(trace.rests_on),
-            frozenset(trace.questions),
-            trace.loose,
-            frozenset(self.looked.consulted),
-        )
-
-
-class Shared:
-    """Outcomes of parts under the same claims and run values, each computed once for all
-    declarations that agree in what the part looked at.
-
-    Claims that come make everything here void; it is then forgotten.
-    """
-
-    def __init__(self, claims: Claims, run: RunValues) -> None:
-        self.claims = claims
-        self.run = run
-        self._size = len(claims)
-        self._numbers: dict[Key, dict[object, int]] = {}
-        self._seen: dict[Part, dict[tuple[Key, ...], dict[tuple[int, ...], Seen]]] = {}
-
-    def refresh(self) -> None:
-        """Forget what was seen if claims have come since."""
-        if self._size != len(self.claims):
-            self._size = len(self.claims)
-            self._seen.clear()
-
-    def number(self, key: Key, value: object) -> int:
-        """A small number that stands for this value of the key."""
-        numbers = self._numbers.setdefault(key, {})
-        return numbers.setdefault(value, len(numbers))
-
-    def recall(self, part: Part, number_of: Callable[[Key], int]) -> Seen | None:
-        """The outcome of the part for a declaration whose keys have these numbers."""
-        for keys, outcomes in self._seen.get(part, {}).items():
-            seen = outcomes.get(tuple(map(number_of, keys)))
-            if seen is not None:
-                return seen
-        return None
-
-    def keep(self, part: Part, seen: Seen, number_of: Callable[[Key], int]) -> None:
-        """Keep an outcome for other declarations."""
-        keys = tuple(sorted(seen.looked.keys, key=_spelling))
-        outcomes = self._seen.setdefault(part, {}).setdefault(keys, {})
-        outcomes[tuple(map(number_of, keys))] = seen
-
-
-def _spelling(key: Key) -> str:
-    return key if isinstance(key, str) else f"{key.__module__}.{key.__qualname__}"
 
 
 class Given:
@@ -156,27 +53,40 @@ class Given:
         shared: Shared | None = None,
     ) -> None:
         self.run = run
-        self._shared = Shared(claims, run) if shared is None else shared
-        if self._shared.claims is not claims or self._shared.run is not run:
-            raise ValueError("what is shared was seen under other claims or run values")
-        self._shared.refresh()
+        self._shared = Shared(run) if shared is None else shared
+        if self._shared.run is not run:
+            raise ValueError("what is shared was seen under other run values")
         self._claims = claims
         self._declaration = declaration
-        self._numbers: dict[Key, int] = {}
         self._known: dict[Part, Seen] = {}
-        self._traces: list[Trace] = [Trace()]
-        self._looked: list[Looked] = [Looked()]
-        self._reader = cast(Declaration, _Reader(declaration, self._looked))
+        self._traces = [Trace()]
+        self._reads: list[dict[Read, Answer]] = [{}]
+        self._declaration_reader = cast(Declaration, _DeclarationReader(declaration, self._reads))
+        self._claims_reader = _ClaimsReader(claims, self._reads)
 
     @property
     def declaration(self) -> Declaration:
         """What was declared; whatever is read of it is noted."""
-        return self._reader
+        return self._declaration_reader
+
+    @property
+    def claims(self) -> Claims:
+        """The claims; whatever is looked up in them is noted. A part must :meth:`cite` what it
+        uses."""
+        return cast(Claims, self._claims_reader)
 
     @property
     def consulted(self) -> set[str]:
         """Ids of all claims looked at."""
-        return self._looked[0].consulted
+        return _consulted(self._traces[0], self._reads[0])
+
+    def changed(self, declaration: Declaration) -> "Given":
+        """Another declaration with the same claims: what was seen here is kept, unless it read
+        something that differs."""
+        other = Given(declaration, self._claims, self.run, self._shared)
+        differ = _differ(self._declaration, declaration)
+        other._known = {part: seen for part, seen in self._known.items() if not seen.keys & differ}
+        return other
 
     def see(self, part: Callable[["Given"], Value]) -> Value:
         """The value of ``part``, computed once; what it rests on, the caller rests on too."""
@@ -188,46 +98,35 @@ class Given:
         return seen.value  # type: ignore[return-value]
 
     def outcome(self, part: Part) -> Seen:
-        """The outcome of ``part``: its value, or its absence. The caller has looked at whatever was
-        looked at on the way."""
-        seen = self._seen(part)
-        looked = self._looked[-1]
-        if part in _narrow:
-            looked.keys.add(part)
-            looked.consulted |= seen.looked.consulted
-        else:
-            looked.merge(seen.looked)
+        """The outcome of ``part``: its value, or its absence. The caller has consulted whatever was
+        consulted on the way."""
+        seen = self._reads[-1][part] = self._known.get(part) or self._seen(part)
         return seen
 
     def _seen(self, part: Part) -> Seen:
-        seen = self._known.get(part) or self._shared.recall(part, self._number)
-        if seen is None:
-            seen = self._work_out(part)
-            self._shared.keep(part, seen, self._number)
+        seen = self._shared.recall(part, self._answer) or self._work_out(part)
         self._known[part] = seen
         return seen
 
     def _work_out(self, part: Part) -> Seen:
         self._traces.append(Trace())
-        self._looked.append(Looked())
+        self._reads.append({})
         value: object
         try:
             value = part(self)
         except Missing as missing:
             value = missing.absent
         finally:
-            trace, looked = self._traces.pop(), self._looked.pop()
-        return Seen(value, trace, looked)
+            trace, reads = self._traces.pop(), self._reads.pop()
+        seen = Seen(value, trace, _consulted(trace, reads), _keys(reads))
+        return self._shared.keep(part, reads, seen)
 
-    def _number(self, key: Key) -> int:
-        number = self._numbers.get(key)
-        if number is None:
-            value = self._read(key) if isinstance(key, str) else self._seen(key).content
-            number = self._numbers[key] = self._shared.number(key, value)
-        return number
-
-    def _read(self, key: str) -> object:
-        return getattr(self._declaration, key)
+    def _answer(self, read: Read) -> Answer:
+        if isinstance(read, str):
+            return getattr(self._declaration, read)
+        if isinstance(read, tuple):
+            return _ids(self._claims_reader.find(read))
+        return self._known.get(read) or self._seen(read)
 
     def see_or(self, part: Callable[["Given"], Value], default: Default) -> Value | Default:
         """The value of ``part`` or, where it is absent, ``default``.
@@ -273,7 +172,6 @@ class Given:
     def cite(self, claim: Claim) -> None:
         """Say that the value in the making rests on ``claim``."""
         self._traces[-1].claims.add(claim.id)
-        self._looked[-1].consulted.add(claim.id)
 
     def word(self, key: str) -> str | int:
         """The declared word for ``key``; absent as ``undeclared`` where there is none."""
@@ -303,7 +201,7 @@ class Given:
         """Whether ``n`` is prime, by a claim."""
         if n < 2:
             return False
-        claim = self._claims.prime(n)
+        claim = self.claims.prime(n)
         if claim is None:
             self.unsettled(Question(Asks.PRIMALITY, (n,)))
         self.cite(claim)
@@ -311,7 +209,7 @@ class Given:
 
     def is_member(self, n: int, element: int, exponent: int) -> bool:
         """Whether element^exponent = 1 modulo ``n``, by a claim."""
-        claim = self._claims.membership(n, element, exponent)
+        claim = self.claims.membership(n, element, exponent)
         if claim is None:
             self.unsettled(Question(Asks.MEMBERSHIP, (n, element, exponent)))
         self.cite(claim)
@@ -322,7 +220,7 @@ class Given:
     ) -> Factorization:
         """The most complete factorization of ``m``, by a claim; loose while a rest is left, with
         ``deeper`` as the question that is then open."""
-        claim = self._claims.factorization(m)
+        claim = self.claims.factorization(m)
         if claim is None or any(1 < gcd(hint, claim.rest) < claim.rest for hint in hints):
             self.unsettled(Question(Asks.SMALL_FACTORS, (m, *hints)))
         self.cite(claim)
@@ -330,22 +228,72 @@ class Given:
             self.loosen(Question(deeper, (m, claim.rest)))
         return claim
 
-    @property
-    def claims(self) -> Claims:
-        """The claims themselves, for the few facts that need more than the questions above; they
-        must :meth:`cite` what they use."""
-        return self._claims
 
-
-class _Reader:
+class _DeclarationReader:
     """A declaration that notes which of its keys are read."""
 
-    __slots__ = ("_declaration", "_looked")
+    __slots__ = ("_declaration", "_reads")
 
-    def __init__(self, declaration: Declaration, looked: list[Looked]) -> None:
+    def __init__(self, declaration: Declaration, reads: list[dict[Read, Answer]]) -> None:
         self._declaration = declaration
-        self._looked = looked
+        self._reads = reads
 
     def __getattr__(self, key: str) -> Any:
-        self._looked[-1].keys.add(key)
-        return getattr(self._declaration, key)
+        value = self._reads[-1][key] = getattr(self._declaration, key)
+        return value
+
+
+class _ClaimsReader:
+    """Claims that note what is looked up in them."""
+
+    __slots__ = ("_claims", "_found", "_reads")
+
+    def __init__(self, claims: Claims, reads: list[dict[Read, Answer]]) -> None:
+        self._claims = claims
+        self._reads = reads
+        self._found: dict[Lookup, object] = {}
+
+    def __getattr__(self, name: str) -> Any:
+        def look_up(*asked: object, **values: object) -> object:
+            lookup = name, asked, tuple(sorted(values.items()))
+            found = self.find(lookup)
+            self._reads[-1][lookup] = _ids(found)
+            return found
+
+        return look_up
+
+    def find(self, lookup: Lookup) -> object:
+        """What the claims say."""
+        if lookup not in self._found:
+            name, asked, values = lookup
+            self._found[lookup] = getattr(self._claims, name)(*asked, **dict(values))
+        return self._found[lookup]
+
+
+def _consulted(trace: Trace, reads: Mapping[Read, Answer]) -> set[str]:
+    """Ids of the claims cited, and of those consulted for the parts that were read."""
+    return trace.claims.union(*(s.consulted for s in reads.values() if isinstance(s, Seen)))
+
+
+def _keys(reads: Mapping[Read, Answer]) -> int:
+    """The keys of the declaration that were read here, and for the parts that were read."""
+    keys = 0
+    for read, answer in reads.items():
+        if isinstance(answer, Seen):
+            keys |= answer.keys
+        elif isinstance(read, str):
+            keys |= _BITS.get(read, _ANYTHING)
+    return keys
+
+
+def _differ(one: Declaration, other: Declaration) -> int:
+    """The keys in which two declarations differ."""
+    bits = [bit for key, bit in _BITS.items() if getattr(one, key) != getattr(other, key)]
+    return sum(bits, _ANYTHING)
+
+
+def _ids(found: object) -> Answer:
+    """What was looked up, by the ids of the claims."""
+    if isinstance(found, Claim):
+        return found.id
+    return tuple(map(_ids, found)) if isinstance(found, tuple) else found

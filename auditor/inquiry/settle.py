@@ -82,7 +82,7 @@ class _Inquiry:
         self._progress = progress
         self._recall = recall
         self._asked: set[Question] = set()
-        self._shared = Shared(answers.claims, run)
+        self._shared = Shared(run)
 
     def pursue(self, declarations: Sequence[Declaration]) -> None:
         """Rounds of questions about these sets, the cheap ones exhausted before a deep one is

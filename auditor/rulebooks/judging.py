@@ -5,7 +5,8 @@ requirement is true is conforming even while it is open whether it applies. A ru
 absent fact is undetermined, never conforming.
 """
 
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Container, Iterable, Iterator, Mapping, Sequence
+from copy import copy
 from dataclasses import dataclass
 from typing import Literal, TypeVar
 
@@ -18,8 +19,12 @@ from auditor.rulebooks.rulebook import Grade, Outcome, Rule, Rulebook
 Position = Literal["hold", "open", "conditions", "no objection"]
 Value = TypeVar("Value")
 
+Known = Callable[[str], Fact | Absent]
+"""Tells what is known of a fact."""
+
 _HOLDS = Decision(Verdict.TRUE)
 _IDLE = (Verdict.FALSE, Verdict.UNDEFINED)
+_REPORTED = ("nonconforming", "undetermined")
 _SHUT: tuple[Outcome, tuple[str, ...]] = ("not applicable", ())
 
 
@@ -57,12 +62,12 @@ class Judgement:
 
 
 @dataclass(frozen=True, slots=True)
-class _Ruled:
-    """What one rule says: its outcome, the facts it waits for, the finding if it is one."""
+class Brief:
+    """What the rulebooks say of one set in brief: its position, and the rules with a major finding,
+    nonconforming or undetermined."""
 
-    outcome: Outcome
-    missing: tuple[str, ...]
-    finding: Finding | None
+    position: Position
+    majors: frozenset[str]
 
 
 class _Look:
@@ -105,56 +110,64 @@ class _Remembered:
 
 
 class Judging:
-    """Rulebooks at work on many sets. What a rule says depends on the facts that it names or shows,
-    and is worked out once for all sets that hold the very same ones."""
+    """Rulebooks at work on many sets. An outcome depends on the facts that its rule names, a
+    finding on those that it shows as well: each is worked out once for all sets that hold the very
+    same ones."""
 
     def __init__(self, books: Sequence[Rulebook], vocabulary: Vocabulary) -> None:
         self.books = tuple(books)
         self._vocabulary = vocabulary
         self._remembered = _Remembered()
-        self._named = {rule.id: facts_of(rule) for book in books for rule in book.rules}
-        self._book_of = {rule.id: book for book in books for rule in book.rules}
+        rules = [(book, rule) for book in books for rule in book.rules]
+        self._named = {rule.id: rule.names for _, rule in rules}
+        self._shown = {rule.id: facts_of(rule) for _, rule in rules}
+        self._rules = {rule.id: (book, rule) for book, rule in rules}
+        self._all_named = facts_named(books)
+
+    def afresh(self) -> "Judging":
+        """The same books with nothing remembered, for sets that hold none of the same facts."""
+        other = copy(self)
+        other._remembered = _Remembered()
+        return other
 
     def judge(self, facts: Mapping[str, Fact], absent: Mapping[str, Absent]) -> Judgement:
         """The judgement of one set; ValueError for facts outside the vocabulary."""
         look = _Look(facts, absent, self._vocabulary)
         outcomes: dict[str, Outcome] = {}
         findings: list[Finding] = []
-        left_out: list[BookLeftOut] = []
-        for book in self.books:
-            gate = self._gate(book, look)
-            if gate.verdict is Verdict.OPEN:
-                left_out.append(_left_out(book, gate, look.view))
-                continue
-            for rule in book.rules:
-                if gate.verdict in _IDLE:
-                    outcomes[rule.id] = "not applicable"
-                    continue
-                ruled = self._ruled(book, rule, look)
-                outcomes[rule.id] = ruled.outcome
-                if ruled.finding is not None:
-                    findings.append(ruled.finding)
+        for book, rule, outcome, missing in self._outcomes(look):
+            outcomes[rule.id] = outcome
+            if outcome in _REPORTED:
+                findings.append(self._finding(book, rule, missing, look))
+        gates = [(book, self._gate(book, look)) for book in self.books]
+        left_out = [
+            _left_out(book, gate, look.view) for book, gate in gates if gate.verdict is Verdict.OPEN
+        ]
         position, decided_by = _position(findings, [book.name for book in self.books])
-        if all(outcome == "not applicable" for outcome in outcomes.values()):
-            # No requirement was looked at, and a check that was not made is never a pass.
+        if _nothing_applies(outcomes.values()):
             position = "open"
         return Judgement(outcomes, tuple(findings), tuple(left_out), position, decided_by)
 
-    def outcome(self, rule: str, given: Callable[[str], Fact | Absent]) -> Outcome:
-        """What one rule says, looking at nothing but the facts that decide it; ``given`` tells
-        each. A rule of a book that is left out is not applicable."""
-        book = self._book_of[rule]
-        names = (*(book.gate.names if book.gate else ()), *self._named[rule])
-        known = {name: given(name) for name in names}
-        look = _Look(
-            {name: item for name, item in known.items() if isinstance(item, Fact)},
-            {name: item for name, item in known.items() if isinstance(item, Absent)},
-            self._vocabulary,
-        )
+    def brief(self, given: Known) -> Brief:
+        """The judgement of one set in brief, from the facts that conditions name alone."""
+        look = self._look(self._all_named, given)
+        outcomes = [(rule, outcome) for _, rule, outcome, _ in self._outcomes(look)]
+        found = [(rule, outcome) for rule, outcome in outcomes if outcome in _REPORTED]
+        level = _level({(rule.grade, outcome) for rule, outcome in found})
+        position: Position = level[0] if level else "no objection"
+        if _nothing_applies(outcome for _, outcome in outcomes):
+            position = "open"
+        return Brief(position, frozenset(rule.id for rule, _ in found if rule.grade == "major"))
+
+    def outcome(self, rule_id: str, given: Known) -> Outcome:
+        """What one rule says, looking at nothing but the facts that decide it. A rule of a book
+        that is left out is not applicable."""
+        book, rule = self._rules[rule_id]
+        names = (*(book.gate.names if book.gate else ()), *self._named[rule_id])
+        look = self._look(names, given)
         if self._gate(book, look).verdict is not Verdict.TRUE:
             return "not applicable"
-        (found,) = (item for item in book.rules if item.id == rule)
-        return self._ruled(book, found, look).outcome
+        return self._outcome(rule, look)[0]
 
     def facts_in_use(
         self, facts: Mapping[str, Fact], absent: Mapping[str, Absent]
@@ -171,7 +184,7 @@ class Judging:
             gate = self._gate(book, look)
             wanted.update(gate.missing)
             for rule in book.rules if gate.verdict is Verdict.TRUE else ():
-                wanted.update(self._ruled(book, rule, look).missing)
+                wanted.update(self._outcome(rule, look)[1])
         return tuple(sorted(name for name in wanted if not _is_undefined(name, absent)))
 
     def _gate(self, book: Rulebook, look: _Look) -> Decision:
@@ -182,15 +195,36 @@ class Judging:
             f"gate of {book.name}", look.held(gate.names), lambda: gate.decide(look.view)
         )
 
-    def _ruled(self, book: Rulebook, rule: Rule, look: _Look) -> _Ruled:
-        def make() -> _Ruled:
-            outcome, missing = evaluate(rule, look.view)
-            finding = None
-            if outcome in ("nonconforming", "undetermined"):
-                finding = finding_of(book, rule, missing, look.view)
-            return _Ruled(outcome, missing, finding)
+    def _look(self, names: Iterable[str], given: Known) -> _Look:
+        known = {name: given(name) for name in names}
+        return _Look(
+            {name: item for name, item in known.items() if isinstance(item, Fact)},
+            {name: item for name, item in known.items() if isinstance(item, Absent)},
+            self._vocabulary,
+        )
 
-        return self._remembered.get(rule.id, look.held(self._named[rule.id]), make)
+    def _outcomes(self, look: _Look) -> Iterator[tuple[Rulebook, Rule, Outcome, tuple[str, ...]]]:
+        """Every rule with its outcome and what it waits for, but those of the books left out."""
+        for book in self.books:
+            verdict = self._gate(book, look).verdict
+            if verdict is not Verdict.OPEN:
+                for rule in book.rules:
+                    shut = verdict in _IDLE
+                    yield (book, rule, *(_SHUT if shut else self._outcome(rule, look)))
+
+    def _outcome(self, rule: Rule, look: _Look) -> tuple[Outcome, tuple[str, ...]]:
+        return self._remembered.get(
+            rule.id, look.held(self._named[rule.id]), lambda: evaluate(rule, look.view)
+        )
+
+    def _finding(
+        self, book: Rulebook, rule: Rule, missing: tuple[str, ...], look: _Look
+    ) -> Finding:
+        return self._remembered.get(
+            f"finding of {rule.id}",
+            look.held(self._shown[rule.id]),
+            lambda: finding_of(book, rule, missing, look.view),
+        )
 
 
 def judge(
@@ -261,28 +295,42 @@ def _left_out(book: Rulebook, gate: Decision, view: View) -> BookLeftOut:
     return BookLeftOut(book.name, f"its gate is not decided. {reasons(missing, view)}", missing)
 
 
+def _nothing_applies(outcomes: Iterable[Outcome]) -> bool:
+    """Whether no requirement was looked at: a check that was not made is never a pass."""
+    return all(outcome == "not applicable" for outcome in outcomes)
+
+
 def _is_undefined(name: str, absent: Mapping[str, Absent]) -> bool:
     return name in absent and absent[name].reason == "undefined"
 
 
+_LEVELS: tuple[tuple[Position, Grade, Outcome], ...] = (
+    ("hold", "major", "nonconforming"),
+    ("open", "major", "undetermined"),
+    ("conditions", "minor", "nonconforming"),
+    ("conditions", "minor", "undetermined"),
+)
+
+
+def _level(
+    found: Container[tuple[Grade, Outcome]],
+) -> tuple[Position, Grade, Outcome] | None:
+    """The first position that holds for such findings, and which of them lead to it."""
+    return next((level for level in _LEVELS if level[1:] in found), None)
+
+
 def _position(findings: Sequence[Finding], books: Sequence[str]) -> tuple[Position, Finding | None]:
-    """The first position that holds, and the finding that decides it.
+    """The position, and the finding that decides it.
 
     Among the findings that alike lead to the position the deciding one is of the first book; in
     it, of the nonconforming ones that show the work of an attack, the one with the least; then
     the first.
     """
-    levels: tuple[tuple[Position, Grade, str], ...] = (
-        ("hold", "major", "nonconforming"),
-        ("open", "major", "undetermined"),
-        ("conditions", "minor", "nonconforming"),
-        ("conditions", "minor", "undetermined"),
-    )
-    for position, grade, outcome in levels:
-        at_level = [f for f in findings if (f.grade, f.outcome) == (grade, outcome)]
-        if at_level:
-            return position, min(at_level, key=lambda f: (books.index(f.book), _shown_work(f)))
-    return "no objection", None
+    level = _level({(finding.grade, finding.outcome) for finding in findings})
+    if level is None:
+        return "no objection", None
+    at_level = [f for f in findings if (f.grade, f.outcome) == level[1:]]
+    return level[0], min(at_level, key=lambda f: (books.index(f.book), _shown_work(f)))
 
 
 def _shown_work(finding: Finding) -> float:
