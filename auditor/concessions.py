@@ -225,7 +225,7 @@ def worse_when(name: str) -> Worse | None:
         return "lower"
     if name == "scheme.forgery_bits_at_most":
         return "lower"
-    if "leak" in rest or name in ("modulus.occurrences", "group.missed_factor_risk_at_most"):
+    if "leak" in rest or name in ("modulus.occurrences", "group.missed_factor_risk"):
         return "higher"
     return "higher" if rest in ("special_form_seen", "distinguisher_seen", "forgery_seen") else None
 

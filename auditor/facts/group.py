@@ -8,7 +8,7 @@ from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.facts.registry import fact
 from auditor.routes.base import floor_bits
-from auditor.search.expected_curves import missed_factor_risk, searched_digits
+from auditor.search import expected_curves
 from auditor.search.work import Work
 
 FIRST_BITS = 20
@@ -75,7 +75,7 @@ def _search_record(given: Given) -> Work:
     "probability 1/e at most",
 )
 def searched(given: Given) -> int:
-    return searched_digits(given.see(_search_record))
+    return expected_curves.searched_digits(given.see(_search_record))
 
 
 def risk_window(given: Given) -> tuple[int, int]:
@@ -97,9 +97,10 @@ def risk_window(given: Given) -> tuple[int, int]:
     "group.missed_factor_window",
     "exhibit",
     "the sizes in bits, from and to, of a missed factor that would bring an attack below the "
-    "requirement",
+    "requirement, as far as is known; none once no factor would",
 )
 def missed_factor_window(given: Given) -> tuple[int, int]:
+    """Of the search so far, like the risk."""
     given.see(_search_record)
     window = given.see(risk_window)
     given.settle()
@@ -107,12 +108,18 @@ def missed_factor_window(given: Given) -> tuple[int, int]:
 
 
 @fact(
-    "group.missed_factor_risk_at_most",
-    "real",
-    "chance that a factor in that window was missed, if the modulus was not chosen adversarially",
+    "group.missed_factor_risk",
+    "exhibit",
+    "chance, as the search stands, that a factor in that window was missed, if the modulus was not "
+    "chosen adversarially",
 )
-def missed_factor_risk_at_most(given: Given) -> float:
+def missed_factor_risk(given: Given) -> float:
+    """No bound: a rest that stays composite under more curves, or becomes shorter by a factor, is
+    the likelier to hold another one, so knowing more moves it either way."""
     rest = given.see(parts.exponent_factors).rest
     window = given.see(risk_window)
-    risk = missed_factor_risk(given.see(_search_record), window, rest.bit_length()).risk
+    risk = expected_curves.missed_factor_risk(
+        given.see(_search_record), window, rest.bit_length()
+    ).risk
+    given.settle()
     return ceil(risk * 1000) / 1000

@@ -206,7 +206,7 @@ def _limits(record: Record) -> Iterator[str]:
             f"Prime factors of up to {digits['value']} decimal digits were searched for; larger "
             "ones may exist."
         )
-    if risk := facts.get("group.missed_factor_risk_at_most"):
+    if risk := facts.get("group.missed_factor_risk"):
         yield (
             "By the model of the search the chance that it missed a factor that would lower a "
             f"figure further is at most {risk['value']:.2g}: an upper bound, no estimate, and only "

@@ -1,7 +1,9 @@
 """More claims only add and tighten: facts, bounds, outcomes; stricter usage is never weaker."""
 
 import random
+import secrets
 from functools import cache
+from math import prod
 
 import pytest
 import sympy
@@ -9,13 +11,20 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from auditor.claims.collection import Claims
+from auditor.claims.composite import Composite
+from auditor.claims.factorization import Factorization
 from auditor.claims.origin_formula import formula
+from auditor.claims.prime import Prime
+from auditor.claims.searched import Searched
 from auditor.declaration import Declaration
 from auditor.facts import Established, vocabulary
+from auditor.inquiry.answers import Answers
+from auditor.questions import Asks, Question
 from auditor.rulebooks.judging import judge
 from auditor.rulebooks.loading import load_all
 from auditor.rulebooks.rulebook import Rulebook
-from tests.facts.knowledge import declare, known, partial_claims, reviewed, settled, some
+from auditor.search.work import Curves, Work
+from tests.facts.knowledge import RUN, declare, known, partial_claims, reviewed, settled, some
 
 PRIMES = (
     *(sympy.prevprime(1 << bits) for bits in range(8, 44, 3)),
@@ -72,9 +81,15 @@ def test_more_claims_only_add_and_tighten(declaration: Declaration, seed: int) -
     only_adds_and_tightens(known(declaration, fewer), known(declaration, more))
 
 
+OF_THE_SEARCH = ("group.missed_factor_risk", "group.missed_factor_window")
+"""They tell how a search stands, and end with what it was for."""
+
+
 def only_adds_and_tightens(before: Established, after: Established) -> None:
     """What more claims may do to facts and outcomes."""
     for name, fact in before.facts.items():
+        if name in OF_THE_SEARCH:
+            continue
         assert name in after.facts, name
         now, word = after.facts[name], vocabulary()[name]
         if word.bound is None or fact.tight:
@@ -93,6 +108,31 @@ def only_adds_and_tightens(before: Established, after: Established) -> None:
         # A requirement that holds is conforming even while it is open whether the rule applies.
         stays = {outcome, "not applicable"} if outcome == "conforming" else {outcome}
         assert outcome == "undetermined" or late[rule] in stays, rule
+
+
+def test_what_a_search_may_have_missed_is_no_bound() -> None:
+    """It ends when the order of the generator is known, and no bound ends with it."""
+    q, rest = (1 << 89) - 1, (sympy.nextprime(1 << 61), sympy.nextprime(1 << 63))
+    c = next(c for c in range(2, 2000, 2) if sympy.isprime(c * q * rest[0] * rest[1] + 1))
+    n = c * q * rest[0] * rest[1] + 1
+    declaration = declare(n, pow(2, (n - 1) // q, n), subgroup_order=q, use="single")
+    answers = Answers(Claims(), RUN, secrets.randbelow, lambda claims: None)
+    found = tuple(sorted([*sympy.factorint(c).items(), (q, 1)]))
+    support = [answers.settle_primality(prime) for prime, _ in found]
+    support.append(Composite(prod(rest), factor=rest[0]))
+    search = Searched(prod(rest), "own", Work(curves=(Curves(2000, 147396, 25),)).runs())
+    uses = tuple(sorted(claim.id for claim in support))
+    partial = Factorization(n - 1, found, prod(rest), uses)
+    answers.claims.add([*support, Prime(n, "baillie-psw", rounds=64), search, partial])
+    before = known(declaration, Claims(answers.claims))
+    answers.answer(Question(Asks.MEMBERSHIP, (n, declaration.generator, q)))
+    answers.answer(Question(Asks.ORDER, (n, declaration.generator, q, 1)))
+    after = known(declaration, answers.claims)
+
+    assert set(OF_THE_SEARCH) <= before.facts.keys()
+    assert not set(OF_THE_SEARCH) & after.facts.keys()
+    assert all(vocabulary()[name].kind == "exhibit" for name in OF_THE_SEARCH)
+    only_adds_and_tightens(before, after)
 
 
 @cache
