@@ -25,6 +25,7 @@ from auditor.review import census, reading_of
 from auditor.rulebooks.loading import available, load_all
 from auditor.rulebooks.rulebook import Rulebook, RulebookError
 from auditor.run_values import RunValues
+from auditor.search_extent import SEARCHES, shortfalls
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +84,8 @@ def verify(
         return Verification((f"the report cannot be drawn again: {error}",), claims=len(claims))
     if other := _other_books(report, again):
         return Verification((), tuple(other), len(claims))
-    return Verification(tuple(differences(again, report)), claims=len(claims))
+    failures = differences(again, report) or _shortfalls(report, claims, books)
+    return Verification(tuple(failures), claims=len(claims))
 
 
 def _repeated(report: Mapping[str, Any]) -> Iterator[str]:
@@ -125,6 +127,22 @@ def _too_few_rounds(claims: Claims, rounds: int) -> list[str]:
 
 def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> dict[str, Any]:
     """The record that the declarations and claims in the report lead to."""
+    declarations, values, rulebooks = _premises(report, books)
+    reading = Reading(
+        declarations,
+        tuple(report["inputs"]),
+        tuple(report["errors"]),
+        tuple(report["skipped"]),
+        tuple(report["notices"]),
+    )
+    return build(reading, claims, values, rulebooks, report["run"]["fail_on"])
+
+
+Premises = tuple[tuple[Declaration, ...], RunValues, tuple[Rulebook, ...]]
+
+
+def _premises(report: Mapping[str, Any], books: Iterable[str]) -> Premises:
+    """What was declared, what the run was given, and the books in force."""
     declarations = tuple(_declaration(item) for item in report["parameter_sets"])
     run = report["run"]
     values = RunValues(
@@ -134,15 +152,21 @@ def _again(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> d
         engine=run["engine"],
         census=census(declarations),
     )
-    rulebooks = _rulebooks([book["name"] for book in report["rulebooks"]], books)
-    reading = Reading(
-        declarations,
-        tuple(report["inputs"]),
-        tuple(report["errors"]),
-        tuple(report["skipped"]),
-        tuple(report["notices"]),
-    )
-    return build(reading, claims, values, rulebooks, run["fail_on"])
+    return declarations, values, _rulebooks([book["name"] for book in report["rulebooks"]], books)
+
+
+def _shortfalls(report: Mapping[str, Any], claims: Claims, books: Iterable[str]) -> list[str]:
+    """Searches that did not go as far as the run says, in a report whose open questions are known
+    to follow. One whose answer was refused is told in a notice of the run."""
+    asked = {question["id"] for item in report["parameter_sets"] for question in item["questions"]}
+    if not any(name.startswith(f"{asks}-") for name in asked for asks in SEARCHES):
+        return []
+    declarations, values, rulebooks = _premises(report, books)
+    return [
+        f"run.effort: is {values.effort}, but: {question.about} {why}"
+        for question, why in shortfalls(declarations, claims, values, rulebooks)
+        if not any(line.startswith(question.about) for line in report["notices"])
+    ]
 
 
 def _rulebooks(names: Sequence[str], files: Iterable[str]) -> tuple[Rulebook, ...]:

@@ -23,7 +23,7 @@ LINE = (
     ("rulebooks",),
     ("advice", "compare", "concessions"),
     ("report",),
-    ("rule_pages", "review", "progress", "outputs"),
+    ("rule_pages", "review", "progress", "outputs", "search_extent"),
     ("verify", "demonstrate", "declare", "usage_draft"),
     ("commands",),
     ("cli", "api"),

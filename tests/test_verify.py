@@ -122,6 +122,52 @@ def test_primes_tested_more_than_the_run_says_are_none_the_worse() -> None:
     assert (longer["run"]["rounds"], result.failures, result.status) == (16, (), 0)
 
 
+@cache
+def searched() -> dict[str, Any]:
+    """A report of standard effort with questions that search has left open."""
+    run = RunValues("2026-12-01", "standard")
+    return review([str(DOCUMENT)], run, Surroundings(secrets.randbelow))
+
+
+@pytest.mark.parametrize("digits", [20, 30])
+def test_searches_that_went_less_far_than_the_run_says_are_refused(digits: int) -> None:
+    """Another depth stated, of which no fact follows: the records of the searches fall short."""
+    deeper = copy.deepcopy(searched())
+    deeper["run"]["factor_digits"] = digits
+    result = verify(deeper, secrets.randbelow)
+
+    assert verify(searched(), secrets.randbelow).failures == ()
+    assert result.status == 1
+    assert all(line.startswith("run.effort: is standard, but: Which ") for line in result.failures)
+
+
+def test_a_quick_report_is_no_standard_one() -> None:
+    """Not even with as many tests for each prime."""
+    record = copy.deepcopy(original())
+    record["run"] |= {"effort": "standard", "rounds": 64}
+    for claim in record["claims"].values():
+        if "rounds" in claim["certificate"]:
+            claim["certificate"] |= {"rounds": 64, "error_bits": 128}
+    result = verify(seal(record), secrets.randbelow)
+
+    assert result.status == 1
+    assert all("searched less" in line for line in result.failures)
+
+
+def test_a_question_whose_answer_was_refused_needs_no_deeper_search() -> None:
+    """The notice of the run says so, for everybody to see."""
+    record = copy.deepcopy(searched())
+    record["run"]["factor_digits"] = 20
+    told = verify(record, secrets.randbelow).failures
+    questions = [line.split("but: ")[1].split("? ")[0] + "?" for line in told]
+    record["notices"] = [
+        f"{about} An answer was found and refused: composite." for about in questions
+    ]
+
+    assert questions
+    assert verify(record, secrets.randbelow).status == 0
+
+
 TREE = {
     "good.yaml": """\
 auditor: 1
