@@ -1,10 +1,11 @@
 """Big integers in programs and configuration that may belong to a group: candidates.
 
-Read are arrays of bytes as C and its relatives write them, and hexadecimal text in assignments,
-where the name says modulus, prime, generator or subgroup order. A name is no proof: the same words
-serve RSA, elliptic curves and test data, and a false alarm about those would cost more than a
-candidate that waits. So no candidate is reviewed until a usage file names it; until then each
-modulus is listed as passed over, with the names that such a file would use.
+Read are the forms of :mod:`auditor.intake.candidates_forms` where the name says modulus, prime,
+generator or subgroup order; and p, q and g without more where p is big and no big n or d is there,
+as in keys of RSA. A name is no proof: the same words serve RSA, elliptic curves and test data, and
+a false alarm about those would cost more than a candidate that waits. So no candidate is reviewed
+until a usage file names it; until then each modulus is listed as passed over, with the names that
+such a file would use.
 """
 
 import re
@@ -13,6 +14,7 @@ from collections import Counter
 from collections.abc import Container, Iterable, Iterator
 from dataclasses import dataclass
 
+from auditor.intake.candidates_forms import LONG_DIGITS, assignments
 from auditor.intake.names_statements import words_of
 from auditor.intake.reading import Number, Passed, Reading, Role
 from auditor.intake.standard_groups import match
@@ -22,29 +24,6 @@ LEAST_BITS = 512
 MAX_BITS = 65_536
 MAX_CANDIDATES = 1_000
 
-_BYTE = r"0[xX][0-9a-fA-F]{1,2}"
-_NAME = r"(?<![\w.\-])(?P<name>[A-Za-z_][\w.\-]{0,80})"
-_ARRAY = re.compile(
-    rf"{_NAME}[ \t]*(?:\[[^\]\n]{{0,60}}\][ \t]*)?(?::[^=\n]{{1,60}})?:?=[^=;{{}}\n]{{0,60}}?"
-    rf"[{{\[]\s*(?P<digits>{_BYTE}(?:\s*,\s*{_BYTE})*)\s*,?\s*[}}\]]"
-)
-_MARKED = re.compile(
-    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[^=;\n0]{{0,40}}?0[xX](?P<digits>[0-9a-fA-F]+)"
-)
-_BARE = re.compile(rf"{_NAME}[ \t]*[:=][ \t]*(?P<digits>[0-9a-fA-F]{{128,}})(?![\w:])")
-_TEXT = re.compile(
-    rf"{_NAME}[\"']?[ \t]*(?::=|[:=])[ \t]*(?:new[ \t]+)?(?:[\w.]{{1,40}}\([ \t\r\n]*){{0,3}}"
-    r"(?:\([ \t\r\n]*)?(?P<digits>\"[0-9a-fA-F:\s]+\"(?:[\s+.\\]{1,80}\"[0-9a-fA-F:\s]+\")*)"
-)
-_COLONS = re.compile(
-    rf"{_NAME}[\"']?[ \t]*[:=][ \t]*(?:[|>][ \t]*)?\r?\n?[ \t]*"
-    r"(?P<digits>[0-9a-fA-F]{2}(?::\s{0,200}[0-9a-fA-F]{2})+)"
-)
-_LONG_DIGITS = (
-    re.compile(r"[0-9a-fA-F]{32}"),
-    re.compile(rf"(?:{_BYTE}\s*,\s*){{16}}"),
-    re.compile(r"(?:[0-9a-fA-F]{2}:\s*){16}"),
-)
 _WORDS = ("modul", "prime", "dh", "dsa", "modp", "elgamal", "schnorr", "hellman")
 _BLOCK_COMMENT, _LINE_COMMENT = re.compile(r"/\*.*?\*/", re.DOTALL), re.compile(r"//[^\n]*")
 _CAST = re.compile(r"\(\s*(?:unsigned\s+)?(?:byte|char|uint8_t|u8)\s*\)")
@@ -54,6 +33,8 @@ _GENERATOR = frozenset({"generator", "base"})
 _ORDER = frozenset({"subgroup", "order"})
 _GROUP = re.compile(r"dh|dsa|modp|elgamal|group|schnorr|hellman", re.IGNORECASE)
 _LETTERS: dict[str, Role] = {"p": "modulus", "g": "generator", "q": "subgroup order"}
+_BARE_MODULUS = re.compile(r"(?<![\w.\-])[pP](?:[\"']?[ \t]*[:=,\[]|[ \t]+[\"'(])")
+_BARE_OF_RSA = frozenset({"n", "d"})
 
 
 def read_candidates(text: str, path: str) -> Reading:
@@ -61,30 +42,30 @@ def read_candidates(text: str, path: str) -> Reading:
     if not _worth_a_look(text):
         return Reading()
     plain = _without_comments(text)
-    found: dict[int, Number] = {}
     starts = [0, *(end.end() for end in re.finditer("\n", plain))]
-    for form, read in _FORMS:
-        for assignment in form.finditer(plain):
-            role = role_of(assignment["name"])
-            value = None if role is None else read(assignment["digits"])
-            if role is None or value is None:
-                continue
-            if role != "modulus" or value.bit_length() >= LEAST_BITS:
-                at = assignment.start()
-                line = bisect_right(starts, at)
-                column = at - starts[line - 1] + 1
-                number = Number(role, assignment["name"], value, path, line, column)
-                found.setdefault(at, number)
-    in_order = [number for _, number in sorted(found.items())]
+    found: list[tuple[int, Number]] = []
+    bare: list[tuple[int, Number]] = []
+    of_rsa = False
+    for at, name, value in assignments(plain):
+        of_rsa |= name.lower() in _BARE_OF_RSA and value.bit_length() >= LEAST_BITS
+        role, named = role_of(name), found
+        if role is None and name.lower() in _LETTERS:
+            role, named = _LETTERS[name.lower()], bare
+        if role is not None and (role != "modulus" or value.bit_length() >= LEAST_BITS):
+            line = bisect_right(starts, at)
+            column = at - starts[line - 1] + 1
+            named.append((at, Number(role, name, value, path, line, column)))
+    if not of_rsa and any(number.role == "modulus" for _, number in bare):
+        found += bare
+    in_order = [number for _, number in sorted(found, key=lambda item: item[0])]
     return Reading(candidates=tuple(in_order[:MAX_CANDIDATES]))
 
 
 def _worth_a_look(text: str) -> bool:
     """A quick look that spares most files the rest."""
     lower = text.lower()
-    return any(word in lower for word in _WORDS) and any(
-        digits.search(text) for digits in _LONG_DIGITS
-    )
+    named = any(word in lower for word in _WORDS) or _BARE_MODULUS.search(text) is not None
+    return named and any(digits.search(text) for digits in LONG_DIGITS)
 
 
 def _without_comments(text: str) -> str:
@@ -170,26 +151,3 @@ def _stem(name: str) -> str:
 def _blanks(found: re.Match[str]) -> str:
     """As many characters, and the same line ends."""
     return re.sub(r"[^\n]", " ", found[0])
-
-
-def _bytes(text: str) -> int | None:
-    digits = "".join(byte[2:].zfill(2) for byte in re.findall(_BYTE, text))
-    return _bounded(digits)
-
-
-def _digits(text: str) -> int | None:
-    return _bounded(re.sub(r"[^0-9a-fA-F]", "", text))
-
-
-def _bounded(digits: str) -> int | None:
-    digits = digits.lstrip("0")
-    return int(digits or "0", 16) if 4 * len(digits) <= MAX_BITS else None
-
-
-_FORMS = (
-    (_ARRAY, _bytes),
-    (_MARKED, _digits),
-    (_BARE, _digits),
-    (_TEXT, _digits),
-    (_COLONS, _digits),
-)
