@@ -65,7 +65,11 @@ def standard_bits(given: Given) -> int:
 
 
 def _least(given: Given, attacker: Attacker) -> Work:
-    """The least work known; loose while a route may be open whose work is not known."""
+    """The least work known; loose while a route may be open whose work is not known. Undefined for
+    a generator that is no unit: its powers have no logarithms.
+    """
+    if not given.see(generator.unit):
+        given.undefined()
     found: list[Work] = []
     unknown: list[Absent] = []
     for part in work.routes_for(attacker):

@@ -11,7 +11,7 @@ from types import MappingProxyType
 from typing import NoReturn
 
 from auditor.declaration import EVERYBODY, Party
-from auditor.facts import exponent, parts, provenance, usage
+from auditor.facts import exponent, generator, parts, provenance, usage
 from auditor.facts.base import Absent
 from auditor.facts.given import Given
 from auditor.routes import composite_modulus as composites
@@ -72,7 +72,7 @@ def _origin_verified(given: Given) -> bool:
 
 
 def square_root(given: Given) -> Work:
-    return _open(given, square_roots.square_root(given.see(_generator_order)))
+    return square_roots.square_root(given.see(exponent.generator_order))
 
 
 def pohlig_hellman(given: Given) -> Work:
@@ -186,7 +186,9 @@ def prime_power(given: Given) -> Work:
 
 
 def _components(given: Given) -> tuple[tuple[composites.Component, ...], int]:
-    """What is known of a composite modulus: its prime factors, and the length of the rest."""
+    """What is known of a composite modulus: its prime factors, and the length of the rest. Nobody
+    declares factors of a modulus: what is known was found by a search.
+    """
     _modulus_of_nature(given, "composite")
     factors, rest = given.see(parts.known_modulus_factors)
     components = []
@@ -195,7 +197,8 @@ def _components(given: Given) -> tuple[tuple[composites.Component, ...], int]:
         order = Factors(group.factors, group.rest)
         cost = min(nist_bits(prime.bit_length()), pohlig_hellmans.pohlig_hellman_bits(order))
         largest = max(order.primes, default=1) if order.complete else None
-        components.append(composites.Component(prime.bit_length(), cost, largest))
+        found = composites.Component(prime.bit_length(), cost, largest, discovered=True)
+        components.append(found)
     return tuple(components), 0 if rest == 1 else rest.bit_length()
 
 
@@ -248,7 +251,10 @@ def routes_for(attacker: Attacker) -> tuple[RoutePart, ...]:
 
 
 def all_open(given: Given) -> tuple[Work, ...]:
-    """Every open route whose work is known, without resting on them, cheapest first."""
+    """Every open route whose work is known, without resting on them, cheapest first; none to a
+    generator that is no unit, whose powers have no logarithms."""
+    if not given.peek(generator.unit):
+        return ()
     peeked = [given.peek(part) for part in routes_for("designer")]
     found = [work for work in peeked if not isinstance(work, Absent)]
     return tuple(sorted(found, key=lambda work: (work.bits, work.route, work.attacker)))

@@ -15,18 +15,25 @@ SOURCE = (
 )
 
 
+DEEPEST_SEARCH_BITS = 43.0
+"""What the deepest search of this program costs, in multiplications modulo n: the curves for
+factors of 50 digits and of all lengths below. Whatever it finds, anybody finds for that; most of
+it, as neighbouring primes or a factor shared with another modulus, for far less."""
+
+
 @dataclass(frozen=True, slots=True)
 class Component:
     """A known prime factor p of the modulus, whatever its exponent.
 
     ``length`` is its bit length; ``logarithm_bits`` the least known work of a logarithm modulo
     p, None for that of the number field sieve; ``smooth_to`` the largest prime factor of p - 1
-    where that is known.
+    where that is known; ``discovered`` says that a search of this program found p.
     """
 
     length: int
     logarithm_bits: float | None = None
     smooth_to: int | None = None
+    discovered: bool = False
 
     @property
     def cost_bits(self) -> float:
@@ -36,11 +43,13 @@ class Component:
 
     @property
     def discovery_bits(self) -> float:
-        """Work of finding this prime as a factor, by curves or by the p - 1 method."""
-        curves = elliptic_curve_bits(self.length)
-        if self.smooth_to is None:
-            return curves
-        return min(curves, math.log2(1.44 * self.smooth_to))
+        """Work of finding this prime as a factor, by curves, by the p - 1 method, or again."""
+        ways = [elliptic_curve_bits(self.length)]
+        if self.smooth_to is not None:
+            ways.append(math.log2(1.44 * self.smooth_to))
+        if self.discovered:
+            ways.append(DEEPEST_SEARCH_BITS)
+        return min(ways)
 
 
 def elliptic_curve_bits(length: int) -> float:
@@ -96,15 +105,16 @@ def composite_modulus_outsider(
     Arguments as for :func:`composite_modulus`, the primes not restricted.
 
     Attacker: passive. Formula: the greater of the work of factoring and of the hardest logarithm;
-    factoring takes out the primes that are cheapest to find, by elliptic curves or the p - 1
-    method, and leaves the remaining length to the number field sieve. Unit: symmetric-key trials.
-    Precondition: the modulus is composite. Source: Bach 1984; Lenstra 1987.
+    factoring takes out the primes that are cheapest to find, by elliptic curves, the p - 1 method
+    or the search that found them here, and leaves the remaining length to the number field sieve.
+    Unit: symmetric-key trials. Precondition: the modulus is composite. Source: Bach 1984; Lenstra 1987.
     """
     factoring = _factoring_bits(modulus_length, components, rest_length)
+    logarithm = _hardest_bits(components, rest_length)
     return Work(
         route=ROUTE,
         attacker="passive",
-        bits=max(factoring, _hardest_bits(components, rest_length)),
+        bits=max(factoring, logarithm),
         unit=Unit.SYMMETRIC_TRIALS,
         model=OUTSIDER,
         source=SOURCE,
@@ -112,7 +122,7 @@ def composite_modulus_outsider(
             "The modulus is composite: an outsider factors it, then takes one logarithm modulo "
             "each factor."
         ),
-        bound=_bound(rest_length),
+        bound="at most" if factoring == DEEPEST_SEARCH_BITS > logarithm else _bound(rest_length),
         details=(
             ("modulus length", modulus_length),
             ("factoring", floor_bits(factoring)),

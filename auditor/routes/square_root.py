@@ -1,6 +1,6 @@
 """Route: a square-root method in the largest prime-order subgroup of the generator."""
 
-from auditor.routes.base import Closed, Model, Unit, Work
+from auditor.routes.base import Model, Unit, Work
 from auditor.routes.factors import Factors
 from auditor.routes.searches import rho_bits
 
@@ -9,20 +9,18 @@ RHO = Model("Pollard rho with an ideal random walk", "model")
 SOURCE = "Pollard, Math. Comp. 32, 1978; van Oorschot and Wiener, J. Cryptology 12, 1999"
 
 
-def square_root(order: Factors) -> Work | Closed:
+def square_root(order: Factors) -> Work:
     """Logarithms to a base of the given ``order``, at its largest prime.
 
     Attacker: passive. Formula: sqrt(pi q / 2) for the largest prime q of ord(g). Unit: group
-    multiplications. Precondition: ord(g) > 1. An unfactored rest counts as if it were prime,
-    which makes the figure an upper bound. Source: Pollard 1978.
+    multiplications. The identity has one power, which costs nothing to know. An unfactored rest
+    counts as if it were prime, which makes the figure an upper bound. Source: Pollard 1978.
     """
     largest = max((*order.primes, order.rest))
-    if largest == 1:
-        return Closed(ROUTE, "passive", "the generator has order 1")
     return Work(
         route=ROUTE,
         attacker="passive",
-        bits=rho_bits(largest),
+        bits=rho_bits(largest) if largest > 1 else 0.0,
         unit=Unit.GROUP_MULTIPLICATIONS,
         model=RHO,
         source=SOURCE,

@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 
 from auditor.routes.base import Closed, Work, floor_bits
 from auditor.routes.composite_modulus import (
+    DEEPEST_SEARCH_BITS,
     Component,
     composite_modulus,
     composite_modulus_outsider,
@@ -20,6 +21,7 @@ from auditor.routes.pohlig_hellman import pohlig_hellman_bits
 from auditor.routes.prime_power import prime_power
 from auditor.routes.raw_message import SPLITTING_SHARES, raw_message
 from auditor.routes.sieve_models import nist_bits
+from auditor.search.plan import LEVELS
 
 # A modulus made for the purpose: both p_i - 1 are 2^14-smooth. Factors computed with gmpy2.
 SMOOTH_MODULUS = 0x626CB3DC708C74F7F155E6EAB3AEA85D048F669168EFD8C9DB85276CD7CC57F1C4D
@@ -149,6 +151,26 @@ def test_taking_out_all_primes_but_one_factors_the_modulus() -> None:
 
     assert two["factoring"] == floor_bits(elliptic_curve_bits(128))
     assert dict(composite_modulus_outsider(2048, three, 0).details)["factoring"] > 100
+
+
+def test_what_a_search_found_is_found_again() -> None:
+    """Two known primes of 1024 bits cost what the search cost, not what the sieve would."""
+    hidden = (Component(1024), Component(1024))
+    found = tuple(Component(1024, discovered=True) for _ in hidden)
+    smooth = tuple(Component(1024, logarithm_bits=20.0, discovered=True) for _ in hidden)
+
+    assert composite_modulus_outsider(2048, hidden, 0).bits == nist_bits(2048)
+    assert composite_modulus_outsider(2048, found, 0).bits == nist_bits(1024)
+    assert composite_modulus_outsider(2048, found, 0).bound == "exact"
+    assert composite_modulus_outsider(2048, smooth, 0).bits == DEEPEST_SEARCH_BITS
+    assert composite_modulus_outsider(2048, smooth, 0).bound == "at most"
+
+
+def test_the_deepest_search_costs_that_much() -> None:
+    """About thirteen multiplications for each unit of the first bounds, second stages included."""
+    steps = sum(level.curves * level.b1 for level in LEVELS)
+
+    assert 0 < DEEPEST_SEARCH_BITS - math.log2(13 * steps) < 1
 
 
 def test_an_outsider_is_not_spared_the_logarithms() -> None:

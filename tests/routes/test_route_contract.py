@@ -49,7 +49,6 @@ WORKS = [
     prime_power(2**89 - 1, 3),
 ]
 CLOSED = [
-    square_root(factors([])),
     pohlig_hellman(factors([])),
     smooth_part_then_short_exponent(60, factors([])),
     hidden_form(2048, origin_verified=True),
