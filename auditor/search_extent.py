@@ -14,7 +14,7 @@ from auditor.facts import establish, vocabulary
 from auditor.facts.given import Shared
 from auditor.inquiry.settle import open_questions
 from auditor.questions import Asks, Question
-from auditor.report.record import in_use
+from auditor.report.set_record import in_use
 from auditor.rulebooks.judging import Judging
 from auditor.rulebooks.rulebook import Rulebook
 from auditor.run_values import RunValues
