@@ -107,7 +107,8 @@ def composite_modulus_outsider(
     Attacker: passive. Formula: the greater of the work of factoring and of the hardest logarithm;
     factoring takes out the primes that are cheapest to find, by elliptic curves, the p - 1 method
     or the search that found them here, and leaves the remaining length to the number field sieve.
-    Unit: symmetric-key trials. Precondition: the modulus is composite. Source: Bach 1984; Lenstra 1987.
+    Unit: symmetric-key trials. Precondition: the modulus is composite. Source: Bach 1984; Lenstra
+    1987.
     """
     factoring = _factoring_bits(modulus_length, components, rest_length)
     logarithm = _hardest_bits(components, rest_length)
