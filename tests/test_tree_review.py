@@ -22,6 +22,7 @@ class Outcome(NamedTuple):
 
     status: int
     record: dict[str, Any]
+    out: str
     err: str
 
     @property
@@ -46,7 +47,7 @@ def review(
         monkeypatch.setattr(sys, "argv", [*words, "--json", "r.json", *options])
         capsys.readouterr()
         status = cli.run()
-        return Outcome(status, json.loads(Path("r.json").read_text()), capsys.readouterr().err)
+        return Outcome(status, json.loads(Path("r.json").read_text()), *capsys.readouterr())
 
     return run
 
@@ -88,6 +89,23 @@ def test_a_tree_in_which_nothing_is_recognised(review: Review, name: str) -> Non
     assert accepted.err == ""
     assert accepted.record["parameter_sets"] == accepted.record["errors"] == []
     assert accepted.record["complete"] is True
+
+
+def test_candidates_are_named_where_nothing_else_is(review: Review) -> None:
+    """On the console and beside the status: a few by file and line, the others counted."""
+    for name in "abcde":
+        write(f"{name}.c", f"\nchar dh_p[] = {{{', '.join(['0xfb'] * 64)}}};\n")
+    outcome = review()
+    assert outcome.status == 2
+    assert "5 candidates for a usage file: t/a.c:2, t/b.c:2, t/c.c:2 and 2 more;" in outcome.err
+    assert outcome.out.count("candidate     t/") == 3
+    assert "candidate     t/a.c:2: 'dh_p': 512 bits\n" in outcome.out
+    assert "candidate     and 2 more\n" in outcome.out
+    assert "5 candidates wait for a usage file to be reviewed.\n" in outcome.out
+    write("usage.yaml", "auditor-usage: 1\nuses: [{path: a.c, modulus: dh_p, generator: 2}]\n")
+    for name in "bcde":
+        Path(f"t/{name}.c").unlink()
+    assert "candidate" not in review().out
 
 
 def test_a_broken_file_is_not_excused_by_allow_empty(review: Review) -> None:

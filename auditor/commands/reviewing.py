@@ -61,9 +61,24 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
             f"{error['path']}:{error['line']}:{error['column']}: {error['message']}", err=True
         )
     if not record["parameter_sets"] and not record["errors"] and not options["allow_empty"]:
-        click.echo("nothing was recognised as parameters; --allow-empty accepts that", err=True)
+        click.echo(_nothing(record), err=True)
         return 2
     return status_of(record, options["fail_on"])
+
+
+def _nothing(record: dict[str, Any]) -> str:
+    """Why there is nothing to review: candidates are named, which nobody else has."""
+    from auditor.intake.candidates import candidates_in
+    from auditor.report.text import visible
+    from auditor.report.words import plural
+
+    found = candidates_in(record["skipped"])
+    waiting = ""
+    if found:
+        more = f" and {len(found) - 3} more" if len(found) > 3 else ""
+        named = ", ".join(place for place, _ in found[:3])
+        waiting = f" but {plural(len(found), 'candidate')} for a usage file: {visible(named)}{more}"
+    return f"nothing was recognised as parameters{waiting}; --allow-empty accepts that"
 
 
 def _reviewed(paths: tuple[str, ...], options: dict[str, Any]) -> dict[str, Any]:

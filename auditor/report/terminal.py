@@ -6,6 +6,7 @@ Colour is only added when asked for, around words that carry the meaning without
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from textwrap import wrap
 
+from auditor.intake.candidates import candidates_in
 from auditor.report.common_view import common
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import clipped
@@ -56,6 +57,8 @@ def _head(report: View, width: int) -> Iterator[str]:
     yield from _listed("notice", report.notices, width)
     things = common(report.record["overview"])
     yield from _listed("factor", [item.text for item in things if item.kind == "factor"], width)
+    found = candidates_in(report.record["skipped"])
+    yield from _listed("candidate", [": ".join(item) for item in found], width, most=1)
     if report.sheets:
         yield ""
         columns = " ".join(f"{name:>8}" for name in _COLUMNS)
@@ -101,14 +104,18 @@ def _row(sheets: list[Sheet], width: int, most: int, colour: bool) -> list[str]:
 def _foot(report: View, width: int) -> Iterator[str]:
     if not report.sheets:
         yield "Nothing was reviewed."
+    if candidates := candidates_in(report.record["skipped"]):
+        verb = "waits" if len(candidates) == 1 else "wait"
+        text = f"{plural(len(candidates), 'candidate')} {verb} for a usage file to be reviewed."
+        yield clipped(text, width)
     if report.questions:
         yield f"{plural(len(report.questions), 'question')} open."
     yield from wrap(" ".join(report.cautions), width)
 
 
-def _listed(label: str, items: Sequence[str], width: int) -> Iterator[str]:
+def _listed(label: str, items: Sequence[str], width: int, most: int = 2) -> Iterator[str]:
     for item in items[:_MOST_LISTED]:
-        yield from _entry(label, item, width)
+        yield from _entry(label, item, width, most)
     if len(items) > _MOST_LISTED:
         yield from _entry(label, f"and {len(items) - _MOST_LISTED:,} more", width)
 
