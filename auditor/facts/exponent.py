@@ -6,10 +6,11 @@ of no more bits is then known.
 
 from auditor.declaration import Party
 from auditor.facts import parts, usage
+from auditor.facts.base import Absent
 from auditor.facts.given import Given, narrow
 from auditor.facts.registry import fact
-from auditor.routes.base import floor_bits
-from auditor.routes.confinement import Check
+from auditor.routes.base import Closed, floor_bits
+from auditor.routes.confinement import Check, confinement
 from auditor.routes.factors import Factors
 from auditor.routes.leaks import confinement_leak_bits, public_leak_bits
 
@@ -30,7 +31,8 @@ def group_exponent(given: Given) -> Factors:
 def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
     """The parties that use an exponent again on values which no check keeps inside <g>.
 
-    Undefined where there is none; undeclared where a party that says too little may be one.
+    Undefined where there is none; undeclared where a party that says too little may be one and
+    that makes a difference.
     Signing receives no values. ``certified`` keeps nothing out by itself: whether the certifier
     tests membership is not declared.
     """
@@ -44,6 +46,8 @@ def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
             given.rest_on(usage.key_of(party, "exponent.use"))
         elif checks is not None and {"membership", "cofactor"} & set(checks):
             given.rest_on(usage.key_of(party, "peer_check"))
+        elif use is None and _reuse_is_harmless(given, party):
+            given.rest_on(usage.key_of(party, "peer_check"), usage.key_of(party, "exponent.bits"))
         elif use is None or checks is None:
             absent = {"exponent.use": use, "peer_check": checks}
             given.undeclared(*(usage.key_of(party, k) for k, v in absent.items() if v is None))
@@ -53,6 +57,20 @@ def exposed_parties(given: Given) -> tuple[tuple[Party, Check], ...]:
     if not exposed:
         given.undefined()
     return tuple(exposed)
+
+
+def _reuse_is_harmless(given: Given, party: Party) -> bool:
+    """Whether a range check leaves a peer one bit at most, as over a safe prime, and the search for
+    the rest costs what is required: then nothing depends on how often an exponent is used."""
+    known = given.peek(generator_order), given.peek(group_exponent)
+    if "range" not in (party.peer_check or ()) or party.exponent_bits is None:
+        return False
+    if any(isinstance(factors, Absent) or not factors.complete for factors in known):
+        return False
+    order, group = given.see(generator_order), given.see(group_exponent)
+    work = confinement(party.exponent_bits, order, group, "range", reused=True)
+    enough = isinstance(work, Closed) or work.bits >= given.declaration.required_bits
+    return enough and confinement_leak_bits(order, group, "range") <= 1
 
 
 @fact(
