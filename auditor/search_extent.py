@@ -33,7 +33,7 @@ def shortfalls(
     short; none at quick effort, which searches for nothing."""
     if run.effort == "quick":
         return []
-    judging, shared = Judging(books, vocabulary()), Shared(claims, run)
+    judging, shared = Judging(books, vocabulary()), Shared(run)
     questions: set[Question] = set()
     for item in dict.fromkeys(declaration.nameless for declaration in declarations):
         known = establish(item, claims, run, shared)
