@@ -93,6 +93,8 @@ class _Inquiry:
         open_: dict[int, tuple[Question, ...]] = {}
         dirty = set(range(len(declarations)))
         while True:
+            # What was open in the last round is of no use in this one, and would fill the memory.
+            self._shared = Shared(self._run)
             for place in sorted(dirty):
                 open_[place] = self._open(declarations[place])
                 for n in _watched(declarations[place], open_[place]):
