@@ -2,6 +2,7 @@
 
 import json
 import os
+import secrets
 import subprocess
 import sys
 from collections.abc import Callable
@@ -12,6 +13,8 @@ import pytest
 
 from auditor import cli
 from auditor.intake import inputs, tree
+from auditor.intake.tree import read_inputs
+from auditor.verify import verify
 from tests.intake.der_writer import RSA, element, integers, pem, public_key
 
 SOUND = "auditor: 1\nparameter_sets:\n  - {name: sound, modulus: {group: ffdhe2048}}\n"
@@ -222,6 +225,7 @@ def test_everything_that_is_skipped_has_a_reason(review: Review, tmp_path: Path)
 
     assert {path: " ".join(reason.split()[:4]) for path, reason in skipped.items()} == {
         "t/a.c": "candidate 'dh_p': 512 bits;",
+        "t": "1 other file holds",
         "t/build": "untracked, and ignored by",
         "t/large.txt": "the file has more",
         "t/link": "a link that leads",
@@ -237,3 +241,16 @@ def test_everything_that_is_skipped_has_a_reason(review: Review, tmp_path: Path)
     for report in ("r.html", "r.md", "r.sarif"):
         text = Path(report).read_text()
         assert all(path in text for path in skipped), report
+
+
+def test_files_that_hold_nothing_are_no_matter_to_the_verifier(review: Review) -> None:
+    """One more of them leaves a report what it is; a file that is named does not."""
+    write("a.yaml", SOUND)
+    write("b.log", "")
+    record = review().record
+    assert {"path": "t", "reason": "1 other file holds nothing that is read"} in record["skipped"]
+    write("c.log", "")
+    assert verify(record, secrets.randbelow, against=read_inputs(["t"])).failures == ()
+    write("c.pem", "")
+    (failure,) = verify(record, secrets.randbelow, against=read_inputs(["t"])).failures
+    assert failure.startswith("skipped: ")

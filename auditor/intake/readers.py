@@ -23,6 +23,12 @@ from auditor.strict_yaml import YamlError
 
 DOCUMENT_SUFFIXES = (".yaml", ".yml", ".json")
 DER_SUFFIXES = (".der", ".cer", ".crt", ".p8", ".pk8", ".csr", ".p10")
+PROMISING_SUFFIXES = (
+    *(".pem", *DER_SUFFIXES, ".key", ".pub", ".cnf", ".dh", ".dhparam", ".dhparams"),
+    *(".p7b", ".p7c", ".p7s", ".p12", ".pfx", ".jks", ".keystore"),
+)
+"""What parameters, keys and certificates are called: such a file is named if it holds nothing."""
+
 PROSE_SUFFIXES = (".md", ".rst", ".adoc", ".html", ".htm", ".tex", ".pod")
 """Where a PEM block is a block, but a name or a number is an example."""
 
@@ -47,11 +53,15 @@ _Document = DocumentResult | UsageFile
 
 @dataclass(frozen=True, slots=True)
 class Candidate:
-    """A file to look at: its path as given, the tree it may refer to, and whether it was named."""
+    """A file to look at: its path as given, the tree it may refer to, and whether it was named.
+
+    ``top`` is the directory that was given, where it was not.
+    """
 
     path: str
     root: Path | None
     named: bool
+    top: str = ""
 
     @property
     def suffix(self) -> str:
@@ -92,6 +102,9 @@ def read_file(candidate: Candidate, data: bytes) -> Reading | _Document:
         return Reading(passed=(Passed(candidate.path, "not a declaration document"),))
     if _is_der(candidate, data):
         return Reading(passed=(Passed(candidate.path, "DER of a kind that is not read"),))
+    if candidate.suffix in PROMISING_SUFFIXES:
+        reason = "called like parameters or keys, and nothing in it is read"
+        return Reading(passed=(Passed(candidate.path, reason),))
     return reading
 
 

@@ -8,6 +8,7 @@ from auditor.declaration import Declaration
 from auditor.intake.inputs import InputError
 
 LEADS_OUT = "a link that leads out of the tree"
+_NOTHING = "nothing that is read"
 
 Role = Literal["modulus", "generator", "subgroup order"]
 
@@ -19,6 +20,17 @@ class Passed:
     path: str
     reason: str = LEADS_OUT
     line: int | None = None
+
+
+def others(directory: str, count: int) -> Passed:
+    """That so many files of ``directory`` hold nothing, without their names."""
+    files = "1 other file holds" if count == 1 else f"{count:,} other files hold"
+    return Passed(directory, f"{files} {_NOTHING}")
+
+
+def is_count(reason: str) -> bool:
+    """Whether a reason is one of :func:`others`."""
+    return reason.endswith((f" file holds {_NOTHING}", f" files hold {_NOTHING}"))
 
 
 @dataclass(frozen=True, slots=True)

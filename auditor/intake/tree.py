@@ -1,13 +1,14 @@
 """From paths to declarations: files as given, directories walked in sorted order.
 
 A file that is named must hold something that is read. In a directory every file is looked at;
-those that hold nothing are passed over in silence unless their name promises more. What is not
-looked at is named: links that leave the tree, what git ignores and does not track, files that are
+those that hold nothing are counted, and named where their name promises more. What is not looked at
+is named: links that leave the tree, what git ignores and does not track, files that are
 too large. Depth and number of files are bounded; beyond the bounds the rest is an error, because
 nobody knows what it holds.
 """
 
 import os
+from collections import Counter
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path, PurePath
@@ -29,7 +30,7 @@ from auditor.intake.inputs import (
 )
 from auditor.intake.moduli import is_moduli
 from auditor.intake.readers import DER_SUFFIXES, MODULI, Candidate, claimed, read_file
-from auditor.intake.reading import Notice, Number, Passed, Reading
+from auditor.intake.reading import Notice, Number, Passed, Reading, is_count, others
 from auditor.intake.usage_file import UsageFile, apply
 
 STANDARD_INPUT = "-"
@@ -59,8 +60,9 @@ class InputResult:
 
     @property
     def skipped(self) -> tuple[str, ...]:
-        """The paths that were passed over as a whole."""
-        return tuple(dict.fromkeys(item.path for item in self.passed if item.line is None))
+        """The paths that were passed over as a whole, those that are only counted left out."""
+        whole = (item for item in self.passed if item.line is None)
+        return tuple(dict.fromkeys(item.path for item in whole if not is_count(item.reason)))
 
     @property
     def recognised(self) -> int:
@@ -133,6 +135,8 @@ class Gathered:
     inputs: set[InputFile] = field(default_factory=set)
     passed: list[Passed] = field(default_factory=list)
     notices: list[Notice] = field(default_factory=list)
+    others: Counter[str] = field(default_factory=Counter)
+    """How many files of each directory given hold nothing."""
 
     def take(self, candidate: Candidate) -> None:
         """Read one file and keep what it holds, or why it does not."""
@@ -152,6 +156,7 @@ class Gathered:
             self.declarations += found.declarations
             self.inputs.update(found.files)
         else:
+            self.others[candidate.top] += found.empty
             self.add(found)
         if data is not None and not _holds_nothing(found):
             self.inputs.add(input_file(candidate.path, data))
@@ -184,11 +189,12 @@ class Gathered:
         ]
         declarations = self.unique([*in_order, *with_use])
         unnamed = tuple(self.waiting(declarations))
+        silent = (others(top, count) for top, count in self.others.items() if count)
         return InputResult(
             declarations,
             tuple(sorted([*self.errors, *applied.errors])),
             tuple(sorted(self.inputs)),
-            (*self.passed, *map(passed_over, unnamed), *applied.passed),
+            (*self.passed, *map(passed_over, unnamed), *applied.passed, *silent),
             (*self.notices, *applied.notices),
             unnamed,
             frozenset(self.documents),
@@ -279,7 +285,8 @@ def _walk(top: str, root: Path) -> Iterator[Found]:
         yield from problems
         problems.clear()
         for name in sorted({*inner, *names} - {*NOT_WALKED}):
-            found = _entry(here / name, root, here / name in ignored, name in names)
+            path = here / name
+            found = _entry(path, top, root, path in ignored, name in names)
             files += isinstance(found, Candidate)
             if files > MAX_FILES:
                 message = f"more than {MAX_FILES} files; those from {name!r} on were not looked at"
@@ -295,7 +302,9 @@ def _walk(top: str, root: Path) -> Iterator[Found]:
     yield from problems
 
 
-def _entry(path: PurePath, root: Path, ignored: bool, is_file: bool) -> Candidate | Passed | None:
+def _entry(
+    path: PurePath, top: str, root: Path, ignored: bool, is_file: bool
+) -> Candidate | Passed | None:
     """One name in a directory: a file to look at, or why not; None for a directory to walk."""
     if _leads_out(path, root):
         return Passed(path.as_posix())
@@ -303,7 +312,7 @@ def _entry(path: PurePath, root: Path, ignored: bool, is_file: bool) -> Candidat
         return Passed(path.as_posix(), "untracked, and ignored by git")
     if not is_file:
         return None
-    candidate = Candidate(path.as_posix(), root, named=False)
+    candidate = Candidate(path.as_posix(), root, named=False, top=PurePath(top).as_posix())
     if candidate.promising or os.path.isfile(path):
         return candidate
     return Passed(path.as_posix(), "not a regular file, or a link that leads nowhere")

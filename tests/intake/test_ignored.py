@@ -47,6 +47,7 @@ def test_untracked_and_ignored(repository: Path) -> None:
         ("a.tmp", "untracked, and ignored by git"),
         ("build/b.pem", "untracked, and ignored by git"),
         ("x/c.tmp", "untracked, and ignored by git"),
+        (".", "1 other file holds nothing that is read"),
     ]
     assert result.skipped == ("a.tmp", "build/b.pem", "x/c.tmp")
 

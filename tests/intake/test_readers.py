@@ -11,7 +11,7 @@ import pytest
 from auditor.intake import inputs, tree
 from auditor.intake.inputs import InputError
 from auditor.intake.readers import NOTHING
-from auditor.intake.reading import Passed
+from auditor.intake.reading import Passed, others
 from auditor.intake.tree import InputResult, read_inputs
 from tests.intake.der_writer import (
     DSA,
@@ -79,16 +79,16 @@ def test_every_kind_in_one_tree() -> None:
         "t/i.json#dh_group 14",
         "t/l.md#DH PARAMETERS 1",
     ]
-    assert result.errors == result.passed == ()
+    assert (result.errors, result.passed) == ((), (others("t", 2),))
     assert result.recognised == 10
     assert [item.path for item in result.inputs] == [name.split("#")[0] for name in _names(result)]
 
 
 @pytest.mark.parametrize("content", ["nothing", "", "\n\n", "key: value\n", b"\xff\xfe\x00\x01"])
 def test_named_files_have_to_hold_something(content: str | bytes) -> None:
-    """In a directory nothing is nothing; by name it is an error."""
+    """In a directory nothing is counted; by name it is an error."""
     _write({"t/notes.txt": content})
-    assert read_inputs(["t"]) == InputResult((), (), ())
+    assert read_inputs(["t"]) == InputResult((), (), (), (others("t", 1),))
     (error,) = read_inputs(["t/notes.txt"]).errors
     assert error.message == NOTHING or error.message.startswith("DER: ")
     stream = io.BytesIO(content.encode() if isinstance(content, str) else content)
@@ -185,7 +185,21 @@ def test_text_that_begins_like_der() -> None:
     """A zero at the beginning of a text makes no structure of it."""
     text = "0" + chr(100) + "x" * 100
     _write({"t/a": text, "t/b": "0B" + "y" * 66})
-    assert read_inputs(["t"]) == InputResult((), (), ())
+    assert read_inputs(["t"]) == InputResult((), (), (), (others("t", 2),))
+
+
+@pytest.mark.parametrize("name", ["x.pem", "X.PEM", "a.key", "id.pub", "openssl.cnf", "store.p12"])
+@pytest.mark.parametrize("content", [b"", b"\x8f\x00\x01" * 99, b"[req]\nbits = 2048\n"])
+def test_what_is_called_like_parameters_is_named_if_it_holds_nothing(
+    name: str, content: bytes
+) -> None:
+    """With the reason; other files are counted for each directory that was given."""
+    _write({f"t/{name}": content, "t/b.conf": content, "t/a/c": content, "u/d": content})
+    result = read_inputs(["t", "u"])
+    assert (result.declarations, result.errors, result.inputs) == ((), (), ())
+    assert result.skipped == (f"t/{name}",)
+    assert result.passed[1:] == (others("t", 2), others("u", 1))
+    assert str(result.passed[0].reason).endswith(("nothing in it is read", "that is not read"))
 
 
 def test_files_of_too_many_bytes() -> None:

@@ -80,6 +80,7 @@ def test_files_that_declare_nothing_are_skipped_in_directories(tree: Path) -> No
     assert [item.identity for item in result.declarations] == ["a.yaml#x"]
     assert result.errors == ()
     assert result.skipped == ("b.yaml", "c.yaml", "d.yaml", "e.json", "f.yaml")
+    assert str(result.passed[-1].reason) == "1 other file holds nothing that is read"
 
 
 @pytest.mark.parametrize(
@@ -237,8 +238,10 @@ def test_collect_names_the_tree_of_each_file(tree: Path) -> None:
     (tree / "t" / "out.yaml").symlink_to(tree / "c.yaml")
     assert list(collect(["t", "c.yaml", "-"])) == [
         Passed("t/out.yaml"),
-        Candidate("t/a/b.yaml", Path("t"), named=False),
+        Candidate("t/a/b.yaml", Path("t"), named=False, top="t"),
         Candidate("c.yaml", Path(), named=True),
         Candidate("-", None, named=True),
     ]
-    assert list(collect(["t/a"], Path())) == [Candidate("t/a/b.yaml", Path(), named=False)]
+    assert list(collect(["t/a"], Path())) == [
+        Candidate("t/a/b.yaml", Path(), named=False, top="t/a")
+    ]
