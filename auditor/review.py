@@ -1,7 +1,7 @@
 """The whole way through the house, as one short function: bytes in, the record of a review out."""
 
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from types import MappingProxyType
@@ -13,7 +13,9 @@ from auditor.claims.ledger import Ledger
 from auditor.concessions import Concessions, conceded
 from auditor.concessions import notices as notices_of
 from auditor.declaration import Declaration
-from auditor.facts import vocabulary
+from auditor.encoding import shorten
+from auditor.facts import parts, vocabulary
+from auditor.facts.given import Given
 from auditor.inquiry.answers import ALONE, Answers, Cores
 from auditor.inquiry.question_round import Progress
 from auditor.inquiry.settle import settle
@@ -150,7 +152,28 @@ def investigate(
     finally:
         if ledger is not None:
             ledger.close()
-    return claims, (*notices, *refused)
+    return claims, (*notices, *refused, *strange_factors(declarations, claims, run))
+
+
+def strange_factors(
+    declarations: Iterable[Declaration], claims: Claims, run: RunValues
+) -> Iterator[str]:
+    """A notice for each set with declared factors that do not divide the order of the unit group.
+
+    Nothing is said where the order is not known, as modulo a composite that is not factored.
+    """
+    for item in declarations:
+        if not item.known_factors:
+            continue
+        order = Given(item, claims, run).outcome(parts.group_order).value
+        wrong = [n for n in item.known_factors if order % n] if isinstance(order, int) else []
+        if wrong:
+            named = ", ".join(map(shorten, wrong[:3]))
+            more = f" and {len(wrong) - 3} more" if len(wrong) > 3 else ""
+            yield (
+                f"{item.identity}: not a factor of the group order, as known_factors declares: "
+                f"{named}{more}."
+            )
 
 
 def _ledger(surroundings: Surroundings, notices: list[str]) -> Ledger | None:

@@ -8,6 +8,7 @@ import json
 from collections.abc import Callable, Iterator, Sequence
 from difflib import get_close_matches
 from functools import cache
+from itertools import islice
 from typing import Any
 
 import jsonschema_rs
@@ -66,6 +67,9 @@ def schema_problems(
             problems += _unknown_keys(loaded, path, kind.unexpected, node, expected)
         elif kind.name == "required":
             problems.append(_missing_key(loaded, path, kind.property, schema, node))
+        elif kind.name == "uniqueItems":
+            repeated = list(islice(_repeated_items(loaded, path, expected), MAX_PROBLEMS))
+            problems += repeated or [_wrong_value(loaded, path, node, expected, advice)]
         else:
             problems.append(_wrong_value(loaded, path, node, expected, advice))
         if len(problems) >= MAX_PROBLEMS:
@@ -155,6 +159,18 @@ def _missing_key(loaded: Loaded, path: KeyPath, key: str, schema: Schema, node: 
     expected = _property_description(schema, node, key)
     message = sentence(shown_path(path), f"missing key {key!r}{because}", expected)
     return Problem(mark.line, mark.column, path, message)
+
+
+def _repeated_items(loaded: Loaded, path: KeyPath, expected: str) -> Iterator[Problem]:
+    """A problem for each item that stands in the list before."""
+    first: dict[str, int] = {}
+    for at, item in enumerate(value_at(loaded.value, path)):
+        before = first.setdefault(repr(small(item)), at)
+        if before < at:
+            here = (*path, at)
+            what = f"found {found(item)} again, after {shown_path((*path, before))}"
+            mark, message = _mark(loaded, here), sentence(shown_path(here), what, expected)
+            yield Problem(mark.line, mark.column, here, message)
 
 
 def _wrong_value(

@@ -25,6 +25,7 @@ SCHEMA = Schema(
             "scale": {"$ref": "#/definitions/scale"},
             "note": {"description": "a note", "type": "string"},
             "parts": {"description": "parts", "items": {"$ref": "#/definitions/scale"}},
+            "kinds": {"description": "different kinds", "type": "array", "uniqueItems": True},
         },
         "definitions": {"scale": {"description": "a scale from 1 to 9", "maximum": 9}},
     }
@@ -47,7 +48,8 @@ SCHEMA = Schema(
         ),
         (
             "size: 1\nqqqq: bits",
-            "2:1 unknown key 'qqqq'; expected a record; known keys: size, unit, scale, note, parts",
+            "2:1 unknown key 'qqqq'; expected a record; "
+            "known keys: size, unit, scale, note, parts, kinds",
         ),
         (
             "{size: 1, scale: 1, unit: octet}",
@@ -56,6 +58,14 @@ SCHEMA = Schema(
         (
             "size: 1\nunit: bits\nnote: x",
             "1:1 missing key 'scale', called for by unit and note; expected a scale from 1 to 9",
+        ),
+        (
+            "size: 1\nkinds: [a, b, a]",
+            "2:15 kinds[2]: found 'a' again, after kinds[0]; expected different kinds",
+        ),
+        (
+            "size: 1\nkinds:\n- {a: [1]}\n- {a: [1]}\n",
+            "4:3 kinds[1]: found a mapping of 'a' again, after kinds[0]; expected different kinds",
         ),
         ("size: 1\nparts: [1, 10]", "2:12 parts[1]: found 10; expected a scale from 1 to 9"),
     ],
