@@ -16,11 +16,11 @@ _NAME = r"(?<![\w.\-])(?P<name>[A-Za-z_][\w.\-]{0,80})[\"']?"
 _DEFINED = r"^[ \t]*#[ \t]*define[ \t]+(?P<defined>[A-Za-z_]\w{0,80})[ \t]+"
 _SIGN = (
     r"[ \t]*(?:\[[^\]\n]{0,60}\][ \t]*)?(?:,[ \t]*(?:_|ok|err)[ \t]*)?"
-    r"(?::[^=\n\"]{1,60}=|:=|=>|[:=])"
+    r"(?:(?P<type>:[ \t]*(?:&(?:'\w{1,20})?)?[\w\[\];<>. ]{1,60}+=)|:=|=>|[:=])"
 )
 _ASSIGNED = rf"(?:{_NAME}{_SIGN}|{_DEFINED})[ \t]*(?:\\?\r?\n[ \t]*)?"
 _CALLS = (
-    r"(?:new[ \t]+)?(?:[\w.:]{1,40}(?:\([\w.]{0,30}\)\.[\w.]{1,40})?!?\([ \t\r\n]*){0,3}"
+    r"(?:new[ \t]+)?(?:[\w.:]{1,40}+(?:\([\w.]{0,30}\)\.[\w.]{1,40}+)?!?\([ \t\r\n]*){0,3}"
     r"(?:\([ \t\r\n]*)?"
 )
 _JOINED = r"[\s+.\\]{0,80}"
@@ -39,6 +39,12 @@ LONG_DIGITS = (
 _SEVERAL_NAMES = re.compile(
     r"[ \t]*(?:(?:var|let|const|auto)[ \t]+)?\(?(?:[A-Za-z_][\w.]{0,80}[ \t]*,[ \t]*){1,20}"
 )
+_DECLARING = re.compile(
+    r"[ \t]*(?:(?:const|constexpr|export|final|let|mut|private|pub|public|readonly|static|val|var)"
+    r"[ \t]+){0,6}"
+)
+"""What stands before a name whose type follows it; elsewhere the colon means something else."""
+
 _LONG = 40
 """Decimal digits from which on text without a letter is decimal: that hexadecimal digits have no
 letter among 40 happens once in a hundred million times."""
@@ -54,22 +60,25 @@ def assignments(text: str) -> Iterator[tuple[int, str, int]]:
     """
     taken: set[int] = set()
     for form, read in _FORMS:
-        for found in form.finditer(text):
+        start = 0
+        while found := form.search(text, start):
             group = "defined" if found.groupdict().get("defined") else "name"
             at = found.start(group)
-            if at in taken:
+            if found.groupdict().get("type") and not _DECLARING.fullmatch(_before(text, at)):
+                start = found.end(group)
                 continue
-            taken.add(at)
-            value = None if _is_one_of_several(text, at) else read(found)
-            if value is not None:
-                yield at, found[group], value
+            start = found.end()
+            if at not in taken:
+                taken.add(at)
+                value = None if _SEVERAL_NAMES.fullmatch(_before(text, at)) else read(found)
+                if value is not None:
+                    yield at, found[group], value
 
 
-def _is_one_of_several(text: str, at: int) -> bool:
-    """Whether other names stand before that one, so that it is unclear whose the value is."""
+def _before(text: str, at: int) -> str:
+    """What stands before ``at`` on its line, or the last of it."""
     reach = max(at - _LONGEST_BEFORE, 0)
-    start = text.rfind("\n", reach, at) + 1 or reach
-    return _SEVERAL_NAMES.fullmatch(text, start, at) is not None
+    return text[text.rfind("\n", reach, at) + 1 or reach : at]
 
 
 def _bytes(found: re.Match[str]) -> int | None:
@@ -173,7 +182,7 @@ _FORMS: tuple[tuple[re.Pattern[str], Callable[[re.Match[str]], int | None]], ...
     ),
     (
         _form(
-            rf"{_NAME}[ \t]*(?::=|[:=])[^=;\n0\[{{]{{0,40}}?0[xX](?P<digits>[0-9a-fA-F]+)"
+            rf"(?:{_NAME}{_SIGN}|{_DEFINED})[^=;\n0\[{{]{{0,40}}?0[xX](?P<digits>[0-9a-fA-F]+)"
             r"(?![0-9a-fA-F])(?![\"'][\s+.\\]{1,80}[\"'])"
         ),
         _marked,
