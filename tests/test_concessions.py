@@ -339,11 +339,14 @@ def test_a_mutated_value_voids_or_is_better(data: st.DataObject) -> None:
     values = finding(reviewed())["values"]
     name = data.draw(st.sampled_from(sorted(values)))
     before = values[name]
-    now = data.draw(st.booleans() if isinstance(before, bool) else st.floats(-10, 10_000))
-    better = {"lower": now >= before, "higher": now <= before, None: now == before}
+    others = {bool: st.booleans(), str: st.text()}
+    now = data.draw(others.get(type(before), st.floats(-10, 10_000)))
+    direction = worse_when(name)
+    better = now == before if direction is None else now >= before
+    better = now <= before if direction == "higher" else better
     record = conceded(weakened(**{name.replace(".", "__"): now}), [entry()])
 
-    assert (finding(record)["concession"] is not None) is better[worse_when(name)]
+    assert (finding(record)["concession"] is not None) is better
 
 
 def test_every_figure_of_work_has_a_direction() -> None:

@@ -37,6 +37,7 @@ _TEXTS = {
         "p not prime", "counter gives another p", "an earlier counter gives a prime",
         "no prime within the limit", "seed counts past its length", "digits give another modulus",
     ),
+    "strength.shortfalls_seen": (),
     "scheme.dsa_sizes": ("1024/160", "2048/224", "2048/256", "3072/256", "other"),
 }  # fmt: skip
 _BY_KIND: dict[FactKind, str] = {

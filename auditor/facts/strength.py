@@ -142,6 +142,31 @@ def sufficient(given: Given) -> bool:
     return False
 
 
+@fact(
+    "strength.shortfalls_seen",
+    "text",
+    "what is known to stay below the required strength: its bits and its name, least first",
+)
+def shortfalls(given: Given) -> str:
+    too_low = tuple(_too_low(given, given.see(required_bits)))
+    if not too_low:
+        given.see(sufficient)
+        given.undefined()
+    found = {_named_bits(given.see(part), part) for part in too_low}
+    # What is unknown may come to stay below it too, and what is a bound may fall.
+    given.loosen()
+    return "; ".join(f"{shown} by {name}" for _, shown, name in sorted(found))
+
+
+def _named_bits(found: object, part: Callable[[Given], object]) -> tuple[float, str, str]:
+    """The bits of a component or route, as they are shown, and its name."""
+    if isinstance(found, Work):
+        bits = floor_bits(found.bits)
+        return bits, f"{bits:.2f}", found.route.replace("_", " ")
+    bits = int(str(found))
+    return bits, str(bits), f"the published table for the {_TABLE_NAMES[part]}"
+
+
 def _too_low(given: Given, required: int) -> Iterator[Callable[[Given], object]]:
     """The components and other routes that are known to stay below the requirement."""
     for component in (*TABLE, table_subgroup_at_most, table_exponent_at_most):
@@ -164,6 +189,16 @@ def table_exponent_at_most(given: Given) -> int:
     """Half the narrowest width that is declared."""
     return int(given.see(usage.narrowest_exponent)) // 2
 
+
+_TABLE_NAMES: Mapping[Callable[[Given], object], str] = MappingProxyType(
+    {
+        table_modulus: "modulus",
+        table_subgroup: "subgroup",
+        table_subgroup_at_most: "subgroup",
+        table_exponent: "exponent",
+        table_exponent_at_most: "exponent",
+    }
+)
 
 BESIDE_TABLES = (
     work.special_number_field_sieve,
