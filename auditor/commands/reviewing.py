@@ -68,7 +68,7 @@ def review(paths: tuple[str, ...], **options: Any) -> int:
 
 def _nothing(record: dict[str, Any]) -> str:
     """Why there is nothing to review: candidates are named, which nobody else has."""
-    from auditor.intake.candidates import candidates_in
+    from auditor.intake.reading import candidates_in
     from auditor.report.text import visible
     from auditor.report.words import plural
 

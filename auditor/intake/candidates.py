@@ -11,20 +11,14 @@ such a file would use.
 import re
 from bisect import bisect_right
 from collections import Counter
-from collections.abc import Container, Iterable, Iterator, Mapping
+from collections.abc import Container, Iterable, Iterator
 from dataclasses import dataclass
-from typing import Any
 
 from auditor.intake.candidates_forms import LONG_DIGITS, assignments
 from auditor.intake.names_statements import words_of
-from auditor.intake.reading import Number, Passed, Reading, Role
+from auditor.intake.reading import CANDIDATE, WAITS, Number, Passed, Reading, Role
 from auditor.intake.standard_groups import match
 from auditor.schema_check import quoted
-
-CANDIDATE = "candidate "
-"""How the reason begins for which a candidate is passed over."""
-
-_WAITS = "; not reviewed unless a usage file names it"
 
 LEAST_BITS = 512
 MAX_BITS = 65_536
@@ -141,22 +135,10 @@ def passed_over(found: Waiting) -> Passed:
     equal = f", the modulus of {group}" if group != "none" else ""
     return Passed(
         number.path,
-        f"{CANDIDATE}{quoted(number.name)}: {number.value.bit_length()} bits{equal}{_WAITS} "
+        f"{CANDIDATE}{quoted(number.name)}: {number.value.bit_length()} bits{equal}{WAITS} "
         f"(modulus: {number.name}, generator: {found.generator or 'an integer'})",
         number.line,
     )
-
-
-def candidates_in(skipped: Iterable[Mapping[str, Any]]) -> list[tuple[str, str]]:
-    """The candidates among what a report lists as skipped: the place, and the name and size."""
-    return [
-        (
-            f"{item['path']}:{item['line']}",
-            item["reason"].removeprefix(CANDIDATE).partition(_WAITS)[0],
-        )
-        for item in skipped
-        if item["reason"].startswith(CANDIDATE) and "line" in item
-    ]
 
 
 def _stem(name: str) -> str:

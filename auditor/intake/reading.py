@@ -1,14 +1,17 @@
 """What a reader makes of one file: parameter sets, what it passes over, what it could not read."""
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, fields
-from typing import Literal
+from typing import Any, Literal
 
 from auditor.declaration import Declaration
 from auditor.intake.inputs import InputError
 
 LEADS_OUT = "a link that leads out of the tree"
 _NOTHING = "nothing that is read"
+
+CANDIDATE, WAITS = "candidate ", "; not reviewed unless a usage file names it"
+"""How the reason for which a candidate is passed over begins, and what follows name and size."""
 
 Role = Literal["modulus", "generator", "subgroup order"]
 
@@ -31,6 +34,18 @@ def others(directory: str, count: int) -> Passed:
 def is_count(reason: str) -> bool:
     """Whether a reason is one of :func:`others`."""
     return reason.endswith((f" file holds {_NOTHING}", f" files hold {_NOTHING}"))
+
+
+def candidates_in(skipped: Iterable[Mapping[str, Any]]) -> list[tuple[str, str]]:
+    """The candidates among what a report lists as skipped: the place, and the name and size."""
+    return [
+        (
+            f"{item['path']}:{item['line']}",
+            item["reason"].removeprefix(CANDIDATE).partition(WAITS)[0],
+        )
+        for item in skipped
+        if item["reason"].startswith(CANDIDATE) and "line" in item
+    ]
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,7 @@ Colour is only added when asked for, around words that carry the meaning without
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from textwrap import wrap
 
-from auditor.intake.candidates import candidates_in
+from auditor.intake.reading import candidates_in
 from auditor.report.common_view import common
 from auditor.report.sheet_view import Sheet
 from auditor.report.text import clipped
