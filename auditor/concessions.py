@@ -360,10 +360,13 @@ FAIL_ON = ("hold", "open", "conditions")
 
 def fails(parameter_set: Record, fail_on: str) -> bool:
     """Whether the set counts for exit status 1: a finding that leads to a position at or above
-    ``fail_on`` is not conceded."""
+    ``fail_on`` is not conceded, or no requirement applied."""
     if fail_on not in FAIL_ON:
         return False
     counted = FAIL_ON[: FAIL_ON.index(fail_on) + 1]
+    if parameter_set["position"] == "open" and parameter_set["decided_by"] is None:
+        # Nothing was judged, so there is nothing to concede.
+        return "open" in counted
     return any(
         leads_to(finding) in counted and not is_conceded(finding)
         for finding in parameter_set["findings"]

@@ -29,6 +29,9 @@ from auditor.run_values import RunValues
 from auditor.search_extent import SEARCHES, shortfalls
 
 
+_OTHER_FORMAT = f"not a report of format {FORMAT}, as review writes it with --json; its format: {{}}"
+
+
 @dataclass(frozen=True, slots=True)
 class Verification:
     """``failures`` do not hold; ``unclear`` is what kept a part from being checked at all."""
@@ -57,7 +60,7 @@ def verify(
     cover its finding and say rightly whether it has run out.
     """
     if report.get("report") != FORMAT:
-        return Verification((), (f"the report has format {shorten(report.get('report'))}",))
+        return Verification((), (_OTHER_FORMAT.format(shorten(report.get("report", "none"))),))
     if malformed := problems(report):
         return Verification(tuple(malformed))
     if repeated := list(_repeated(report)):

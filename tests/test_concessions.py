@@ -21,6 +21,7 @@ from auditor.concessions import (
     conceded,
     fails,
     is_conceded,
+    leads_to,
     load,
     notices,
     parse,
@@ -167,9 +168,21 @@ class TestSemantics:
         self, grade: str, outcome: str, failing: set[str]
     ) -> None:
         """A finding counts at the position that it leads to, and at those below."""
-        item = {"findings": [{"grade": grade, "outcome": outcome, "concession": None}]}
+        found = {"grade": grade, "outcome": outcome, "concession": None}
+        item = {"position": leads_to(found), "decided_by": "r", "findings": [found]}
 
         assert {at for at in ("hold", "open", "conditions", "never") if fails(item, at)} == failing
+
+    def test_a_set_that_nothing_was_said_of_counts_as_open(self) -> None:
+        """There is no finding to concede."""
+        item = {"position": "open", "decided_by": None, "findings": []}
+
+        assert [fails(item, at) for at in ("hold", "open", "conditions", "never")] == [
+            False,
+            True,
+            True,
+            False,
+        ]
 
     @pytest.mark.parametrize("fail_on", ["hold", "open", "conditions"])
     def test_without_concessions_the_position_decides(self, fail_on: str) -> None:

@@ -103,6 +103,7 @@ def weak() -> list[Record]:
             **usage(225, "reused", "range", "membership", protocol="tls1.2"),
         },
         "unchecked": {"modulus": wide, **usage(225, "single")},
+        "certified": {"modulus": wide, **usage(225, "single", "certified")},
         "two parties": {
             "modulus": {"group": "rfc5114-2048-224"},
             "purpose": "key-agreement",
@@ -254,6 +255,7 @@ EXPECTED: list[tuple[str, str, Record]] = [
         {"exponent": {"bits": 225, "use": "single"}},
     ),
     ("unchecked", "peer-value-unchecked", {"peer_check": ["range"]}),
+    ("certified", "peer-value-unchecked", {"peer_check": ["range", "certified"]}),
     (
         "signature with a short nonce",
         "exponent-too-short",

@@ -211,7 +211,11 @@ def fresh_exponents(draft: Draft) -> Draft | None:
 
 def range_check(draft: Draft) -> Draft | None:
     """Refuse received values outside of [2, n-2]."""
-    parties = tuple(party if party.peer_check else _checking(party) for party in draft.parties)
+    sufficient = {"range", "membership", "cofactor"}
+    parties = tuple(
+        party if sufficient & set(party.peer_check or ()) else _checking(party)
+        for party in draft.parties
+    )
     text = f"Refuse received values outside of 2 to n-2{_who(draft, parties)}."
     return _unless_signing(draft, parties, text)
 

@@ -47,11 +47,11 @@ def render(record: Record | View, *, limit: int = LIMIT) -> str:
     room = _Room(limit - units(head) - units(foot) - _RESERVE)
     decisions = _fitted("set", _DECISIONS, report.sheets, _row, room.share(3))
     things = common(report.record["overview"])
-    shares = _fitted("entry", "\n## In common\n\n", things, _in_common, room.share(8))
+    shares = _fitted("point", "\n## In common\n\n", things, _in_common, room.share(8))
     after = [
         _fitted("question", "\n## Open questions\n\n", report.questions, _question, room.share(6)),
         _fitted("message", "\n## Not read\n\n", report.problems, _message, room.share(6)),
-        _fitted("entry", "\n## Skipped\n\n", report.skipped, _message, room.share(12)),
+        _fitted("file", "\n## Skipped\n\n", report.skipped, _message, room.share(12)),
     ]
     shared, told = _shared_section(report, room.share(2))
     return "".join([head, decisions, shares, shared, *_findings(report, room, told), *after, foot])
