@@ -17,7 +17,7 @@ from auditor.concessions import ROLE, Concessions, conceded, recorded
 from auditor.declaration import Declaration, Place
 from auditor.encoding import shorten
 from auditor.facts import vocabulary
-from auditor.intake.reading import is_count
+from auditor.intake.reading import is_no_matter
 from auditor.intake.record import declaration_from
 from auditor.intake.tree import InputResult
 from auditor.report.json_report import problems
@@ -28,8 +28,7 @@ from auditor.rulebooks.rulebook import Rulebook, RulebookError
 from auditor.run_values import RunValues
 from auditor.search_extent import SEARCHES, shortfalls
 
-
-_OTHER_FORMAT = f"not a report of format {FORMAT}, as review writes it with --json; its format: {{}}"
+_OTHER_FORMAT = f"not a report of format {FORMAT}, as review --json writes it; its format: {{}}"
 
 
 @dataclass(frozen=True, slots=True)
@@ -222,12 +221,13 @@ def _differences_of_inputs(report: Mapping[str, Any], against: InputResult) -> l
 
 def _differences_of_reading(report: Mapping[str, Any], against: InputResult) -> list[str]:
     """What is told otherwise of inputs that were not read, were passed over, or need a word; in
-    whatever order they were named. How many files hold nothing is no matter."""
+    whatever order they were named. Reports beside them, and how many files hold nothing, are no
+    matter."""
     now = reading_of(against)
     failures = []
     for member, follow in (("errors", now.errors), ("skipped", now.skipped)):
         then, now_told = (
-            [item for item in told if not is_count(item.get("reason", ""))]
+            [item for item in told if not is_no_matter(item.get("reason", ""))]
             for told in (report[member], follow)
         )
         failures += differences(_in_order(now_told), _in_order(then), member)

@@ -12,6 +12,7 @@ import pytest
 
 from auditor.intake.reading import Notice
 from auditor.intake.tree import InputResult, read_inputs
+from auditor.report.json_report import dumps
 from auditor.review import Surroundings, review
 from auditor.run_values import RunValues
 from auditor.search import factoring, primality
@@ -200,6 +201,16 @@ class TestAgainst:
         record = json.loads(json.dumps(record, sort_keys=True))
         assert verify(record, secrets.randbelow, against=inputs).status == 0
         return record, inputs
+
+    def test_a_report_may_lie_beside_what_it_is_about(self, tree: Any) -> None:
+        """So does whatever else was put there and holds nothing that is read."""
+        record, inputs = tree
+        (folder,) = {Path(item.path).parent for item in inputs.inputs}
+        (folder / "report.json").write_text(dumps({"report": record["report"], **record}))
+        (folder / "report.html").write_text("<p>")
+
+        now = read_inputs([str(folder)])
+        assert verify(record, secrets.randbelow, against=now).failures == ()
 
     def test_what_was_not_read_cannot_be_left_out(self, tree: Any) -> None:
         """Without its errors a report would call itself complete."""

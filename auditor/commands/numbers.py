@@ -91,7 +91,11 @@ def _show(found: "list[Structure]", elements: list[int], as_json: bool) -> None:
 
 def _number(word: str, least: int = 1, hint: str = "N") -> int:
     """An integer from ``least`` to 65,536 bits from the command line."""
-    value = int(word, 0 if word[1:2] in "xX" else 10) if _NUMBER.fullmatch(word) else None
+    value = None
+    if _NUMBER.fullmatch(word):
+        # No text that long is a number in range, and the interpreter has a limit of its own.
+        with suppress(ValueError):
+            value = int(word, 0 if word[1:2] in "xX" else 10)
     if value is None or not least <= value < 1 << 65_536:
         expected = f"expected {least} to 2^65536 - 1, decimal or as 0x…"
         raise click.BadParameter(f"{word[:40]}: {expected}", param_hint=hint)

@@ -16,7 +16,7 @@ from auditor.intake.encoded import read_der, read_pem
 from auditor.intake.inputs import InputError, decode
 from auditor.intake.moduli import is_moduli, read_moduli
 from auditor.intake.names import read_names
-from auditor.intake.reading import Passed, Reading, joined
+from auditor.intake.reading import OURS, Passed, Reading, joined
 from auditor.intake.ssh_keys import read_ssh_keys
 from auditor.intake.usage_file import UsageFile, is_usage_file, read_usage
 from auditor.strict_yaml import YamlError
@@ -45,7 +45,8 @@ NOTHING = (
 _MENTIONED = re.compile(rb"\bauditor(?:-usage)?[\"']?[ \t]*:")
 _AT_TOP = re.compile(rb"^(?:\xef\xbb\xbf)?[\"']?auditor(?:-usage)?[\"']?[ \t]*:", re.MULTILINE)
 _OF_OURS = re.compile(
-    rb"^(?:\{[ \t\r\n]*)?[\"']?(?:rulebook|report)[\"']?[ \t]*:[ \t]*1\b", re.MULTILINE
+    rb"^(?:\{[ \t\r\n]*)?[\"']?(?:rulebook|report|asking|comparison)[\"']?[ \t]*:[ \t]*1\b",
+    re.MULTILINE,
 )
 
 _Document = DocumentResult | UsageFile
@@ -90,7 +91,7 @@ def read_file(candidate: Candidate, data: bytes) -> Reading | _Document:
         if document is not None:
             return document
     if candidate.suffix in DOCUMENT_SUFFIXES and not candidate.named and _OF_OURS.search(data):
-        return Reading(passed=(Passed(candidate.path, "a rulebook or a report"),))
+        return Reading(passed=(Passed(candidate.path, OURS),))
     reading = _content(candidate, data)
     if not reading.empty:
         return reading

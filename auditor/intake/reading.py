@@ -8,6 +8,8 @@ from auditor.declaration import Declaration
 from auditor.intake.inputs import InputError
 
 LEADS_OUT = "a link that leads out of the tree"
+OURS = "a rulebook or a report"
+"""Why documents of this program are passed over."""
 _NOTHING = "nothing that is read"
 
 CANDIDATE, WAITS = "candidate ", "; not reviewed unless a usage file names it"
@@ -29,6 +31,12 @@ def others(directory: str, count: int) -> Passed:
     """That so many files of ``directory`` hold nothing, without their names."""
     files = "1 other file holds" if count == 1 else f"{count:,} other files hold"
     return Passed(directory, f"{files} {_NOTHING}")
+
+
+def is_no_matter(reason: str) -> bool:
+    """Whether a reason says that nothing to review was passed over: a report or a rulebook, which
+    may lie beside what it is about, or any number of other files."""
+    return reason == OURS or is_count(reason)
 
 
 def is_count(reason: str) -> bool:

@@ -242,7 +242,7 @@ def test_a_composite_modulus_asks_for_nothing_deep():
         usage__purpose="key-agreement",
         generator__unit=True,
         generator__reduced=True,
-    usage__protection_stated=False,
+        usage__protection_stated=False,
         strength__required_bits=112,
     )
     used = facts_in_use(CORE, facts, UNUSED, VOCABULARY)
