@@ -171,7 +171,7 @@ def strange_factors(
             named = ", ".join(map(shorten, wrong[:3]))
             more = f" and {len(wrong) - 3} more" if len(wrong) > 3 else ""
             yield (
-                f"{item.identity}: not a factor of the group order, as known_factors declares: "
+                f"{item.identity}: known_factors names what does not divide the group order: "
                 f"{named}{more}."
             )
 

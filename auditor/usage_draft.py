@@ -12,7 +12,7 @@ from dataclasses import dataclass
 from textwrap import wrap
 from typing import Any
 
-from auditor.advice.ask import SCHEMES_OF, Asked
+from auditor.advice.ask import SCHEMES_OF, Asked, needed_width
 from auditor.advice.situations import Inquiry, Member, Situation, situation, usage_of
 from auditor.declaration import EVERYBODY, Declaration, Party
 from auditor.declare import flow, pointless, questions, scalar
@@ -199,7 +199,7 @@ def _example(key: str, asked: Asked) -> tuple[str, str]:
 
 def _exponent(asked: Asked) -> dict[str, Any]:
     """Examples for what is open of an exponent, of any party."""
-    example = {"bits": 2 * asked.declaration.required_bits, "use": "single"}
+    example = {"bits": needed_width(asked.declaration), "use": "single"}
     return {part: value for part, value in example.items() if _is_open(f"exponent.{part}", asked)}
 
 

@@ -37,7 +37,7 @@ def told(modulus: int, *factors: int) -> tuple[str, ...]:
 )
 def test_what_does_not_divide_is_named(modulus: int, factors: tuple[int, ...], wrong: str) -> None:
     """Modulo primes, prime powers and products; not where the order is unknown."""
-    expected = (f"a.yaml#a: not a factor of the group order, as known_factors declares: {wrong}.",)
+    expected = (f"a.yaml#a: known_factors names what does not divide the group order: {wrong}.",)
     assert told(modulus, *factors) == (expected if wrong else ())
 
 

@@ -104,6 +104,12 @@ def weak() -> list[Record]:
         },
         "unchecked": {"modulus": wide, **usage(225, "single")},
         "certified": {"modulus": wide, **usage(225, "single", "certified")},
+        "not reduced": {
+            "modulus": sample("tug dispatch")["modulus"],
+            "generator": int(sample("tug dispatch")["modulus"], 16) + 4,
+            **usage(225, "single", "range"),
+        },
+        "value 1": {"modulus": wide, "public_values": [1], **usage(225, "single", "range")},
         "two parties": {
             "modulus": {"group": "rfc5114-2048-224"},
             "purpose": "key-agreement",
@@ -255,6 +261,7 @@ EXPECTED: list[tuple[str, str, Record]] = [
         {"exponent": {"bits": 225, "use": "single"}},
     ),
     ("unchecked", "peer-value-unchecked", {"peer_check": ["range"]}),
+    ("not reduced", "generator-not-reduced", {"generator": 4}),
     ("certified", "peer-value-unchecked", {"peer_check": ["range", "certified"]}),
     (
         "signature with a short nonce",
@@ -309,6 +316,14 @@ def test_membership_comes_with_the_order_it_needs(before: list[Record]) -> None:
 
     assert patch["subgroup_order"] == sample("fish-market terminal")["subgroup_order"]
     assert "membership" in patch["peer_check"]
+
+
+def test_another_group_mends_no_public_value(before: list[Record]) -> None:
+    """The rule says to refuse it."""
+    (item,) = (item for item in before if item["name"] == "value 1")
+
+    assert "public-value-out-of-range" in {f["rule"] for f in item["findings"]}
+    assert remedies(before, "value 1") == {}
 
 
 def test_where_nothing_helps_the_rule_speaks(before: list[Record]) -> None:

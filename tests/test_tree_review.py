@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import Any, NamedTuple
 
 import pytest
+from click.testing import CliRunner
 
 from auditor import cli
 from auditor.intake import inputs, tree
@@ -254,3 +255,19 @@ def test_files_that_hold_nothing_are_no_matter_to_the_verifier(review: Review) -
     write("c.pem", "")
     (failure,) = verify(record, secrets.randbelow, against=read_inputs(["t"])).failures
     assert failure.startswith("skipped: ")
+
+
+def test_findings_of_a_run_beside_its_inputs_are_no_inputs(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """SARIF names groups in its remedies and declares none: two runs find the same."""
+    monkeypatch.chdir(tmp_path)
+    Path("weak.yaml").write_text(
+        "auditor: 1\nparameter_sets:\n  - {name: a, modulus: {group: modp1024}}\n"
+    )
+    words = ["review", ".", "--effort", "quick", "--no-ledger", "--sarif", "o.sarif"]
+    first, second = (CliRunner().invoke(cli.main, [*words, "--json", "-"]) for _ in range(2))
+
+    found = [json.loads(run.stdout)["inputs"] for run in (first, second)]
+    assert [[item["path"] for item in inputs] for inputs in found] == [["weak.yaml"]] * 2
+    assert Path("o.sarif").exists()

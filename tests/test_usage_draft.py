@@ -139,7 +139,7 @@ def test_what_an_answer_would_change_stands_beside_its_key(tree: Path) -> None:
     found = drafted("usage.yaml").text
     about = found.split("DH PARAMETERS 1: open")[1].split("\n\n")[0]
 
-    assert re.search(r"# if every party uses exponents of 224 bits: open to no objection", found)
+    assert re.search(r"# if every party uses exponents of 256 bits: open to no objection", found)
     assert "range (they are 2 to n-2), membership" in about.replace("\n    #   ", "")
 
 

@@ -253,9 +253,16 @@ def _of_party(party: Party, declaration: Declaration) -> Iterator[tuple[str, str
         yield f"if {who} uses each exponent once", "exponent.use", "single", True
     if party.exponent_use is None:
         yield f"if {who} uses exponents again", "exponent.use", "reused", False
-    needed = 2 * declaration.required_bits
+    needed = needed_width(declaration)
     if party.exponent_bits is None or party.exponent_bits < needed:
         yield f"if {who} uses exponents of {needed} bits", "exponent.bits", needed, True
+
+
+def needed_width(declaration: Declaration) -> int:
+    """Bits of an exponent: twice the required strength, and for signatures, whose secret numbers
+    fill the order, no less than a declared order has."""
+    order = declaration.subgroup_order if declaration.purpose == "signature" else None
+    return max(2 * declaration.required_bits, (order or 0).bit_length())
 
 
 def declared_key(answer: Answer, declaration: Declaration) -> str:

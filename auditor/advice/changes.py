@@ -82,6 +82,16 @@ def true_order(draft: Draft) -> Draft | None:
     return draft.changed(text, declaration=replace(draft.declaration, **declared))
 
 
+def reduced_generator(draft: Draft) -> Draft | None:
+    """Declare the residue that the generator stands for."""
+    n, g = draft.declaration.modulus, draft.declaration.generator
+    if n < 2 or g < n or g % n == 0:
+        return None
+    text = f"Write the generator as {shorten(g % n)}, its residue; no key and no value changes."
+    declaration = replace(draft.declaration, generator=g % n)
+    return draft.changed(text, declaration=declaration)
+
+
 def _order_declared(declaration: Declaration, order: int) -> dict[str, Any]:
     """The keys that declare this order; a declared cofactor belongs to the order it came with."""
     kept = declaration.cofactor if order == declaration.subgroup_order else None
@@ -301,7 +311,8 @@ def _widths(draft: Draft) -> tuple[int, int]:
     """The least and the greatest width that fit.
 
     Twice the required strength (SP 800-56A Rev. 3, 5.6.1.1.1), and what RFC 7919 advises for its
-    groups; the whole range below a prime order that is not half of n - 1 (5.6.1.1.2 there).
+    groups; the whole range below a prime order that is not half of n - 1 (5.6.1.1.2 there), and
+    for signatures below any.
     """
     declaration, order = draft.declaration, draft.order
     least = 2 * declaration.required_bits
@@ -310,7 +321,8 @@ def _widths(draft: Draft) -> tuple[int, int]:
         least = max(least, TLS_WIDTHS.get(published.name, 0))
     if draft.length is None:
         return least, max(least, declaration.modulus.bit_length())
-    if order is not None and 2 * order + 1 != declaration.modulus:
+    signing = declaration.purpose == "signature"
+    if order is not None and (signing or 2 * order + 1 != declaration.modulus):
         return draft.length, draft.length
     return min(least, draft.length), draft.length
 

@@ -109,6 +109,10 @@ def _majors(judgement: Judgement) -> frozenset[str]:
     return frozenset(finding.rule for finding in judgement.findings if finding.grade == "major")
 
 
+OF_VALUES = ("exponent-shared", "exponent-visible", "public-value-invalid")
+"""Defects of public values: no change of the parameters mends what was made or received."""
+
+
 class _Here:
     """One set: its drafts in order of disruption, each judged once and only when it is reached."""
 
@@ -128,7 +132,7 @@ class _Here:
         What was chosen for a finding before comes first, so that the remedies of one set are few
         and none undoes another.
         """
-        if finding.outcome == "nonconforming":
+        if finding.outcome == "nonconforming" and finding.defect not in OF_VALUES:
             for trial in chain(list(self._chosen), self._all()):
                 if trial.meets(finding.rule):
                     effect = trial.effect
@@ -208,6 +212,7 @@ def _families(start: Draft) -> list[list[Ranked]]:
     groups = changes.groups_for(start.declaration)[:MOST_GROUPS]
     families: list[list[tuple[int, Change]]] = [
         [
+            (1, changes.reduced_generator),
             (1, changes.true_order),
             (7, changes.prime_order_generator),
             *((8 + i, changes.move_to(group)) for i, group in enumerate(groups)),

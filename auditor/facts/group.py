@@ -86,11 +86,10 @@ def risk_window(given: Given) -> tuple[int, int]:
     by_peer = not isinstance(given.peek(exponent.exposed_parties), Absent)
     in_order = given.peek(parts.generator_order)
     passive = isinstance(in_order, Absent) or in_order.rest > 1
-    if passive:
-        return FIRST_BITS, 2 * required
-    if by_peer:
-        return FIRST_BITS, required + 1
-    given.undefined()
+    largest = 2 * required if passive else required + 1
+    if largest < FIRST_BITS or not (passive or by_peer):
+        given.undefined()
+    return FIRST_BITS, largest
 
 
 @fact(

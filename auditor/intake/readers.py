@@ -44,6 +44,8 @@ NOTHING = (
 # A key of that name somewhere, and one that is certainly a key of the whole document.
 _MENTIONED = re.compile(rb"\bauditor(?:-usage)?[\"']?[ \t]*:")
 _AT_TOP = re.compile(rb"^(?:\xef\xbb\xbf)?[\"']?auditor(?:-usage)?[\"']?[ \t]*:", re.MULTILINE)
+REPORT_SUFFIX = ".sarif"
+"""Findings of some program: they name groups and declare none."""
 _OF_OURS = re.compile(
     rb"^(?:\{[ \t\r\n]*)?[\"']?(?:rulebook|report|asking|comparison)[\"']?[ \t]*:[ \t]*1\b",
     re.MULTILINE,
@@ -90,7 +92,8 @@ def read_file(candidate: Candidate, data: bytes) -> Reading | _Document:
         document = _document(candidate, data, claims=bool(_AT_TOP.search(data)))
         if document is not None:
             return document
-    if candidate.suffix in DOCUMENT_SUFFIXES and not candidate.named and _OF_OURS.search(data):
+    of_ours = candidate.suffix in DOCUMENT_SUFFIXES and _OF_OURS.search(data)
+    if (of_ours or candidate.suffix == REPORT_SUFFIX) and not candidate.named:
         return Reading(passed=(Passed(candidate.path, OURS),))
     reading = _content(candidate, data)
     if not reading.empty:

@@ -260,3 +260,15 @@ def test_of_what_makes_it_insufficient_the_best_founded_decides() -> None:
     assert found.facts["modulus.nature"].standing is Standing.PROBABLE
     assert (sufficient.value, sufficient.standing) == (False, Standing.PROVEN)
     assert sufficient.rests_on == ()
+
+
+@pytest.mark.parametrize("required", [1, 9, 10, 18, 19, 20, 112])
+def test_a_low_requirement_leaves_no_window_for_missed_factors(required: int) -> None:
+    """What division has excluded cannot be missed."""
+    found = known(
+        group(24, required_strength=required, **STATIC_UNCHECKED, bits=256), claims(24, ()), QUICK
+    )
+    window = found.facts.get("group.missed_factor_window")
+
+    assert window is None or window.value[0] <= window.value[1]
+    assert (window is None) == ("group.missed_factor_risk" not in found.facts)

@@ -106,6 +106,7 @@ SAFE_PRIME_GROUP = proven(
     generator__unit=True,
     generator__reduced=True,
     usage__protection_stated=False,
+    run__year=2026,
     generator__trivial=False,
     generator__order_even=False,
     generator__order_prime=True,
@@ -243,6 +244,7 @@ def test_a_composite_modulus_asks_for_nothing_deep():
         generator__unit=True,
         generator__reduced=True,
         usage__protection_stated=False,
+        run__year=2026,
         strength__required_bits=112,
     )
     used = facts_in_use(CORE, facts, UNUSED, VOCABULARY)
