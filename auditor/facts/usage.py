@@ -129,13 +129,7 @@ def peer_cofactor(given: Given) -> bool:
 @narrow
 @fact("usage.exponent_reused", "bool", "some party uses an exponent more than once")
 def exponent_reused(given: Given) -> bool:
-    silent = [party for party in given.see(parties) if party.exponent_use is None]
-    spoken = [party for party in given.see(parties) if party.exponent_use is not None]
-    reusing = [party for party in spoken if party.exponent_use != "single"]
-    if silent and not reusing:
-        given.undeclared(*(key_of(party, "exponent.use") for party in silent))
-    given.rest_on(*(key_of(party, "exponent.use") for party in reusing or spoken))
-    return bool(reusing)
+    return _some_party_uses(given, ("reused", "static"))
 
 
 @narrow
@@ -145,13 +139,19 @@ def exponent_reused(given: Given) -> bool:
     "some party uses an exponent more than once that is not declared to be static",
 )
 def ephemeral_reused(given: Given) -> bool:
-    silent = [party for party in given.see(parties) if party.exponent_use is None]
-    reusing = [party for party in given.see(parties) if party.exponent_use == "reused"]
-    spoken = [party for party in given.see(parties) if party.exponent_use is not None]
-    if silent and not reusing:
+    return _some_party_uses(given, ("reused",))
+
+
+def _some_party_uses(given: Given, uses: tuple[str, ...]) -> bool:
+    """Whether some party declares one of these uses; undeclared while a silent one might."""
+    declared = given.see(parties)
+    spoken = [party for party in declared if party.exponent_use is not None]
+    silent = [party for party in declared if party.exponent_use is None]
+    such = [party for party in spoken if party.exponent_use in uses]
+    if silent and not such:
         given.undeclared(*(key_of(party, "exponent.use") for party in silent))
-    given.rest_on(*(key_of(party, "exponent.use") for party in reusing or spoken))
-    return bool(reusing)
+    given.rest_on(*(key_of(party, "exponent.use") for party in such or spoken))
+    return bool(such)
 
 
 @narrow
