@@ -109,7 +109,8 @@ class Declaration:
                 "method": self.provenance.method,
                 **dict(self.provenance.values),
             }
-        return plain(record)  # type: ignore[no-any-return]
+        document: dict[str, Any] = plain(record)
+        return document
 
     def digest(self) -> str:
         """SHA-256 over all values, usage included, without name and place."""

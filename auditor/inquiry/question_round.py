@@ -177,6 +177,7 @@ def _work_elsewhere(tasks: Sequence[_Task], answers: Answers, tally: _Tally) -> 
         if not isinstance(result, Step):
             known = type(answers.claims)([*task.known, *task.made])
             here = getattr(cores.executor, "here", False)
+            # What a worker sends is read strictly there, whatever it is.
             result = taken_over(result, known, answers.draw, here)  # type: ignore[arg-type]
             answers.keep(claim for claim in result.claims if worth_keeping(claim))
         return None if _take(task, result, tally) else place

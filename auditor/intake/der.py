@@ -148,7 +148,8 @@ def decode(structure: type[T], data: bytes) -> T:
 def parse(structure: type[T], element: asn1.TLV) -> T:
     """The structure that an undecoded element holds; DerError otherwise."""
     try:
-        return element.parse(structure)  # type: ignore[no-any-return]
+        parsed: T = element.parse(structure)
+        return parsed
     except ValueError as error:
         raise _der_error(error) from None
 

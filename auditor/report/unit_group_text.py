@@ -132,7 +132,8 @@ def record(item: Structure, elements: Sequence[ElementOrder]) -> dict[str, Any]:
         found["known_exponent_factors"] = group.known_exponent_factors
         found["unfactored_exponent"] = group.unfactored_exponent
     found["elements"] = [_element_record(element) for element in elements]
-    return plain(found)  # type: ignore[no-any-return]
+    written: dict[str, Any] = plain(found)
+    return written
 
 
 def _element_record(element: ElementOrder) -> dict[str, Any]:
