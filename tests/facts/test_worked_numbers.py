@@ -11,6 +11,7 @@ from functools import cache
 from math import prod
 
 import pytest
+from gmpy2 import next_prime
 
 from auditor.claims.collection import Claims, check_all
 from auditor.claims.composite import Composite
@@ -22,7 +23,7 @@ from auditor.inquiry.answers import Answers
 from auditor.intake.standard_groups import find
 from auditor.questions import Asks
 from auditor.run_values import RunValues
-from tests.facts.knowledge import declare, known, settled
+from tests.facts.knowledge import declare, known, reviewed, settled
 
 QUICK = RunValues("2026-12-01", "quick")
 GROUP_23 = (742327609, 5213881177, 112486462861, 3528910760717)
@@ -262,13 +263,43 @@ def test_of_what_makes_it_insufficient_the_best_founded_decides() -> None:
     assert sufficient.rests_on == ()
 
 
-@pytest.mark.parametrize("required", [1, 9, 10, 18, 19, 20, 112])
-def test_a_low_requirement_leaves_no_window_for_missed_factors(required: int) -> None:
+@pytest.mark.parametrize(
+    ("required", "window"), [(1, None), (9, None), (10, (20, 20)), (56, (20, 112))]
+)
+def test_a_low_requirement_leaves_no_window_for_missed_factors(
+    required: int, window: tuple[int, int] | None
+) -> None:
     """What division has excluded cannot be missed."""
-    found = known(
-        group(24, required_strength=required, **STATIC_UNCHECKED, bits=256), claims(24, ()), QUICK
-    )
-    window = found.facts.get("group.missed_factor_window")
+    n = int(next_prime(2**520 + 12345))
+    found = reviewed(declare(n, 2, required_strength=required), QUICK)
+    shown = found.facts.get("group.missed_factor_window")
 
-    assert window is None or window.value[0] <= window.value[1]
+    assert found.facts["group.unfactored_length_at_most"].value > 0
+    assert (shown and tuple(shown.value)) == window
     assert (window is None) == ("group.missed_factor_risk" not in found.facts)
+
+
+@pytest.mark.parametrize(
+    ("bits", "checks", "sufficient"),
+    [(256, ("range",), True), (222, ("range",), False), (256, (), None), (None, ("range",), None)],
+)
+def test_reuse_is_not_asked_for_where_it_makes_no_difference(
+    bits: int | None, checks: tuple[str, ...], sufficient: bool | None
+) -> None:
+    """Over a safe prime a range check leaves one bit; without check or width it matters."""
+    standard = find("modp2048")
+    assert standard is not None
+    declaration = declare(
+        standard.modulus,
+        2,
+        subgroup_order=standard.subgroup_order,
+        purpose="key-agreement",
+        bits=bits,
+        checks=checks,
+    )
+    found = reviewed(declaration, QUICK)
+
+    if sufficient is None:
+        assert found.absent["strength.sufficient"].reason == "undeclared"
+    else:
+        assert found.facts["strength.sufficient"].value is sufficient
